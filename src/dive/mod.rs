@@ -1,0 +1,105 @@
+//! A dive: everything one TOML file names, read, checked, and in SI units.
+
+use std::path::PathBuf;
+
+use crate::frame::{Frame, LocalPoint};
+use crate::map::Landmark;
+use crate::problem::Notice;
+use crate::track::Line;
+use crate::vehicle::{DeadReckoning, Sonar, Vehicle};
+
+/// How simulated errors are drawn. All shapes stay within the bounds.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Hash, serde::Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum ErrorShape {
+    /// Every error uniform within its bounds, drawn anew each time.
+    Uniform,
+    /// Every error at one end of its bounds, drawn anew each time.
+    Corners,
+    /// Every error at one end of its bounds, drawn once for the dive.
+    Steady,
+}
+
+/// What orders the ranking of the lines.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize, clap::ValueEnum)]
+#[serde(rename_all = "kebab-case")]
+pub enum RankBy {
+    /// Share of dives (over all segment starts) with a fix within the required distance; ties by 95th percentile.
+    Share,
+    /// 95th percentile fix distance over all segment starts, shortest first.
+    P95,
+    /// Median fix distance over all segment starts, shortest first.
+    Median,
+    /// Share of dives without a fix before the line ends, smallest first.
+    NoFix,
+}
+
+/// Where the vehicle may be when it starts to look for itself.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Start {
+    /// Corners of the search area, in order, not repeated at the end. The solver uses its convex hull.
+    pub search_area: Vec<LocalPoint>,
+    /// Radius of the descent scatter about the planned start of a line, metres, at least 0.
+    pub scatter_m: f64,
+}
+
+/// How lines are scored.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Scoring {
+    /// Widest extent of the feasible set that counts as a fix, metres.
+    pub fix_size_m: f64,
+    /// Longest run from an unknown start that the mission can accept, metres.
+    pub required_fix_m: f64,
+    /// Interval between the starts at which a line is scored, metres.
+    pub segment_m: f64,
+    /// Simulated dives per line.
+    pub draws: usize,
+    /// Seed of the generator.
+    pub seed: u64,
+    /// Error shapes, used in turn by the draws; at least one.
+    pub error_shapes: Vec<ErrorShape>,
+    /// What orders the ranking.
+    pub rank_by: RankBy,
+    /// Most cells the solver may keep at once before it answers "undecided".
+    pub cell_budget: usize,
+}
+
+/// One input file and the fingerprint of its bytes.
+#[derive(Clone, Debug, PartialEq, serde::Serialize)]
+pub struct InputFile {
+    /// Path as the dive file names it (the dive file itself: its file name).
+    pub name: String,
+    /// SHA-256 of the bytes, lower-case hexadecimal.
+    pub sha256: String,
+}
+
+/// Everything read and checked.
+#[derive(Clone, Debug)]
+pub struct Dive {
+    /// Title from the dive file.
+    pub name: String,
+    /// The dive file.
+    pub path: PathBuf,
+    /// The working frame.
+    pub frame: Frame,
+    /// The landmarks.
+    pub landmarks: Vec<Landmark>,
+    /// How landmark uncertainty was declared and turned into bounds, in words with the factor used.
+    pub uncertainty_statement: String,
+    /// The candidate lines.
+    pub lines: Vec<Line>,
+    /// How the vehicle moves.
+    pub vehicle: Vehicle,
+    /// Dead-reckoning bounds, already widened by the distortion of the grid over the site.
+    pub dead_reckoning: DeadReckoning,
+    /// The sonar, its range error already widened by the distortion of the grid over the site.
+    pub sonar: Sonar,
+    /// Where the vehicle may start.
+    pub start: Start,
+    /// How lines are scored.
+    pub scoring: Scoring,
+    /// What was read, with fingerprints: dive file first, then in the order named.
+    pub inputs: Vec<InputFile>,
+    /// What was understood and what to watch, for `check` and for standard error.
+    pub notices: Vec<Notice>,
+}

@@ -1,0 +1,301 @@
+//! Plain values that say what was asked and what was found. Exporters and charts use nothing else.
+//!
+//! *Units.* In every key name. *Missing* is `None`, never zero.
+
+use serde::Serialize;
+
+use crate::dive::{InputFile, RankBy};
+use crate::frame::LocalPoint;
+
+/// The caution every output carries.
+pub const CAUTION: &str = "Planning aid, not for navigation. A fix is unambiguous only while the stated error bounds hold and the map is as described. No statement that ground is clear of objects. The vehicle's safety case, local regulations and qualified personnel decide.";
+
+/// What produced an output and from what.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct Provenance {
+    /// Name of the schema, such as `fixability.lines`.
+    pub schema: &'static str,
+    /// Version of the schema.
+    pub schema_version: u32,
+    /// Version of the program.
+    pub tool_version: &'static str,
+    /// Title of the dive.
+    pub dive: String,
+    /// Input files with fingerprints.
+    pub inputs: Vec<InputFile>,
+    /// Seed of the generator.
+    pub seed: u64,
+    /// Name of the generator.
+    pub generator: &'static str,
+    /// Working frame in words: `WGS 84 / UTM zone 31N (EPSG:32631)` or `local metres`.
+    pub coordinate_system: String,
+    /// The caution text.
+    pub caution: &'static str,
+}
+
+/// Every parameter in force, in users' units, as the dive file would state it.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct Parameters {
+    /// Speed over ground, m/s.
+    pub speed_mps: f64,
+    /// Turn radius, m.
+    pub turn_radius_m: f64,
+    /// Dead-reckoning scale error, % of distance, with the grid's distortion added.
+    pub scale_error_pct: f64,
+    /// Heading bias, ± degrees.
+    pub heading_bias_deg: f64,
+    /// Heading noise, ± degrees, with the grid's change of convergence over the site added.
+    pub heading_noise_deg: f64,
+    /// Unknown drift, m/s.
+    pub drift_mps: f64,
+    /// `side-looking` or `forward-looking`.
+    pub sonar_kind: &'static str,
+    /// Shortest slant range, m.
+    pub range_min_m: f64,
+    /// Longest slant range, m.
+    pub range_max_m: f64,
+    /// Shortest horizontal range at the nominal altitude, m.
+    pub nearest_horizontal_m: f64,
+    /// Longest horizontal range at the nominal altitude, m.
+    pub farthest_horizontal_m: f64,
+    /// Full opening of the forward sector, degrees; none for side-looking sonar.
+    pub sector_deg: Option<f64>,
+    /// Nadir gap off the vertical, degrees; none for forward-looking sonar.
+    pub nadir_gap_deg: Option<f64>,
+    /// Altitude, m.
+    pub altitude_m: f64,
+    /// Constant slant-range error, ± m.
+    pub range_error_m: f64,
+    /// Growing slant-range error, ± % of range, with the grid's distortion added.
+    pub range_error_pct: f64,
+    /// Bearing error, ± degrees.
+    pub bearing_error_deg: f64,
+    /// Altitude error, ± m.
+    pub altitude_error_m: f64,
+    /// Detection chance, 0 to 1.
+    pub detection_chance: f64,
+    /// Whether landmarks are detected in turns.
+    pub detect_in_turns: bool,
+    /// Landmarks on the map.
+    pub landmarks: usize,
+    /// How the landmarks' uncertainty was declared and turned into bounds.
+    pub landmark_uncertainty: String,
+    /// Smallest half-width of a landmark's box, m; none without landmarks.
+    pub half_width_min_m: Option<f64>,
+    /// Largest half-width of a landmark's box, m; none without landmarks.
+    pub half_width_max_m: Option<f64>,
+    /// Area of the search area, km².
+    pub search_area_km2: f64,
+    /// Descent scatter radius, m.
+    pub scatter_m: f64,
+    /// Fix size, m.
+    pub fix_size_m: f64,
+    /// Required fix distance, m.
+    pub required_fix_m: f64,
+    /// Segment length, m.
+    pub segment_m: f64,
+    /// Simulated dives per line.
+    pub draws: usize,
+    /// Error shapes in turn.
+    pub error_shapes: Vec<crate::dive::ErrorShape>,
+    /// Cell budget of the solver.
+    pub cell_budget: usize,
+}
+
+/// A value with a 95 % confidence interval. An end that lies beyond what the draws can tell is `None`.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+pub struct Estimate {
+    /// Best value; none where the draws have none (for example a percentile that falls among dives without a fix).
+    pub value: Option<f64>,
+    /// Lower end of the 95 % confidence interval.
+    pub low: Option<f64>,
+    /// Upper end of the 95 % confidence interval.
+    pub high: Option<f64>,
+}
+
+/// Statistics of simulated dives: *estimated*, never guaranteed.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct EstimatedFix {
+    /// Simulated dives counted.
+    pub dives: usize,
+    /// Median fix distance, m.
+    pub median_m: Estimate,
+    /// 95th percentile fix distance, m.
+    pub p95_m: Estimate,
+    /// Share of dives with a fix within the required distance (0 to 1).
+    pub within_required_share: Estimate,
+    /// Share of dives with no fix before the line ends (0 to 1), undecided dives included.
+    pub no_fix_share: Estimate,
+    /// Share of dives in which the solver ran out of its cell budget (0 to 1).
+    pub undecided_share: f64,
+}
+
+/// True for every error within the bounds: *guaranteed*. Absent until computed.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct GuaranteedFix {
+    /// Guaranteed fix distance, m; none when there is no guaranteed fix before the line ends.
+    pub distance_m: Option<f64>,
+    /// Why there is none.
+    pub reason: Option<String>,
+}
+
+/// One scored segment of a line: the vehicle is lost at its start.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct SegmentReport {
+    /// Number along the line, from 1.
+    pub number: usize,
+    /// Distance of the segment's start along the line, m.
+    pub start_m: f64,
+    /// Distance of the segment's end along the line, m.
+    pub end_m: f64,
+    /// Points of the planned track from start to end, turns included.
+    pub path: Vec<LocalPoint>,
+    /// Landmarks expected in the swath from here to the end of the line (planned track, charted positions).
+    pub detections_ahead: usize,
+    /// Statistics of simulated dives that start lost here.
+    pub estimated: EstimatedFix,
+    /// Guaranteed fix distance from here.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub guaranteed: Option<GuaranteedFix>,
+}
+
+/// Ambiguity against distance run, over all segment starts and dives of a line (*estimated*).
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct ProfilePoint {
+    /// Distance run since the vehicle was lost, m.
+    pub run_m: f64,
+    /// Dives that still have line to run at this distance.
+    pub dives: usize,
+    /// Median number of places; none before the first detection in half of the dives.
+    pub places_median: Option<f64>,
+    /// 95th percentile of the number of places.
+    pub places_p95: Option<f64>,
+    /// Median spread, m.
+    pub spread_median_m: Option<f64>,
+    /// 95th percentile of the spread, m.
+    pub spread_p95_m: Option<f64>,
+    /// Share of dives that have had a fix by this distance.
+    pub fixed_share: f64,
+}
+
+/// One scored line.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct LineReport {
+    /// Name.
+    pub name: String,
+    /// Place in the ranking, from 1.
+    pub rank: usize,
+    /// Length of the planned track, m.
+    pub length_m: f64,
+    /// Landmarks expected in the swath over the whole line.
+    pub detections_expected: usize,
+    /// Distance of the line spent in turns without detections, m.
+    pub blind_turn_m: f64,
+    /// Waypoints as planned.
+    pub waypoints: Vec<LocalPoint>,
+    /// Over all segment starts.
+    pub estimated: EstimatedFix,
+    /// Share of segment starts whose estimated 95th percentile is within the required distance (0 to 1).
+    pub segments_p95_within_share: f64,
+    /// By segment.
+    pub segments: Vec<SegmentReport>,
+    /// Against distance run.
+    pub profile: Vec<ProfilePoint>,
+}
+
+/// A landmark as charts draw it. Not exported: contact positions may be sensitive.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct ChartLandmark {
+    /// Charted position.
+    pub position: LocalPoint,
+    /// Half-width east, m.
+    pub half_width_east_m: f64,
+    /// Half-width north, m.
+    pub half_width_north_m: f64,
+}
+
+/// The result of `lines`.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct LinesReport {
+    /// Where this comes from.
+    #[serde(flatten)]
+    pub provenance: Provenance,
+    /// What was asked.
+    pub parameters: Parameters,
+    /// Key that orders the ranking.
+    pub rank_by: RankBy,
+    /// Lines in the order of the file; `rank` gives the ranking.
+    pub lines: Vec<LineReport>,
+    /// For the chart.
+    #[serde(skip)]
+    pub landmarks: Vec<ChartLandmark>,
+}
+
+/// One event of a traced dive.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct TraceEvent {
+    /// Number from 1.
+    pub number: usize,
+    /// Distance run since the vehicle was lost, m.
+    pub run_m: f64,
+    /// Distance along the line, m.
+    pub along_m: f64,
+    /// Time since the vehicle was lost, s.
+    pub time_s: f64,
+    /// Measured slant range, m.
+    pub slant_range_m: f64,
+    /// Measured bearing relative to the bow, degrees, starboard positive.
+    pub relative_bearing_deg: f64,
+    /// Reported heading, degrees.
+    pub heading_deg: f64,
+    /// Cells in the feasible set.
+    pub cells: usize,
+    /// Number of places.
+    pub places: usize,
+    /// Spread, m; none when the set is empty.
+    pub spread_m: Option<f64>,
+    /// Whether the spread is at most the fix size.
+    pub is_fix: bool,
+    /// Identifier of the landmark that was really seen (known to the simulator only).
+    pub true_landmark: String,
+    /// True position (known to the simulator only).
+    pub true_position: LocalPoint,
+    /// Whether the true position lies in the feasible set.
+    pub truth_inside: bool,
+    /// Corners of each feasible cell, at most [`TRACE_CELLS_MAX`] of them.
+    pub cell_corners: Vec<Vec<LocalPoint>>,
+}
+
+/// Most cells whose corners a trace writes per event.
+pub const TRACE_CELLS_MAX: usize = 2000;
+
+/// The result of `trace`.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct TraceReport {
+    /// Where this comes from.
+    #[serde(flatten)]
+    pub provenance: Provenance,
+    /// What was asked.
+    pub parameters: Parameters,
+    /// Line traced.
+    pub line: String,
+    /// Distance along the line at which the vehicle is lost, m.
+    pub from_m: f64,
+    /// Number of the draw.
+    pub draw: usize,
+    /// Error shape of the draw.
+    pub error_shape: crate::dive::ErrorShape,
+    /// Fix distance, m; none without a fix.
+    pub fix_distance_m: Option<f64>,
+    /// Whether the solver ran out of its cell budget.
+    pub undecided: bool,
+    /// Planned track from start to end, turns included.
+    pub path: Vec<LocalPoint>,
+    /// Search area, corners in order.
+    pub search_area: Vec<LocalPoint>,
+    /// The events.
+    pub events: Vec<TraceEvent>,
+    /// For the chart.
+    #[serde(skip)]
+    pub landmarks: Vec<ChartLandmark>,
+}
