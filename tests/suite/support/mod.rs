@@ -1,0 +1,3 @@
+//! Helpers shared by the tests (and by the benches).
+
+pub mod scenes;
