@@ -56,7 +56,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
         rank: 0,
         length_m: plan.length_m,
         detections_expected: detections.len(),
-        blind_turn_m: if setup.dive.sonar.detect_in_turns { 0.0 } else { plan.turn_length_m() },
+        blind_turn_m: setup.blind_turn_m(&plan),
         waypoints: line.waypoints.clone(),
         estimated: estimate(&all),
         segments_p95_within_share: passing as f64 / segments.len() as f64,

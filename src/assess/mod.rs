@@ -2,12 +2,14 @@
 //!
 //! Everything here is *estimated* from simulated dives and carries a confidence interval.
 
+mod check;
 mod ensemble;
 mod line;
 mod rank;
 pub mod statistics;
 mod trace;
 
+pub use check::{check, line_notices};
 pub use line::score_lines;
 pub use trace::{TraceError, TraceRequest, trace};
 
@@ -16,6 +18,7 @@ use crate::dive::{Dive, ErrorShape};
 use crate::locate::cell::Cell;
 use crate::locate::{Bounds, Solver, SolverMap};
 use crate::report::{ChartLandmark, Parameters, Provenance};
+use crate::track::plan::Plan;
 use crate::vehicle::SonarKind;
 
 /// A dive made ready for simulation and solving.
@@ -68,6 +71,11 @@ impl<'a> Setup<'a> {
     fn shape_of(&self, draw: usize) -> ErrorShape {
         let shapes = &self.dive.scoring.error_shapes;
         shapes[draw % shapes.len()]
+    }
+
+    /// Length of the track on which nothing is detected because the vehicle turns, metres.
+    fn blind_turn_m(&self, plan: &Plan) -> f64 {
+        if self.dive.sonar.detect_in_turns { 0.0 } else { plan.turn_length_m() }
     }
 
     /// Distances along a track of `length_m` at which segments start.
