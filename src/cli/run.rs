@@ -9,7 +9,7 @@ use super::args::{Arguments, Command, Common};
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
-use crate::export;
+use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::LinesReport;
@@ -63,7 +63,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
-            print_result(&String::from_utf8_lossy(&script)).context("standard output")?;
+            print_result(&script).context("standard output")?;
             Ok(Exit::Done)
         }
     }
@@ -84,7 +84,7 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
     if common.json {
         print_result(&export::check_json(&report)?).context("standard output")?;
     } else {
-        print_result(&export::check_text(&report)).context("standard output")?;
+        print_result(export::check_text(&report).as_bytes()).context("standard output")?;
     }
     Ok(Exit::Done)
 }
@@ -114,17 +114,17 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
-    let json = export::lines_json(&report)?;
+    let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
         let files = [
-            ("lines.json", json.clone().into_bytes()),
-            ("lines.csv", export::lines_csv(&report)?),
+            ("lines.json", json.clone()),
+            ("lines.csv", LinesCsv.bytes(&report)?),
             ("lines.png", render::lines_png(&report, &ChartSize::default())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
     }
-    let text = if common.json { json } else { export::lines_table(&report) };
+    let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     Ok(lines_exit(&report, asked.require, common))
 }
@@ -161,16 +161,16 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
         export::prepare(out, &["trace.json", "trace.png"], common.force)?;
     }
     let report = assess::trace(&Setup::new(&dive), request)?;
-    let json = export::trace_json(&report)?;
+    let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
         let files = [
-            ("trace.json", json.clone().into_bytes()),
+            ("trace.json", json.clone()),
             ("trace.png", render::trace_png(&report, &ChartSize::default())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
     }
-    let text = if common.json { json } else { export::trace_table(&report) };
+    let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.events.iter().any(|event| event.spread_m.is_none()) {
         print_notices([&warning(

@@ -10,9 +10,9 @@ use crate::problem::Notice;
 ///
 /// # Errors
 /// When standard output cannot be written for another reason.
-pub(super) fn print_result(text: &str) -> io::Result<()> {
+pub(super) fn print_result(text: &[u8]) -> io::Result<()> {
     let mut out = io::stdout().lock();
-    match out.write_all(text.as_bytes()).and_then(|()| out.flush()) {
+    match out.write_all(text).and_then(|()| out.flush()) {
         Err(error) if error.kind() == io::ErrorKind::BrokenPipe => Ok(()),
         other => other,
     }
