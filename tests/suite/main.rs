@@ -1,6 +1,7 @@
 //! All integration tests in one binary.
 
 mod export;
+mod layers;
 mod oracle;
 mod render;
 #[path = "support/reports.rs"]
