@@ -1,3 +1,4 @@
 //! What several tests share.
 
+pub mod demo;
 pub mod exact;
