@@ -2,4 +2,5 @@
 
 mod demo;
 mod intervals;
+mod one_dimension;
 mod support;
