@@ -1,7 +1,10 @@
 //! All integration tests in one binary.
 
+mod demo;
 mod export;
+mod intervals;
 mod layers;
+mod one_dimension;
 mod oracle;
 mod render;
 #[path = "support/reports.rs"]
