@@ -2,6 +2,7 @@
 
 mod demo;
 mod export;
+mod guarantee;
 mod intervals;
 mod layers;
 mod one_dimension;
