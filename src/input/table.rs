@@ -54,9 +54,7 @@ impl Table {
     /// Splits a text into header and rows. None, with findings, when there is no header to work with.
     pub fn read(input: &InputText, columns: &[Column], findings: &mut Findings) -> Option<Self> {
         let file = input.name.as_path();
-        let Some(separator) = sniff(input, columns, findings) else {
-            return None;
-        };
+        let separator = sniff(input, columns, findings)?;
         let mut reader = csv::ReaderBuilder::new()
             .delimiter(separator)
             .has_headers(false)
@@ -82,6 +80,14 @@ impl Table {
             };
             if record.iter().all(|f| f.trim().is_empty()) {
                 blank += 1;
+            } else if record.iter().any(|f| f.contains('\n')) {
+                // An unclosed quotation mark would swallow every row up to the next one without a trace.
+                misfits.push(
+                    Problem::new(file, "a field runs over more than one line")
+                        .line(line)
+                        .accepted("fields that end on their line")
+                        .advice("close the quotation mark, or double it inside a field"),
+                );
             } else if record.len() != width {
                 misfits.push(
                     Problem::new(file, format!("the row has {} fields, the header {width}", record.len()))
@@ -137,7 +143,8 @@ fn sniff(input: &InputText, columns: &[Column], findings: &mut Findings) -> Opti
     let file = input.name.as_path();
     let Some((at, first)) = input.text.lines().enumerate().find(|(_, l)| !l.trim().is_empty()) else {
         findings.problem(
-            Problem::new(file, "is empty").accepted("a header line with column names, then one row per entry"),
+            Problem::new(file, "is empty")
+                .accepted("a header line with column names, then one row per entry"),
         );
         return None;
     };
@@ -160,7 +167,10 @@ fn sniff(input: &InputText, columns: &[Column], findings: &mut Findings) -> Opti
         findings.problem(
             Problem::new(file, format!("the header \"{shown}\" names no known column"))
                 .line(at as u64 + 1)
-                .accepted(format!("columns separated by comma, semicolon or tab, such as {}", names.join(", ")))
+                .accepted(format!(
+                    "columns separated by comma, semicolon or tab, such as {}",
+                    names.join(", ")
+                ))
                 .advice("put a header line with column names at the top"),
         );
         return None;
@@ -231,7 +241,8 @@ impl<'a> LineCounter<'a> {
     }
 
     fn line_of(&mut self, offset: usize) -> u64 {
-        while self.at < self.bytes.len() && (self.at < offset || matches!(self.bytes[self.at], b'\r' | b'\n')) {
+        while self.at < self.bytes.len() && (self.at < offset || matches!(self.bytes[self.at], b'\r' | b'\n'))
+        {
             if self.bytes[self.at] == b'\n' {
                 self.line += 1;
             }
