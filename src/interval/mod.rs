@@ -66,7 +66,11 @@ impl Interval {
     }
 
     /// The interval that holds exactly `x`.
+    ///
+    /// # Panics
+    /// When `x` is not a number: it would read as the empty set, and the truth would be lost without a sound.
     pub const fn point(x: f64) -> Self {
+        assert!(!x.is_nan(), "an interval holds numbers, got not a number");
         Self { lo: x, hi: x }
     }
 
@@ -99,13 +103,7 @@ impl Interval {
 
     /// Width, rounded up; 0 when empty.
     pub fn width(self) -> f64 {
-        if self.is_empty() {
-            0.0
-        } else if self.lo == self.hi {
-            0.0
-        } else {
-            up(self.hi - self.lo)
-        }
+        if self.is_empty() || self.lo == self.hi { 0.0 } else { up(self.hi - self.lo) }
     }
 
     /// A number near the middle, inside the interval.
@@ -226,6 +224,9 @@ impl std::ops::Mul for Interval {
 
 /// [a, b] / [c, d] = hull of the quotients; all reals when the divisor holds 0 among others, empty when it is
 /// exactly 0.
+///
+/// A corner with an infinite divisor counts as 0, its limit for every finite dividend. Where the dividend is infinite
+/// too, the quotients run from that 0 to the corner with the finite end of the divisor, which is also in the hull.
 impl std::ops::Div for Interval {
     type Output = Self;
     #[inline]
@@ -236,7 +237,13 @@ impl std::ops::Div for Interval {
         if other.contains(0.0) {
             return Self::ENTIRE;
         }
-        let corners = [self.lo / other.lo, self.lo / other.hi, self.hi / other.lo, self.hi / other.hi];
+        let quotient = |x: f64, y: f64| if y.is_infinite() { 0.0 } else { x / y };
+        let corners = [
+            quotient(self.lo, other.lo),
+            quotient(self.lo, other.hi),
+            quotient(self.hi, other.lo),
+            quotient(self.hi, other.hi),
+        ];
         let least = corners.into_iter().fold(f64::INFINITY, smaller);
         let most = corners.into_iter().fold(f64::NEG_INFINITY, larger);
         Self { lo: down(least), hi: up(most) }

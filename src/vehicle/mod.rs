@@ -2,6 +2,10 @@
 //!
 //! *Units.* SI: metres, seconds, radians. Every error figure is a hard bound (plus or minus), not a deviation.
 
+mod range;
+
+pub use range::horizontal_range;
+
 /// How the vehicle moves.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Vehicle {

@@ -1,4 +1,15 @@
 //! All integration tests in one binary.
 
+mod demo;
+mod export;
+mod intervals;
+mod layers;
 mod load;
+mod one_dimension;
+mod oracle;
 mod projection;
+mod render;
+#[path = "support/reports.rs"]
+mod reports;
+mod soundness;
+mod support;

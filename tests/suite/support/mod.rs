@@ -1,0 +1,5 @@
+//! Helpers shared by the tests (and by the benches).
+
+pub mod demo;
+pub mod exact;
+pub mod scenes;
