@@ -5,7 +5,7 @@ use std::path::{Path, PathBuf};
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
-use super::{Dive, InputFile, Start, area, checks, widen};
+use super::{Dive, InputFile, Start, area, checks, swath, widen};
 use crate::frame::Crs;
 use crate::input::{Format, InputText};
 use crate::map::Landmark;
@@ -91,7 +91,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
     grid.report(findings);
     site.report(&sources, &lines, findings);
     checks::landmarks(&sources, &landmarks, findings);
-    checks::swath(&landmarks, &lines, &widened_sonar, findings);
+    swath::check(&landmarks, &lines, &widened_sonar, findings);
     if !settings.turn_radius_given && lines.iter().any(|l| l.waypoints.len() > 2) {
         findings.warn(
             None,

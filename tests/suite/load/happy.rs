@@ -1,7 +1,9 @@
 //! Sound input: what comes out.
 
+use std::f64::consts::PI;
+
 use fixability::dive::{ErrorShape, RankBy};
-use fixability::frame::LocalPoint;
+use fixability::frame::{GeoPoint, LocalPoint};
 use fixability::vehicle::SonarKind;
 
 use super::{Scene, holds};
@@ -114,4 +116,45 @@ fn several_formats_and_systems_join_in_one_frame() {
             "r.gpx: 1 single waypoint (wpt) not used",
         ],
     );
+}
+
+#[test]
+fn widened_bounds_hold_true_displacements_anywhere_on_the_site() {
+    use geo::{Destination, Geodesic, Point};
+    // Outside value: geodesics after Karney 2013 (geo crate), in every direction, over a site 40 km wide off the meridian.
+    let reef = "id,easting,northing,uncertainty_m\nA,560000,6200000,2\nB,600000,6220000,2\n";
+    let lines = "line,easting,northing\nnorth,560000,6200060\nnorth,600000,6219960\n";
+    for code in ["EPSG:32631", "EPSG:3035"] {
+        let scene = Scene::new().file("reef.csv", reef).file("lines.csv", lines);
+        let working = format!("EPSG:32631\"\nworking_crs = \"{code}");
+        let dive = scene.swap("EPSG:32631", &working).dive();
+        let (mut low, mut high) = (f64::INFINITY, f64::NEG_INFINITY);
+        let corners = &dive.start.search_area;
+        let (west, east) = (corners[0].east_m, corners[2].east_m);
+        let (south, north) = (corners[0].north_m, corners[2].north_m);
+        let scale = dive.dead_reckoning.scale_error - 0.01;
+        for i in 0..=12 {
+            for j in 0..=12 {
+                let at = LocalPoint::new(
+                    west + (east - west) * f64::from(i) / 12.0,
+                    south + (north - south) * f64::from(j) / 12.0,
+                );
+                let from = dive.frame.to_geo(at).unwrap();
+                for k in 0..16 {
+                    let bearing_deg = 22.5 * f64::from(k);
+                    let q = Geodesic.destination(Point::new(from.lon_deg, from.lat_deg), bearing_deg, 200.0);
+                    let to = dive.frame.to_local(GeoPoint { lat_deg: q.y(), lon_deg: q.x() }).unwrap();
+                    let ratio = at.distance_m(to) / 200.0;
+                    assert!((ratio - 1.0).abs() <= scale, "{code} {at:?}: {ratio} against {scale}");
+                    let turn =
+                        (at.bearing_rad(to) - bearing_deg.to_radians() + 3.0 * PI).rem_euclid(2.0 * PI) - PI;
+                    low = if turn < low { turn } else { low };
+                    high = if turn > high { turn } else { high };
+                }
+            }
+        }
+        let added = dive.dead_reckoning.heading_noise_rad - 0.5_f64.to_radians();
+        assert!(0.5 * (high - low) <= added, "{code}: {low} to {high} against {added}");
+        assert!(added < 1.0 * (high - low), "{code}: far too wide, {low} to {high} against {added}");
+    }
 }
