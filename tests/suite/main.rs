@@ -5,8 +5,10 @@ mod export;
 mod guarantee;
 mod intervals;
 mod layers;
+mod load;
 mod one_dimension;
 mod oracle;
+mod projection;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
