@@ -12,5 +12,10 @@ mod projection;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
+#[path = "support/scanline.rs"]
+mod scanline;
 mod soundness;
 mod support;
+#[path = "support/template.rs"]
+mod template;
+mod tightness;
