@@ -11,6 +11,9 @@ use crate::report::{Parameters, Provenance};
 /// The canvas all sizes refer to: A4 landscape at 150 dots per inch.
 const REFERENCE_PX: (f64, f64) = (1754.0, 1240.0);
 
+/// How far a label of the lower edge may stick out beside the frame, pixels of the reference canvas.
+const OVERHANG_PX: f64 = 34.0;
+
 /// The three sizes of type. At print size they are 16, 9 and 7.7 points.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Sizes {
@@ -289,8 +292,8 @@ impl MapFrame {
         for (x, label) in east {
             let half = text::width(&label, font) / 2.0;
             sheet.scene.fill(Rect::new(x, bottom, x + line, bottom + 6.0 * k), INK);
-            // A label that would stick out of the frame's corner belongs to nobody.
-            if x - half >= left - 4.0 * k && x + half <= right + 4.0 * k {
+            // A label at a corner may stick out as far as the space beside the frame goes.
+            if x - half >= left - OVERHANG_PX * k && x + half <= right + OVERHANG_PX * k {
                 sheet.scene.text((x - half, labels_top), &label, font, INK);
             }
         }

@@ -26,6 +26,8 @@ struct Panel<'a> {
     note: String,
     extent: Extent,
     event: Option<&'a TraceEvent>,
+    /// Whether the ground is not that of the other frames.
+    is_close: bool,
 }
 
 /// Lays out the chart.
@@ -50,7 +52,11 @@ pub(super) fn scene(report: &TraceReport, size: &ChartSize) -> Result<Scene, Ren
         let cell = Rect::new(left, top, left + pitch_x - 16.0 * k, top + pitch_y - font.line_px() - 22.0 * k);
         let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell });
         let room = frame.rect.width();
-        let title = text::fit(&panel.title, sheet.sizes.heading(), room);
+        let mut title = panel.title.clone();
+        if panel.is_close {
+            title.push_str(&format!(", {} m wide", nice::metres(frame.width_m())));
+        }
+        let title = text::fit(&title, sheet.sizes.heading(), room);
         let note = text::fit(&panel.note, font, room);
         sheet.scene.text((frame.rect.left, cell.top), &title, sheet.sizes.heading(), INK);
         let note_top = cell.top + sheet.sizes.heading().line_px();
@@ -107,11 +113,12 @@ fn panels(report: &TraceReport) -> Result<Vec<Panel<'_>>, RenderError> {
             note: found(event),
             extent,
             event: Some(event),
+            is_close: false,
         })
         .collect();
     if panels.is_empty() {
         let (title, note) = ("No detection".to_owned(), "nothing was seen on this run".to_owned());
-        panels.push(Panel { title, note, extent, event: None });
+        panels.push(Panel { title, note, extent, event: None, is_close: false });
     }
     if let Some(last) = chosen.last() {
         let set = Extent::of(last.cell_corners.iter().flatten().chain([&last.true_position]));
@@ -125,6 +132,7 @@ fn panels(report: &TraceReport) -> Result<Vec<Panel<'_>>, RenderError> {
                 note: found(last),
                 extent: close,
                 event: Some(last),
+                is_close: true,
             });
         }
     }
@@ -203,7 +211,7 @@ fn draw_panel(sheet: &mut Sheet, frame: &MapFrame, report: &TraceReport, panel: 
     area.extend(area.first().copied());
     clipped_stroke(scene, frame, &area, thin, GREY);
     draw_landmarks(scene, frame, &report.landmarks, LANDMARK_PX * larger(1.0, k));
-    clipped_stroke(scene, frame, &frame.path(&report.path), thin, SOFT_INK);
+    clipped_stroke(scene, frame, &frame.path(&report.path), thin, INK);
     if let Some(event) = panel.event {
         for cell in &event.cell_corners {
             draw_cell(scene, frame, &frame.path(cell), k);
@@ -294,7 +302,7 @@ fn legend(sheet: &mut Sheet, top: f64) -> f64 {
                 scene.outline(rect, larger(1.0, 1.4 * k), INK);
             }
             1 => cross(scene, centre, k),
-            2 => scene.stroke(line, larger(1.0, 1.2 * k), SOFT_INK),
+            2 => scene.stroke(line, larger(1.0, 1.2 * k), INK),
             3 => scene.fill(Rect::centred(centre, 5.0 * k, 5.0 * k), GREY),
             _ => scene.stroke(line, larger(1.0, 1.2 * k), GREY),
         }
