@@ -188,6 +188,9 @@ impl Extent {
     }
 }
 
+/// A grid line: its position on the canvas along one axis, pixels, and its label.
+type Tick = (f64, String);
+
 /// A map frame: a rectangle of canvas that shows a rectangle of ground, north up, same scale both ways.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct MapFrame {
@@ -245,8 +248,8 @@ impl MapFrame {
         step
     }
 
-    /// Eastings and northings of the grid lines, as (position on the canvas, label).
-    fn ticks(&self, font: Font) -> (Vec<(f64, String)>, Vec<(f64, String)>) {
+    /// Grid lines of the eastings (by x) and of the northings (by y).
+    fn ticks(&self, font: Font) -> (Vec<Tick>, Vec<Tick>) {
         let step = self.step_m(font);
         let east = nice::multiples(step, self.west, self.west + self.width_m());
         let south = self.north - self.rect.height() / self.px_per_m;

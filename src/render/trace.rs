@@ -52,12 +52,12 @@ pub(super) fn scene(report: &TraceReport, size: &ChartSize) -> Result<Scene, Ren
         let cell = Rect::new(left, top, left + pitch_x - 16.0 * k, top + pitch_y - font.line_px() - 22.0 * k);
         let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell });
         let room = frame.rect.width();
-        let mut title = panel.title.clone();
+        let mut note = panel.note.clone();
         if panel.is_close {
-            title.push_str(&format!(", {} m wide", nice::metres(frame.width_m())));
+            note.push_str(&format!("; frame {} m wide", nice::metres(frame.width_m())));
         }
-        let title = text::fit(&title, sheet.sizes.heading(), room);
-        let note = text::fit(&panel.note, font, room);
+        let title = text::fit(&panel.title, sheet.sizes.heading(), room);
+        let note = text::fit(&note, font, room);
         sheet.scene.text((frame.rect.left, cell.top), &title, sheet.sizes.heading(), INK);
         let note_top = cell.top + sheet.sizes.heading().line_px();
         sheet.scene.text((frame.rect.left, note_top), &note, font, INK);

@@ -1,5 +1,7 @@
 //! Exporters and the writing of files.
 
+#![allow(clippy::unwrap_used, reason = "helpers of tests may panic as tests do")]
+
 use std::fs;
 use std::path::Path;
 

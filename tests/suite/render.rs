@@ -1,5 +1,7 @@
 //! Charts: the picture is decoded and its pixels are looked at; the layout's rectangles are tested on seeded scenes.
 
+#![allow(clippy::unwrap_used, reason = "helpers of tests may panic as tests do")]
+
 use std::io::Cursor;
 
 use fixability::render::{self, CLASSES, ChartSize, PlacedText, Rect, RenderError, ramp};
