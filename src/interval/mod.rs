@@ -236,7 +236,8 @@ impl std::ops::Div for Interval {
         if other.contains(0.0) {
             return Self::ENTIRE;
         }
-        let corners = [self.lo / other.lo, self.lo / other.hi, self.hi / other.lo, self.hi / other.hi];
+        let corners =
+            [self.lo / other.lo, self.lo / other.hi, self.hi / other.lo, self.hi / other.hi];
         let least = corners.into_iter().fold(f64::INFINITY, smaller);
         let most = corners.into_iter().fold(f64::NEG_INFINITY, larger);
         Self { lo: down(least), hi: up(most) }
