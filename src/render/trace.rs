@@ -17,6 +17,8 @@ const CLOSE_SHARE: f64 = 0.25;
 const CELL_LEAST_PX: f64 = 5.0;
 /// Side of the mark for a cell too small to see, pixels.
 const MARK_PX: f64 = 7.0;
+/// Gap between frames, northing labels included, at least; pixels.
+const NOTE_MARGIN_PX: f64 = 110.0;
 /// Least size of landmarks in the small frames, pixels.
 const LANDMARK_PX: f64 = 3.0;
 
@@ -26,8 +28,6 @@ struct Panel<'a> {
     note: String,
     extent: Extent,
     event: Option<&'a TraceEvent>,
-    /// Whether the ground is not that of the other frames.
-    is_close: bool,
 }
 
 /// Lays out the chart.
@@ -44,23 +44,22 @@ pub(super) fn scene(report: &TraceReport, size: &ChartSize) -> Result<Scene, Ren
     let area = Rect::new(sheet.inner.left, top + 14.0 * k, sheet.inner.right, bottom - scale_row);
     let (columns, rows) = raster(panels.len(), area);
     let (pitch_x, pitch_y) = (area.width() / columns as f64, area.height() / rows as f64);
-    let captions = sheet.sizes.heading().line_px() + font.line_px() + 6.0 * k;
+    // Notes are set narrower than any frame, so that the height they need is known before the frames are.
+    let notes: Vec<Vec<String>> =
+        panels.iter().map(|panel| text::wrap(&panel.note, font, pitch_x - NOTE_MARGIN_PX * k, 2)).collect();
+    let note_lines = notes.iter().map(Vec::len).max().unwrap_or(1);
+    let captions = sheet.sizes.heading().line_px() + note_lines as f64 * font.line_px() + 6.0 * k;
     let mut wide: Option<MapFrame> = None;
-    for (index, panel) in panels.iter().enumerate() {
+    for (index, (panel, note)) in panels.iter().zip(&notes).enumerate() {
         let (left, top) =
             (area.left + (index % columns) as f64 * pitch_x, area.top + (index / columns) as f64 * pitch_y);
         let cell = Rect::new(left, top, left + pitch_x - 16.0 * k, top + pitch_y - font.line_px() - 22.0 * k);
         let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell });
         let room = frame.rect.width();
-        let mut note = panel.note.clone();
-        if panel.is_close {
-            note.push_str(&format!("; frame {} m wide", nice::metres(frame.width_m())));
-        }
         let title = text::fit(&panel.title, sheet.sizes.heading(), room);
-        let note = text::fit(&note, font, room);
         sheet.scene.text((frame.rect.left, cell.top), &title, sheet.sizes.heading(), INK);
         let note_top = cell.top + sheet.sizes.heading().line_px();
-        sheet.scene.text((frame.rect.left, note_top), &note, font, INK);
+        sheet.scene.lines((frame.rect.left, note_top), note, font, INK);
         draw_panel(&mut sheet, &frame, report, panel);
         wide.get_or_insert(frame);
     }
@@ -113,12 +112,11 @@ fn panels(report: &TraceReport) -> Result<Vec<Panel<'_>>, RenderError> {
             note: found(event),
             extent,
             event: Some(event),
-            is_close: false,
         })
         .collect();
     if panels.is_empty() {
         let (title, note) = ("No detection".to_owned(), "nothing was seen on this run".to_owned());
-        panels.push(Panel { title, note, extent, event: None, is_close: false });
+        panels.push(Panel { title, note, extent, event: None });
     }
     if let Some(last) = chosen.last() {
         let set = Extent::of(last.cell_corners.iter().flatten().chain([&last.true_position]));
@@ -132,7 +130,6 @@ fn panels(report: &TraceReport) -> Result<Vec<Panel<'_>>, RenderError> {
                 note: found(last),
                 extent: close,
                 event: Some(last),
-                is_close: true,
             });
         }
     }
@@ -145,21 +142,22 @@ fn found(event: &TraceEvent) -> String {
         1 => "1 place".to_owned(),
         count => format!("{count} places"),
     };
-    let mut words = match event.spread_m {
+    let words = match event.spread_m {
         Some(spread) => format!("{places}, spread {} m", nice::metres(spread)),
         None => "empty set: bounds violated".to_owned(),
     };
+    let mut words = vec![words];
     if event.is_fix {
-        words.push_str(": fix");
+        words.push("fix".to_owned());
     }
     if !event.truth_inside {
-        words.push_str("; TRUTH OUTSIDE");
+        words.insert(0, "TRUTH OUTSIDE".to_owned());
     }
     let drawn = event.cell_corners.len();
     if drawn < event.cells {
-        words.push_str(&format!("; {drawn} of {} cells drawn", event.cells));
+        words.push(format!("{drawn} of {} cells drawn", event.cells));
     }
-    words
+    words.join("; ")
 }
 
 /// First and last event, the fix, and those at which the number of places changes by the largest factor.
