@@ -48,7 +48,7 @@ impl fmt::Display for Problem {
 pub struct Problems(pub Vec<Problem>);
 
 /// Something the user should know that does not stop the run.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Debug, PartialEq, serde::Serialize)]
 pub struct Notice {
     /// The file concerned, where there is one.
     pub file: Option<PathBuf>,

@@ -1,1 +1,164 @@
-//! stub
+//! Scores: what simulated dives say about a line, and one dive in detail.
+//!
+//! Everything here is *estimated* from simulated dives and carries a confidence interval.
+
+mod check;
+mod ensemble;
+mod line;
+mod rank;
+pub mod statistics;
+mod trace;
+
+pub use check::{check, line_notices};
+pub use line::score_lines;
+pub use trace::{TraceError, TraceRequest, trace};
+
+use crate::detect::Scene;
+use crate::dive::{Dive, ErrorShape};
+use crate::locate::cell::Cell;
+use crate::locate::{Bounds, Solver, SolverMap};
+use crate::report::{ChartLandmark, Parameters, Provenance};
+use crate::track::plan::Plan;
+use crate::vehicle::SonarKind;
+
+/// A dive made ready for simulation and solving.
+#[derive(Debug)]
+pub struct Setup<'a> {
+    /// What was read.
+    pub dive: &'a Dive,
+    map: SolverMap,
+}
+
+impl<'a> Setup<'a> {
+    /// Indexes the map of `dive`.
+    pub fn new(dive: &'a Dive) -> Self {
+        Self { dive, map: SolverMap::new(&dive.landmarks) }
+    }
+
+    /// What a simulated dive needs.
+    pub fn scene(&self) -> Scene<'_> {
+        Scene {
+            landmarks: &self.dive.landmarks,
+            index: self.map.index(),
+            vehicle: self.dive.vehicle,
+            dead_reckoning: self.dive.dead_reckoning,
+            sonar: self.dive.sonar,
+            scatter_m: self.dive.start.scatter_m,
+        }
+    }
+
+    /// The solver for this map and search area.
+    pub fn solver(&self) -> Solver<'_> {
+        Solver {
+            map: &self.map,
+            search_area: Cell::around_points(&self.dive.start.search_area),
+            cell_budget: self.dive.scoring.cell_budget,
+            stray_budget: 0,
+            fix_size_m: self.dive.scoring.fix_size_m,
+        }
+    }
+
+    /// The error bounds for the solver.
+    pub fn bounds(&self) -> Bounds {
+        Bounds {
+            dead_reckoning: self.dive.dead_reckoning,
+            sonar: self.dive.sonar,
+            heading_slices: HEADING_SLICES,
+        }
+    }
+
+    /// The error shape of a draw: the shapes of the dive file in turn.
+    fn shape_of(&self, draw: usize) -> ErrorShape {
+        let shapes = &self.dive.scoring.error_shapes;
+        shapes[draw % shapes.len()]
+    }
+
+    /// Length of the track on which nothing is detected because the vehicle turns, metres.
+    fn blind_turn_m(&self, plan: &Plan) -> f64 {
+        if self.dive.sonar.detect_in_turns { 0.0 } else { plan.turn_length_m() }
+    }
+
+    /// Distances along a track of `length_m` at which segments start.
+    fn segment_starts(&self, length_m: f64) -> Vec<f64> {
+        let count = (length_m / self.dive.scoring.segment_m).ceil();
+        (0..count as usize).map(|k| k as f64 * self.dive.scoring.segment_m).collect()
+    }
+
+    fn provenance(&self, schema: &'static str) -> Provenance {
+        let dive = self.dive;
+        Provenance {
+            schema,
+            schema_version: 1,
+            tool_version: env!("CARGO_PKG_VERSION"),
+            dive: dive.name.clone(),
+            inputs: dive.inputs.clone(),
+            seed: dive.scoring.seed,
+            generator: crate::detect::GENERATOR,
+            coordinate_system: dive.frame.name(),
+            caution: crate::report::CAUTION,
+        }
+    }
+
+    fn chart_landmarks(&self) -> Vec<ChartLandmark> {
+        self.dive
+            .landmarks
+            .iter()
+            .map(|landmark| ChartLandmark {
+                position: landmark.position,
+                half_width_east_m: landmark.half_width_east_m,
+                half_width_north_m: landmark.half_width_north_m,
+            })
+            .collect()
+    }
+
+    fn parameters(&self) -> Parameters {
+        let dive = self.dive;
+        let (sonar, bounds, scoring) = (&dive.sonar, &dive.dead_reckoning, &dive.scoring);
+        let (sonar_kind, sector_deg, nadir_gap_deg) = match sonar.kind {
+            SonarKind::SideLooking { nadir_gap_rad } => {
+                ("side-looking", None, Some(nadir_gap_rad.to_degrees()))
+            }
+            SonarKind::ForwardLooking { half_sector_rad } => {
+                ("forward-looking", Some(2.0 * half_sector_rad.to_degrees()), None)
+            }
+        };
+        let half_widths = || dive.landmarks.iter().flat_map(|l| [l.half_width_east_m, l.half_width_north_m]);
+        Parameters {
+            speed_mps: dive.vehicle.speed_mps,
+            turn_radius_m: dive.vehicle.turn_radius_m,
+            scale_error_pct: bounds.scale_error * 100.0,
+            heading_bias_deg: bounds.heading_bias_rad.to_degrees(),
+            heading_noise_deg: bounds.heading_noise_rad.to_degrees(),
+            drift_mps: bounds.drift_mps,
+            sonar_kind,
+            range_min_m: sonar.range_min_m,
+            range_max_m: sonar.range_max_m,
+            nearest_horizontal_m: sonar.nearest_m(),
+            farthest_horizontal_m: sonar.reach_m(),
+            sector_deg,
+            nadir_gap_deg,
+            altitude_m: sonar.altitude_m,
+            range_error_m: sonar.range_error_m,
+            range_error_pct: sonar.range_error_fraction * 100.0,
+            bearing_error_deg: sonar.bearing_error_rad.to_degrees(),
+            altitude_error_m: sonar.altitude_error_m,
+            detection_chance: sonar.detection_chance,
+            detect_in_turns: sonar.detect_in_turns,
+            landmarks: dive.landmarks.len(),
+            landmark_uncertainty: dive.uncertainty_statement.clone(),
+            half_width_min_m: half_widths().min_by(f64::total_cmp),
+            half_width_max_m: half_widths().max_by(f64::total_cmp),
+            search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
+            scatter_m: dive.start.scatter_m,
+            fix_size_m: scoring.fix_size_m,
+            required_fix_m: scoring.required_fix_m,
+            segment_m: scoring.segment_m,
+            draws: scoring.draws,
+            error_shapes: scoring.error_shapes.clone(),
+            cell_budget: scoring.cell_budget,
+        }
+    }
+}
+
+/// Slices of the heading-bias interval.
+const HEADING_SLICES: usize = 1;

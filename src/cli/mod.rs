@@ -1,1 +1,9 @@
-//! stub
+//! The command line: arguments → dive → report → files and exit code.
+//!
+//! The only place that prints, reads the command line, sets the number of threads, or decides on an exit code.
+
+mod args;
+mod run;
+mod terminal;
+
+pub use run::{Exit, main_with};

@@ -24,19 +24,35 @@ pub struct GridDistortion {
 }
 impl Frame {
     /// Plain local metres, not tied to the Earth.
-    pub fn local() -> Self { Self {} }
+    pub fn local() -> Self {
+        Self {}
+    }
     /// Projected system on the WGS 84 datum (or a datum defined to coincide with it) by EPSG code.
-    pub fn from_epsg(_code: u16) -> Result<Self, FrameError> { Err(FrameError::Stub) }
+    pub fn from_epsg(_code: u16) -> Result<Self, FrameError> {
+        Err(FrameError::Stub)
+    }
     /// The UTM zone of a position.
-    pub fn utm_for(_p: GeoPoint) -> Result<Self, FrameError> { Err(FrameError::Stub) }
+    pub fn utm_for(_p: GeoPoint) -> Result<Self, FrameError> {
+        Err(FrameError::Stub)
+    }
     /// EPSG code; none for local metres.
-    pub fn epsg(&self) -> Option<u16> { None }
+    pub fn epsg(&self) -> Option<u16> {
+        None
+    }
     /// Name in words.
-    pub fn name(&self) -> String { String::new() }
+    pub fn name(&self) -> String {
+        String::new()
+    }
     /// Geographic to working frame.
-    pub fn to_local(&self, _p: GeoPoint) -> Result<LocalPoint, FrameError> { Err(FrameError::Stub) }
+    pub fn to_local(&self, _p: GeoPoint) -> Result<LocalPoint, FrameError> {
+        Err(FrameError::Stub)
+    }
     /// Working frame to geographic; an error for local metres.
-    pub fn to_geo(&self, _p: LocalPoint) -> Result<GeoPoint, FrameError> { Err(FrameError::Stub) }
+    pub fn to_geo(&self, _p: LocalPoint) -> Result<GeoPoint, FrameError> {
+        Err(FrameError::Stub)
+    }
     /// Distortion over the hull of `points`; none for local metres.
-    pub fn distortion(&self, _points: &[LocalPoint]) -> Result<Option<GridDistortion>, FrameError> { Err(FrameError::Stub) }
+    pub fn distortion(&self, _points: &[LocalPoint]) -> Result<Option<GridDistortion>, FrameError> {
+        Err(FrameError::Stub)
+    }
 }

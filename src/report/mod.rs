@@ -231,6 +231,35 @@ pub struct LinesReport {
     pub landmarks: Vec<ChartLandmark>,
 }
 
+/// A line as understood, before it is scored.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct CheckedLine {
+    /// Name.
+    pub name: String,
+    /// Waypoints as planned.
+    pub waypoints: Vec<LocalPoint>,
+    /// Length of the planned track, m.
+    pub length_m: f64,
+    /// Landmarks expected in the swath over the whole line.
+    pub detections_expected: usize,
+    /// Distance of the line spent in turns without detections, m.
+    pub blind_turn_m: f64,
+}
+
+/// The result of `check`.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct CheckReport {
+    /// Where this comes from.
+    #[serde(flatten)]
+    pub provenance: Provenance,
+    /// What was asked.
+    pub parameters: Parameters,
+    /// The lines.
+    pub lines: Vec<CheckedLine>,
+    /// What was understood and what to watch.
+    pub notices: Vec<crate::problem::Notice>,
+}
+
 /// One event of a traced dive.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct TraceEvent {

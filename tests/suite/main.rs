@@ -1,6 +1,12 @@
 //! All integration tests in one binary.
 
 mod demo;
+mod export;
 mod intervals;
 mod one_dimension;
+mod oracle;
+mod render;
+#[path = "support/reports.rs"]
+mod reports;
+mod soundness;
 mod support;

@@ -1,4 +1,5 @@
-//! What several tests share.
+//! Helpers shared by the tests (and by the benches).
 
 pub mod demo;
 pub mod exact;
+pub mod scenes;

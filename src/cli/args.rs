@@ -1,0 +1,122 @@
+//! Arguments as typed.
+
+use std::path::PathBuf;
+
+use clap::{Args, Parser, Subcommand};
+use clap_complete::Shell;
+
+use crate::dive::RankBy;
+
+/// What `--help` teaches after the options.
+const EXIT_CODES: &str = "\
+Exit codes:
+  0    done
+  1    the requirement stated with --require is not met
+  2    the command line is wrong
+  3    an input is wrong, or a file could not be read or written
+  4    the bounds contradict the data: no position explains the detections (trace)
+  5    undecided: the solver ran out of its cell budget in some dives
+  130  interrupted
+
+Planning aid, not for navigation. Results hold only while the stated error bounds hold and the map is as
+described; they are no statement that ground is clear of objects. The vehicle's safety case, local
+regulations and qualified personnel decide.";
+
+/// Before the dive: how soon, on which line, can the vehicle find itself again from look-alike landmarks?
+#[derive(Debug, Parser)]
+#[command(name = "fixability", version, after_help = EXIT_CODES, arg_required_else_help = true)]
+pub struct Arguments {
+    /// What to do.
+    #[command(subcommand)]
+    pub command: Command,
+    /// Options of every command.
+    #[command(flatten)]
+    pub common: Common,
+}
+
+/// Options of every command.
+#[derive(Debug, Args)]
+pub struct Common {
+    /// Print nothing but results and errors: no notices, no progress bar
+    #[arg(long, short, global = true)]
+    pub quiet: bool,
+    /// Print the result as JSON on standard output instead of a table
+    #[arg(long, global = true)]
+    pub json: bool,
+    /// Replace output files that exist already
+    #[arg(long, global = true)]
+    pub force: bool,
+    /// Seed of the simulated dives, in place of the dive file's
+    #[arg(long, global = true, value_name = "NUMBER")]
+    pub seed: Option<u64>,
+    /// Threads to use; results do not depend on it [default: all cores]
+    #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..))]
+    pub threads: Option<u16>,
+}
+
+/// The commands.
+#[derive(Debug, Subcommand)]
+pub enum Command {
+    /// Read everything the dive file names, say what was understood, and warn
+    ///
+    /// Prints in words where the first landmark and the first waypoint lie (so that swapped axes show), the bounds in
+    /// force, each line with the number of landmarks expected in its swath, and every warning. Writes nothing.
+    Check {
+        /// The dive file (TOML)
+        dive: PathBuf,
+    },
+    /// Score and rank the candidate lines; draw them coloured by fix distance
+    ///
+    /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors
+    /// are solved from an unknown start, and the distance until the position is unambiguous is counted. With --out,
+    /// writes lines.json, lines.csv and lines.png.
+    Lines {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for lines.json, lines.csv and lines.png (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// What orders the ranking, in place of the dive file's
+        #[arg(long, value_enum, value_name = "KEY")]
+        rank_by: Option<RankBy>,
+        /// Simulated dives per line, in place of the dive file's
+        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u32).range(1..))]
+        draws: Option<u32>,
+        /// Exit with code 1 unless the first-ranked line fixes within the required distance in this share of dives
+        #[arg(long, value_name = "SHARE", value_parser = share)]
+        require: Option<f64>,
+    },
+    /// Follow one simulated dive of one line, detection by detection
+    ///
+    /// Shows after each detection how many places are left, how far apart they lie, and whether the true position is
+    /// among them. With --out, writes trace.json and trace.png.
+    Trace {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Name of the line [default: the first]
+        #[arg(long, value_name = "NAME")]
+        line: Option<String>,
+        /// Distance along the line at which the vehicle is lost, metres
+        #[arg(long, value_name = "METRES", default_value_t = 0.0)]
+        from_m: f64,
+        /// Number of the simulated dive, from 0
+        #[arg(long, value_name = "NUMBER", default_value_t = 0)]
+        draw: usize,
+        /// Folder for trace.json and trace.png (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+    },
+    /// Print a completion script for a shell
+    Completions {
+        /// The shell
+        shell: Shell,
+    },
+}
+
+/// Parses a share between 0 and 1.
+fn share(text: &str) -> Result<f64, String> {
+    match text.parse::<f64>() {
+        Ok(share) if (0.0..=1.0).contains(&share) => Ok(share),
+        _ => Err("accepted: a share from 0 to 1, such as 0.9".to_owned()),
+    }
+}

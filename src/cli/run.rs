@@ -1,0 +1,193 @@
+//! Runs a command.
+
+use std::path::{Path, PathBuf};
+
+use anyhow::{Context, Result};
+use clap::{CommandFactory, Parser};
+
+use super::args::{Arguments, Command, Common};
+use super::terminal::{print_notices, print_result, progress_bar};
+use crate::assess::{self, Setup, TraceRequest};
+use crate::dive::{Dive, RankBy};
+use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
+use crate::problem::Notice;
+use crate::render::{self, ChartSize};
+use crate::report::LinesReport;
+
+/// How the program ends.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Exit {
+    /// Done.
+    Done = 0,
+    /// The stated requirement is not met.
+    RequirementNotMet = 1,
+    /// Bad input or file trouble.
+    BadInput = 3,
+    /// The bounds contradict the data.
+    Contradiction = 4,
+    /// Incomplete or undecided.
+    Undecided = 5,
+}
+
+/// Parses `arguments` (the first is the program's name), runs the command, prints, and says how to exit. A wrong
+/// command line ends the process with code 2, as does `--help` with code 0.
+pub fn main_with(arguments: impl IntoIterator<Item = std::ffi::OsString>) -> Exit {
+    let arguments = Arguments::parse_from(arguments);
+    match run(&arguments) {
+        Ok(exit) => exit,
+        Err(error) => {
+            // One chain, cause after cause; standard error that cannot be written leaves nobody to tell.
+            use std::io::Write as _;
+            let _ = writeln!(std::io::stderr(), "error: {error:#}");
+            Exit::BadInput
+        }
+    }
+}
+
+fn run(arguments: &Arguments) -> Result<Exit> {
+    let common = &arguments.common;
+    if let Some(threads) = common.threads {
+        // A second call in one process (as in tests) keeps the first pool; results do not depend on it.
+        let _ = rayon::ThreadPoolBuilder::new().num_threads(usize::from(threads)).build_global();
+    }
+    match &arguments.command {
+        Command::Check { dive } => check(dive, common),
+        Command::Lines { dive, out, rank_by, draws, require } => {
+            let asked = LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
+            lines(dive, &asked, common)
+        }
+        Command::Trace { dive, line, from_m, draw, out } => {
+            let request = TraceRequest { line: line.clone(), from_m: *from_m, draw: *draw };
+            trace(dive, &request, out.as_deref(), common)
+        }
+        Command::Completions { shell } => {
+            let mut script = Vec::new();
+            clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
+            print_result(&script).context("standard output")?;
+            Ok(Exit::Done)
+        }
+    }
+}
+
+/// Reads a dive and applies the options that replace its settings.
+fn read(path: &Path, common: &Common) -> Result<Dive> {
+    let mut dive = Dive::read(path)?;
+    if let Some(seed) = common.seed {
+        dive.scoring.seed = seed;
+    }
+    Ok(dive)
+}
+
+fn check(path: &Path, common: &Common) -> Result<Exit> {
+    let dive = read(path, common)?;
+    let report = assess::check(&Setup::new(&dive));
+    if common.json {
+        print_result(&export::check_json(&report)?).context("standard output")?;
+    } else {
+        print_result(export::check_text(&report).as_bytes()).context("standard output")?;
+    }
+    Ok(Exit::Done)
+}
+
+/// What `lines` was asked beyond the dive file.
+struct LinesOptions<'a> {
+    out: Option<&'a Path>,
+    rank_by: Option<RankBy>,
+    draws: Option<u32>,
+    require: Option<f64>,
+}
+
+fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit> {
+    let mut dive = read(path, common)?;
+    if let Some(rank_by) = asked.rank_by {
+        dive.scoring.rank_by = rank_by;
+    }
+    if let Some(draws) = asked.draws {
+        dive.scoring.draws = draws as usize;
+    }
+    let setup = Setup::new(&dive);
+    print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
+    print_notices(&assess::line_notices(&setup), common.quiet);
+    if let Some(out) = asked.out {
+        export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
+    }
+    let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
+    let report = assess::score_lines(&setup, &|| bar.inc(1));
+    bar.finish_and_clear();
+    let json = LinesJson.bytes(&report)?;
+    if let Some(out) = asked.out {
+        let files = [
+            ("lines.json", json.clone()),
+            ("lines.csv", LinesCsv.bytes(&report)?),
+            ("lines.png", render::lines_png(&report, &ChartSize::default())?),
+        ];
+        export::write_all(out, &files, common.force)?;
+        say_written(out, &files.map(|(name, _)| name), common);
+    }
+    let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
+    print_result(&text).context("standard output")?;
+    Ok(lines_exit(&report, asked.require, common))
+}
+
+/// The exit code of `lines`, with the reason on standard error.
+fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
+    if let Some(required) = require {
+        let best = report.lines.iter().find(|line| line.rank == 1);
+        let reached = best.and_then(|line| line.estimated.within_required_share.value).unwrap_or(0.0);
+        if reached < required {
+            print_notices([&warning(format!(
+                "the first-ranked line fixes within the required distance in {:.1} % of dives, below the {:.1} % asked for",
+                100.0 * reached,
+                100.0 * required
+            ))], common.quiet);
+            return Exit::RequirementNotMet;
+        }
+    }
+    if report.lines.iter().any(|line| line.estimated.undecided_share > 0.0) {
+        print_notices([&warning(
+            "some dives are undecided: the solver ran out of its cell budget; they count as dives without a fix; \
+             raise scoring.cell_budget to decide them"
+                .to_owned(),
+        )], common.quiet);
+        return Exit::Undecided;
+    }
+    Exit::Done
+}
+
+fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Common) -> Result<Exit> {
+    let dive = read(path, common)?;
+    print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
+    if let Some(out) = out {
+        export::prepare(out, &["trace.json", "trace.png"], common.force)?;
+    }
+    let report = assess::trace(&Setup::new(&dive), request)?;
+    let json = TraceJson.bytes(&report)?;
+    if let Some(out) = out {
+        let files = [
+            ("trace.json", json.clone()),
+            ("trace.png", render::trace_png(&report, &ChartSize::default())?),
+        ];
+        export::write_all(out, &files, common.force)?;
+        say_written(out, &files.map(|(name, _)| name), common);
+    }
+    let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
+    print_result(&text).context("standard output")?;
+    if report.events.iter().any(|event| event.spread_m.is_none()) {
+        print_notices([&warning(
+            "no position explains the detections: the bounds contradict the data".to_owned(),
+        )], common.quiet);
+        return Ok(Exit::Contradiction);
+    }
+    Ok(if report.undecided { Exit::Undecided } else { Exit::Done })
+}
+
+fn warning(text: String) -> Notice {
+    Notice { file: None, text, is_warning: true }
+}
+
+/// Names the files written.
+fn say_written(out: &Path, names: &[&str], common: &Common) {
+    let paths: Vec<PathBuf> = names.iter().map(|name| out.join(name)).collect();
+    let text = paths.iter().map(|path| path.display().to_string()).collect::<Vec<_>>().join(", ");
+    print_notices([&Notice { file: None, text: format!("wrote {text}"), is_warning: false }], common.quiet);
+}

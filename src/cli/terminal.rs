@@ -1,0 +1,42 @@
+//! Printing: results on standard output, everything else on standard error.
+
+use std::io::{self, Write};
+
+use indicatif::{ProgressBar, ProgressDrawTarget, ProgressStyle};
+
+use crate::problem::Notice;
+
+/// Writes a result to standard output. A reader that has gone away (a closed pipe) is no error.
+///
+/// # Errors
+/// When standard output cannot be written for another reason.
+pub(super) fn print_result(text: &[u8]) -> io::Result<()> {
+    let mut out = io::stdout().lock();
+    match out.write_all(text).and_then(|()| out.flush()) {
+        Err(error) if error.kind() == io::ErrorKind::BrokenPipe => Ok(()),
+        other => other,
+    }
+}
+
+/// Writes notices to standard error, warnings marked; nothing when `quiet`.
+pub(super) fn print_notices<'a>(notices: impl IntoIterator<Item = &'a Notice>, quiet: bool) {
+    if quiet {
+        return;
+    }
+    for notice in notices {
+        let kind = if notice.is_warning { "warning" } else { "note" };
+        // Standard error that cannot be written leaves nobody to tell.
+        let _ = match &notice.file {
+            Some(file) => writeln!(io::stderr(), "{kind}: {}: {}", file.display(), notice.text),
+            None => writeln!(io::stderr(), "{kind}: {}", notice.text),
+        };
+    }
+}
+
+/// A progress bar over simulated dives on standard error; drawn only when that is a terminal and not `quiet`.
+pub(super) fn progress_bar(dives: usize, quiet: bool) -> ProgressBar {
+    let target = if quiet { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
+    let style = ProgressStyle::with_template("{bar:30} {pos}/{len} dives, {eta} left")
+        .expect("the template is fixed and valid");
+    ProgressBar::with_draw_target(Some(dives as u64), target).with_style(style)
+}

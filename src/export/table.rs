@@ -1,0 +1,224 @@
+//! Tables for the terminal. Everything but the names of lines is plain ASCII.
+
+use comfy_table::presets::ASCII_FULL_CONDENSED;
+use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
+
+use crate::report::{CheckReport, Estimate, LineReport, LinesReport, TraceReport};
+
+/// The ranking of the lines, best first. Figures are estimates from simulated dives.
+pub fn lines_table(report: &LinesReport) -> String {
+    let required = short(report.parameters.required_fix_m);
+    let with_guaranteed =
+        report.lines.iter().flat_map(|line| &line.segments).any(|segment| segment.guaranteed.is_some());
+    let mut header = vec![
+        "rank".to_owned(),
+        "line".to_owned(),
+        "length m".to_owned(),
+        format!("fix within {required} m, % of dives (95 % interval)"),
+        "median fix m".to_owned(),
+        "p95 fix m".to_owned(),
+        "no fix %".to_owned(),
+        "undecided %".to_owned(),
+    ];
+    if with_guaranteed {
+        header.push(format!("guaranteed within {required} m, % of segments"));
+    }
+    let mut table = plain(&header, 1);
+    let mut ranked: Vec<&LineReport> = report.lines.iter().collect();
+    ranked.sort_by_key(|line| line.rank);
+    for line in ranked {
+        let fix = &line.estimated;
+        let mut row = vec![
+            line.rank.to_string(),
+            printable(&line.name),
+            format!("{:.0}", line.length_m),
+            share(fix.within_required_share),
+            metres(fix.median_m.value),
+            metres(fix.p95_m.value),
+            fix.no_fix_share.value.map_or_else(none, per_cent),
+            per_cent(fix.undecided_share),
+        ];
+        if with_guaranteed {
+            row.push(guaranteed_share(line, report.parameters.required_fix_m));
+        }
+        add(&mut table, row, 1);
+    }
+    let dives: usize = report.lines.iter().map(|line| line.estimated.dives).sum();
+    format!(
+        "{}\nEstimated from {dives} simulated dives, lost at the start of any segment; p95 = 95th percentile; seed {}.\n",
+        table.trim_fmt(),
+        report.provenance.seed,
+    )
+}
+
+/// The events of one simulated dive.
+pub fn trace_table(report: &TraceReport) -> String {
+    let header = [
+        "event",
+        "run m",
+        "slant range m",
+        "bearing deg",
+        "cells",
+        "places",
+        "spread m",
+        "fix",
+        "truth inside",
+    ];
+    let mut table = plain(&header.map(str::to_owned), usize::MAX);
+    for event in &report.events {
+        let yes = |flag: bool| if flag { "yes" } else { "no" }.to_owned();
+        let row = vec![
+            event.number.to_string(),
+            format!("{:.1}", event.run_m),
+            format!("{:.2}", event.slant_range_m),
+            format!("{:.1}", event.relative_bearing_deg),
+            event.cells.to_string(),
+            event.places.to_string(),
+            event.spread_m.map_or_else(|| "empty".to_owned(), |spread| format!("{spread:.1}")),
+            yes(event.is_fix),
+            yes(event.truth_inside),
+        ];
+        add(&mut table, row, usize::MAX);
+    }
+    let verdict = match (report.undecided, report.fix_distance_m) {
+        (true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
+        (false, Some(run)) => format!("fix after {run:.1} m"),
+        (false, None) => "no fix before the line ends".to_owned(),
+    };
+    let line = printable(&report.line);
+    format!(
+        "{}\nLine {line} from {:.1} m, draw {}: {verdict}.\n",
+        table.trim_fmt(),
+        report.from_m,
+        report.draw
+    )
+}
+
+/// What was understood of a dive: notices, bounds in force, lines. The caution comes last.
+pub fn check_text(report: &CheckReport) -> String {
+    let p = &report.parameters;
+    let mut text = format!("{}
+{}
+
+", printable(&report.provenance.dive), report.provenance.coordinate_system);
+    for notice in &report.notices {
+        let kind = if notice.is_warning { "WARNING: " } else { "" };
+        text.push_str(&format!("- {kind}{}
+", printable(&notice.text)));
+    }
+    let swath = match (p.nadir_gap_deg, p.sector_deg) {
+        (Some(gap), _) => format!("nadir gap {} deg", short(gap)),
+        (_, Some(sector)) => format!("sector {} deg", short(sector)),
+        _ => String::new(),
+    };
+    text.push_str(&format!(
+        "\nVehicle         {} m/s, turn radius {} m\n\
+         Dead reckoning  scale {:.3} % of distance, heading bias {:.3} deg, noise {:.3} deg, drift {} m/s (all plus or minus)\n\
+         Sonar           {}, slant range {} to {} m, {swath}, altitude {} m: horizontal {:.1} to {:.1} m\n\
+         Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}\n\
+         Landmarks       {}; {}\n\
+         Start           search area {:.3} km2, descent scatter {} m\n\
+         Scoring         fix size {} m, required fix distance {} m, a start every {} m, {} dives per line, seed {}\n\n",
+        short(p.speed_mps),
+        short(p.turn_radius_m),
+        p.scale_error_pct,
+        p.heading_bias_deg,
+        p.heading_noise_deg,
+        short(p.drift_mps),
+        p.sonar_kind,
+        short(p.range_min_m),
+        short(p.range_max_m),
+        short(p.altitude_m),
+        p.nearest_horizontal_m,
+        p.farthest_horizontal_m,
+        short(p.range_error_m),
+        p.range_error_pct,
+        p.bearing_error_deg,
+        short(p.altitude_error_m),
+        short(p.detection_chance),
+        p.landmarks,
+        p.landmark_uncertainty,
+        p.search_area_km2,
+        short(p.scatter_m),
+        short(p.fix_size_m),
+        short(p.required_fix_m),
+        short(p.segment_m),
+        p.draws,
+        report.provenance.seed,
+    ));
+    let header = ["line", "waypoints", "length m", "detections expected", "in blind turns m"];
+    let mut table = plain(&header.map(str::to_owned), 0);
+    for line in &report.lines {
+        let row = vec![
+            printable(&line.name),
+            line.waypoints.len().to_string(),
+            format!("{:.0}", line.length_m),
+            line.detections_expected.to_string(),
+            format!("{:.0}", line.blind_turn_m),
+        ];
+        add(&mut table, row, 0);
+    }
+    text.push_str(&format!("{}\n\n{}\n", table.trim_fmt(), report.provenance.caution));
+    text
+}
+
+/// An empty table; all columns but number `left` are set to the right.
+fn plain(header: &[String], left: usize) -> Table {
+    let mut table = Table::new();
+    table.load_style(ASCII_FULL_CONDENSED).set_content_arrangement(ContentArrangement::Disabled);
+    table.set_header(cells(header.to_vec(), left));
+    table
+}
+
+fn add(table: &mut Table, row: Vec<String>, left: usize) {
+    table.add_row(cells(row, left));
+}
+
+fn cells(row: Vec<String>, left: usize) -> Vec<Cell> {
+    let aligned = |(index, text): (usize, String)| {
+        let alignment = if index == left { CellAlignment::Left } else { CellAlignment::Right };
+        Cell::new(text).set_alignment(alignment)
+    };
+    row.into_iter().enumerate().map(aligned).collect()
+}
+
+/// Share of segments with a guaranteed distance within the required one, %.
+fn guaranteed_share(line: &LineReport, required_m: f64) -> String {
+    let scored: Vec<Option<f64>> =
+        line.segments.iter().filter_map(|s| s.guaranteed.as_ref()).map(|fix| fix.distance_m).collect();
+    if scored.is_empty() {
+        return none();
+    }
+    let within = scored.iter().flatten().filter(|&&distance| distance <= required_m).count();
+    per_cent(within as f64 / scored.len() as f64)
+}
+
+fn share(estimate: Estimate) -> String {
+    let Some(value) = estimate.value else { return none() };
+    match (estimate.low, estimate.high) {
+        (Some(low), Some(high)) => format!("{} ({} to {})", per_cent(value), per_cent(low), per_cent(high)),
+        _ => per_cent(value),
+    }
+}
+
+fn per_cent(share: f64) -> String {
+    format!("{:.1}", share * 100.0)
+}
+
+fn metres(value: Option<f64>) -> String {
+    value.map_or_else(none, |value| format!("{value:.0}"))
+}
+
+fn none() -> String {
+    "none".to_owned()
+}
+
+fn short(value: f64) -> String {
+    // The shortest text that reads back as the same number.
+    value.to_string()
+}
+
+/// A name without control characters, which a terminal would obey.
+fn printable(name: &str) -> String {
+    name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect()
+}

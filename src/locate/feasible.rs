@@ -1,0 +1,161 @@
+//! The feasible set: a union of cells, its spread, and its places.
+
+use super::cell::Cell;
+use crate::interval::Interval;
+
+/// One cell of the feasible set and the history that it stands for.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct State {
+    /// Positions.
+    pub cell: Cell,
+    /// Slice of the heading bias.
+    pub slice: u16,
+    /// Detections left unexplained so far.
+    pub strays: u8,
+}
+
+/// All positions that some admissible history explains, as a union of cells.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Feasible {
+    /// The cells; they may overlap.
+    pub states: Vec<State>,
+}
+
+impl Feasible {
+    /// The smallest cell that holds the whole set; none when the set is empty.
+    pub fn hull(&self) -> Option<Cell> {
+        self.states.iter().map(|state| state.cell).reduce(|a, b| a.hull(&b))
+    }
+
+    /// Upper bound of the widest extent of the whole set, metres; none when the set is empty.
+    pub fn spread_m(&self) -> Option<f64> {
+        self.hull().map(|hull| hull.diameter_m())
+    }
+
+    /// Number of places: groups of cells in which each is within `fix_size_m` of another (by their bounding boxes,
+    /// which can only join groups that a finer distance would keep apart).
+    pub fn places(&self, fix_size_m: f64) -> usize {
+        let mut boxes: Vec<_> = self.states.iter().map(|state| state.cell.bounding_box()).collect();
+        boxes.sort_by(|a, b| a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo())));
+        let mut group: Vec<usize> = (0..boxes.len()).collect();
+        // Cells that may still be met by one farther east, westernmost reach first out.
+        let mut open: Vec<usize> = Vec::new();
+        let mut places = boxes.len();
+        for i in 0..boxes.len() {
+            open.retain(|&j| boxes[j].east.hi() + fix_size_m >= boxes[i].east.lo());
+            for &j in &open {
+                let is_near = boxes[j].north.lo() - fix_size_m <= boxes[i].north.hi()
+                    && boxes[i].north.lo() <= boxes[j].north.hi() + fix_size_m;
+                if is_near {
+                    let (a, b) = (root(&mut group, i), root(&mut group, j));
+                    if a != b {
+                        group[a] = b;
+                        places -= 1;
+                    }
+                }
+            }
+            open.push(i);
+        }
+        places
+    }
+
+    /// Drops every cell that lies inside another one with the same slice and no more strays. The union is unchanged,
+    /// and so is all that can follow from it, because moving and matching are monotone.
+    pub(super) fn drop_covered(&mut self) {
+        if self.states.len() < 2 {
+            return;
+        }
+        // Larger cells first among those that start at the same place; ties by position in the list.
+        let mut keyed: Vec<(f64, f64, State)> = self
+            .states
+            .iter()
+            .map(|&state| {
+                let east: Interval = state.cell.bounding_box().east;
+                (east.lo(), east.hi(), state)
+            })
+            .collect();
+        keyed.sort_by(|a, b| a.0.total_cmp(&b.0).then(b.1.total_cmp(&a.1)));
+        // A cell that covers another starts no farther east, so it stands before it in this order (or beside it with
+        // the same extent, in which case one of the two is kept).
+        let mut kept: Vec<State> = Vec::with_capacity(keyed.len());
+        let mut open: Vec<(f64, State)> = Vec::new();
+        for (lo, hi, state) in keyed {
+            open.retain(|(end, _)| *end >= lo);
+            let is_covered = open.iter().any(|(end, other)| {
+                *end >= hi
+                    && other.slice == state.slice
+                    && other.strays <= state.strays
+                    && other.cell.contains_cell(&state.cell)
+            });
+            if !is_covered {
+                kept.push(state);
+                open.push((hi, state));
+            }
+        }
+        self.states = kept;
+    }
+}
+
+/// Representative of a group, with path halving.
+fn root(group: &mut [usize], mut i: usize) -> usize {
+    while group[i] != i {
+        group[i] = group[group[i]];
+        i = group[i];
+    }
+    i
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::frame::LocalPoint;
+    use crate::interval::Box2;
+
+    fn state(east_m: f64, north_m: f64, half_m: f64, strays: u8) -> State {
+        State {
+            cell: Cell::from_box(Box2::around(LocalPoint::new(east_m, north_m), half_m, half_m)),
+            slice: 0,
+            strays,
+        }
+    }
+
+    #[test]
+    fn places_join_chains_and_keep_distant_groups() {
+        let set = Feasible {
+            states: vec![
+                state(0.0, 0.0, 1.0, 0),
+                state(20.0, 0.0, 1.0, 0),
+                state(0.0, 300.0, 1.0, 0),
+                state(38.0, 5.0, 1.0, 0),
+            ],
+        };
+        assert_eq!(set.places(20.0), 2);
+        assert_eq!(set.places(1.0), 4);
+        assert_eq!(Feasible::default().places(20.0), 0);
+    }
+
+    #[test]
+    fn only_covered_cells_of_the_same_kind_are_dropped() {
+        let mut set = Feasible {
+            states: vec![
+                state(0.0, 0.0, 1.0, 0),
+                state(0.0, 0.0, 2.0, 0),
+                state(0.0, 0.0, 2.0, 1),
+                state(0.0, 0.0, 3.0, 1),
+                state(2.0, 0.0, 1.0, 0),
+            ],
+        };
+        set.drop_covered();
+        // The 1 m cell and the 2 m cell with a stray are covered by the 2 m cell without; the 3 m cell and the one
+        // that sticks out are not.
+        assert_eq!(set.states.len(), 3);
+    }
+
+    #[test]
+    fn spread_is_the_distance_between_far_corners() {
+        let set = Feasible { states: vec![state(0.0, 0.0, 1.0, 0), state(100.0, 0.0, 1.0, 0)] };
+        let spread = set.spread_m().expect("not empty");
+        assert!((spread - 102.0f64.hypot(2.0)).abs() < 1e-6 && spread >= 102.0f64.hypot(2.0));
+        assert_eq!(Feasible::default().spread_m(), None);
+    }
+}

@@ -1,0 +1,132 @@
+//! From a vehicle's log to the sets of one solver step: travel and relative position, as reaches.
+//!
+//! *Travel.* The true heading at each instant is the reported one plus the bias plus noise, and the true distance the
+//! reported one times 1 ± s. The displacements over a straight piece of reported length L and heading ψ form the set
+//! ∫ ρ(l)·u(θ(l)) dl with ρ ∈ [1 − s, 1 + s], θ ∈ ψ + bias ± noise free at every l. The integral of a set-valued map
+//! is the convex hull scaled by L (Aumann 1965), so its reaches are those of the polar patch
+//! [L(1 − s), L(1 + s)] × (ψ + bias ± noise). Pieces and the drift disc add up as Minkowski sums, whose reaches add.
+//!
+//! *Bias.* One constant for the whole dive. Its interval is cut into slices; each slice is solved by itself and the
+//! answers are united. The true bias lies in one of the slices, so the truth lies in the union.
+//!
+//! *Sighting.* |measured − R| ≤ a + b·R gives R ∈ [(r − a)/(1 + b), (r + a)/(1 − b)]; horizontal range and bearing
+//! follow by interval arithmetic.
+
+use crate::detect::{Log, ReportedPiece, Sighting};
+use crate::interval::{Box2, Interval, larger};
+use crate::locate::cell::{DIRECTION_COUNT, Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
+use crate::vehicle::{DeadReckoning, Sonar, horizontal_range};
+
+/// Reported lengths and ranges are taken as exact to this, metres: an allowance for the rounding of reported values,
+/// added to every range and to every travel. One micrometre is far below any instrument and far above binary64
+/// rounding at coordinates of 10⁷ m (2 nm).
+pub const RESOLUTION_M: f64 = 1e-6;
+
+/// Reported angles are taken as exact to this, radians (a micrometre at 1 km).
+pub const RESOLUTION_RAD: f64 = 1e-9;
+
+/// Error bounds in force for a solve.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Bounds {
+    /// Of dead reckoning.
+    pub dead_reckoning: DeadReckoning,
+    /// Of the sonar (its ranges and sector are not used here, only errors and altitude).
+    pub sonar: Sonar,
+    /// Number of slices of the heading-bias interval, at least 1.
+    pub heading_slices: usize,
+}
+
+impl Bounds {
+    /// The slices of the bias interval. Neighbours share their end, so their union is the whole interval.
+    fn bias_slices(&self) -> Vec<Interval> {
+        let bias = self.dead_reckoning.heading_bias_rad;
+        let count = self.heading_slices;
+        let end = |k: usize| if k == count { bias } else { bias * (2.0 * k as f64 / count as f64 - 1.0) };
+        (0..count).map(|k| Interval::new(end(k), end(k + 1))).collect()
+    }
+}
+
+/// Relative positions of the detected landmark that a sighting allows, for one slice of the bias.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Look {
+    /// Reaches of −S: added to a landmark's box they give the positions from which it would be seen so.
+    pub from_landmark: Reaches,
+    /// A box around S, for the index.
+    pub extent: Box2,
+}
+
+/// One event as the solver sees it.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Step {
+    /// Distance along the planned track, metres.
+    pub along_m: f64,
+    /// Reaches of the displacement since the event before, by slice.
+    pub travel: Vec<Reaches>,
+    /// The sighting, by slice; none at a mark. An inner `None` means that no relative position explains the
+    /// measurement.
+    pub sighting: Option<Vec<Option<Look>>>,
+}
+
+/// Translates a log under `bounds`.
+pub fn steps(log: &Log, bounds: &Bounds) -> Vec<Step> {
+    let slices = bounds.bias_slices();
+    log.events
+        .iter()
+        .map(|event| Step {
+            along_m: event.along_m,
+            travel: slices.iter().map(|&bias| travel_reaches(&event.travel, bias, bounds)).collect(),
+            sighting: event
+                .sighting
+                .as_ref()
+                .map(|sighting| slices.iter().map(|&bias| look(sighting, bias, bounds)).collect()),
+        })
+        .collect()
+}
+
+/// Reaches of the displacements that reported pieces allow.
+fn travel_reaches(pieces: &[ReportedPiece], bias: Interval, bounds: &Bounds) -> Reaches {
+    let dead_reckoning = &bounds.dead_reckoning;
+    let heading_error = heading_error(bias, dead_reckoning);
+    let scale = Interval::around(1.0, dead_reckoning.scale_error);
+    let drift = Interval::point(dead_reckoning.drift_mps);
+    let mut total = [0.0; DIRECTION_COUNT];
+    let mut slack_m = Interval::point(RESOLUTION_M);
+    for piece in pieces {
+        let rho = Interval::point(piece.length_m) * scale;
+        let theta = Interval::point(piece.heading_rad) + heading_error;
+        add_reaches(&mut total, &polar_reaches(rho, theta));
+        slack_m = slack_m + drift * Interval::point(piece.duration_s);
+    }
+    add_reaches(&mut total, &disc_reaches(slack_m.hi()));
+    total
+}
+
+/// Bias and noise together: what the true heading may differ from the reported one.
+fn heading_error(bias: Interval, dead_reckoning: &DeadReckoning) -> Interval {
+    bias + Interval::around(0.0, dead_reckoning.heading_noise_rad) + Interval::around(0.0, RESOLUTION_RAD)
+}
+
+/// Relative positions that a sighting allows; none when no altitude within its bound reaches the slant range.
+fn look(sighting: &Sighting, bias: Interval, bounds: &Bounds) -> Option<Look> {
+    let sonar = &bounds.sonar;
+    let additive = Interval::around(0.0, sonar.range_error_m) + Interval::around(0.0, RESOLUTION_M);
+    let growth = Interval::around(1.0, sonar.range_error_fraction);
+    let measured = Interval::point(sighting.slant_range_m);
+    let slant = ((measured + additive) / growth).intersection(Interval::new(0.0, f64::INFINITY));
+    let altitude = Interval::around(sonar.altitude_m, sonar.altitude_error_m)
+        .intersection(Interval::new(0.0, f64::INFINITY));
+    let rho = horizontal_range(slant, altitude);
+    if rho.is_empty() {
+        return None;
+    }
+    let theta = Interval::point(sighting.heading_rad)
+        + Interval::point(sighting.relative_bearing_rad)
+        + Interval::around(0.0, sonar.bearing_error_rad)
+        + heading_error(bias, &bounds.dead_reckoning);
+    let s = polar_reaches(rho, theta);
+    let side = |toward: usize| {
+        let away = (toward + DIRECTION_COUNT / 2) % DIRECTION_COUNT;
+        Interval::new(-larger(s[away], -s[toward]), s[toward])
+    };
+    Some(Look { from_landmark: mirrored(&s), extent: Box2 { east: side(0), north: side(4) } })
+}

@@ -1,0 +1,38 @@
+//! Colours: ink for what was computed, mid grey for context, one accent for the requirement, one ramp.
+
+use colorous::VIRIDIS;
+
+/// Red, green, blue.
+pub(super) type Rgb = (u8, u8, u8);
+
+/// Paper.
+pub(super) const WHITE: Rgb = (255, 255, 255);
+/// What was computed, and text that must be read.
+pub(super) const INK: Rgb = (24, 32, 40);
+/// Secondary text.
+pub(super) const SOFT_INK: Rgb = (88, 98, 108);
+/// Context: landmarks.
+pub(super) const GREY: Rgb = (132, 140, 148);
+/// Grid lines and the empty part of bars.
+pub(super) const PALE: Rgb = (222, 226, 230);
+/// Bars of the ranking.
+pub(super) const BAR: Rgb = (84, 96, 108);
+/// Ground of "undecided".
+pub(super) const UNDECIDED_GROUND: Rgb = (190, 195, 200);
+/// The requirement.
+pub(super) const ACCENT: Rgb = (190, 30, 45);
+/// Feasible cells.
+pub(super) const FEASIBLE: Rgb = (150, 200, 235);
+
+/// Classes of the ramp.
+pub const CLASSES: usize = 5;
+
+/// Where the classes sample the ramp, soonest first. The bright end is left out so that the first class still shows
+/// on white; the steps are even, so grey print keeps the order and the distances.
+const SAMPLES: [f64; CLASSES] = [0.92, 0.72, 0.52, 0.31, 0.08];
+
+/// Colours of the classes, soonest (light) to latest (dark): the viridis ramp of the `colorous` crate, sequential in
+/// lightness and readable with the common kinds of colour blindness.
+pub fn ramp() -> [(u8, u8, u8); CLASSES] {
+    SAMPLES.map(|t| VIRIDIS.eval_continuous(t).as_tuple())
+}

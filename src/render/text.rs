@@ -1,0 +1,140 @@
+//! Text in one compiled-in family: measuring, cutting and wrapping with the font that is drawn.
+//!
+//! The type is DejaVu Sans from the `dejavu` crate, so pictures are the same on every machine and no system font is
+//! looked up.
+
+use std::sync::Once;
+
+use plotters::style::{FontDesc, FontFamily, FontStyle, register_font};
+
+use super::scene::{Px, Rect};
+
+/// Name under which the family is registered with the drawing library.
+const FAMILY: &str = "fixability-sans";
+/// Height of the font's line (ascent and descent) over its em, from the font's own tables: (1901 + 483) / 2048.
+/// The drawing library takes the former as the size, people speak of the latter.
+const LINE_PER_EM: f64 = 2384.0 / 2048.0;
+/// Highest ink of the Latin, Greek and Cyrillic letters with accents above the baseline, in em.
+const ASCENT_EM: f64 = 0.94;
+/// Lowest ink of the same letters under the baseline, in em.
+const DESCENT_EM: f64 = 0.24;
+/// Distance of baselines in a block, in em.
+const LEADING_EM: f64 = 1.3;
+/// A space at which no line is broken.
+const NO_BREAK: char = '\u{a0}';
+/// Units that stay with their number.
+const UNITS: [&str; 4] = ["m", "m/s", "km²", "%"];
+/// What stands for text that was cut.
+const ELLIPSIS: char = '…';
+
+/// A size and weight of the one family.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Font {
+    pub(super) em_px: f64,
+    pub(super) bold: bool,
+}
+
+impl Font {
+    pub(super) fn ascent_px(self) -> f64 {
+        self.em_px * ASCENT_EM
+    }
+
+    pub(super) fn height_px(self) -> f64 {
+        self.em_px * (ASCENT_EM + DESCENT_EM)
+    }
+
+    pub(super) fn line_px(self) -> f64 {
+        self.em_px * LEADING_EM
+    }
+
+    /// The drawing library's description of this font at `magnification`.
+    pub(super) fn description(self, magnification: f64) -> FontDesc<'static> {
+        register();
+        let style = if self.bold { FontStyle::Bold } else { FontStyle::Normal };
+        FontDesc::new(FontFamily::Name(FAMILY), self.em_px * LINE_PER_EM * magnification, style)
+    }
+}
+
+fn register() {
+    static ONCE: Once = Once::new();
+    ONCE.call_once(|| {
+        for (style, bytes) in
+            [(FontStyle::Normal, dejavu::sans::regular()), (FontStyle::Bold, dejavu::sans::bold())]
+        {
+            if register_font(FAMILY, style, bytes).is_err() {
+                unreachable!("the compiled-in font is a sound TrueType file");
+            }
+        }
+    });
+}
+
+/// Width of `text`, pixels, rounded up to the next half.
+pub(super) fn width(text: &str, font: Font) -> f64 {
+    // The library cuts its measure to whole pixels; measuring at four times the size keeps the loss under a quarter.
+    let (quarter_px, _) = font.description(4.0).box_size(text).expect("the font is registered");
+    f64::from(quarter_px) / 4.0 + 0.5
+}
+
+/// The rectangle `text` fills when its upper left corner is at `(left, top)`.
+pub(super) fn rect_at((left, top): Px, text: &str, font: Font) -> Rect {
+    Rect::new(left, top, left + width(text, font), top + font.height_px())
+}
+
+/// A name as it can be drawn on one line: control characters and runs of white space become one space.
+pub(super) fn printable(name: &str) -> String {
+    let spaced: String = name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect();
+    spaced.split_whitespace().collect::<Vec<_>>().join(" ")
+}
+
+/// `text` if it is at most `room` pixels wide, else as much of it as fits with an ellipsis, so that the cut shows.
+pub(super) fn fit(text: &str, font: Font, room: f64) -> String {
+    if width(text, font) <= room {
+        return text.to_owned();
+    }
+    let ends: Vec<usize> = text.char_indices().map(|(index, _)| index).collect();
+    let cut = |count: usize| format!("{}{ELLIPSIS}", text[..ends[count]].trim_end());
+    let fitting =
+        ends.partition_point(|&end| width(&format!("{}{ELLIPSIS}", text[..end].trim_end()), font) <= room);
+    cut(fitting.saturating_sub(1))
+}
+
+/// Breaks `text` at spaces into lines of at most `room` pixels, at most `most` of them; a line that cannot hold what
+/// is left ends in an ellipsis.
+pub(super) fn wrap(text: &str, font: Font, room: f64, most: usize) -> Vec<String> {
+    // A number stays with its unit.
+    let mut pieces: Vec<String> = Vec::new();
+    for word in text.split(' ') {
+        let is_unit = UNITS.contains(&word.trim_end_matches([',', ';', '.', ')']));
+        match pieces.last_mut() {
+            Some(number) if is_unit && number.ends_with(|c: char| c.is_ascii_digit()) => {
+                number.push(NO_BREAK);
+                number.push_str(word);
+            }
+            _ => pieces.push(word.to_owned()),
+        }
+    }
+    wrap_pieces(pieces.iter().map(String::as_str), " ", font, room, most)
+}
+
+/// As [`wrap`], but breaks only between `pieces`, joined by `glue` on a line.
+pub(super) fn wrap_pieces<'a>(
+    pieces: impl Iterator<Item = &'a str>,
+    glue: &str,
+    font: Font,
+    room: f64,
+    most: usize,
+) -> Vec<String> {
+    let mut lines: Vec<String> = Vec::new();
+    for piece in pieces {
+        let joined = lines.last().map(|line| format!("{line}{glue}{piece}"));
+        match joined {
+            Some(joined) if lines.len() >= most || width(&joined, font) <= room => {
+                if let Some(line) = lines.last_mut() {
+                    *line = joined;
+                }
+            }
+            _ => lines.push(piece.to_owned()),
+        }
+    }
+    lines.iter().map(|line| fit(line, font, room)).collect()
+}
