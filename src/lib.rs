@@ -23,6 +23,7 @@ pub mod detect;
 pub mod dive;
 pub mod export;
 pub mod frame;
+pub mod input;
 pub mod interval;
 pub mod locate;
 pub mod map;

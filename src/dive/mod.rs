@@ -1,5 +1,13 @@
 //! A dive: everything one TOML file names, read, checked, and in SI units.
 
+mod area;
+mod checks;
+mod read;
+mod section;
+mod settings;
+mod site;
+mod widen;
+
 use std::path::PathBuf;
 
 use crate::frame::{Frame, LocalPoint};

@@ -3,9 +3,18 @@
 //! *Frame.* All computation happens in one **working frame**: metres east and north, either a projected coordinate
 //! system (an EPSG code, usually a UTM zone) or plain local metres. Latitude and longitude exist only at the rim.
 
+mod crs;
+mod datum;
+mod distortion;
+mod error;
 mod projection;
 
-pub use projection::{Frame, FrameError, GridDistortion};
+pub use crs::{Crs, Given};
+pub use distortion::GridDistortion;
+pub use error::FrameError;
+pub use projection::{
+    Frame, MERIDIAN_LIMIT_DEG, MERIDIAN_WARN_DEG, UTM_NORTH_LIMIT_DEG, UTM_SOUTH_LIMIT_DEG,
+};
 
 use serde::{Deserialize, Serialize};
 

@@ -2,7 +2,11 @@
 //!
 //! *Frame.* The working frame of [`crate::frame`], metres.
 
+mod csv;
+mod geojson;
 pub mod index;
+pub mod read;
+pub mod uncertainty;
 
 use crate::frame::LocalPoint;
 use crate::interval::Box2;

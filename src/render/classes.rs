@@ -134,15 +134,39 @@ fn within(most: f64, required_m: f64) -> [f64; CLASSES] {
 
 /// `count` round limits above the requirement, the last at least `most`.
 fn above(most: f64, required_m: f64, count: usize) -> Vec<f64> {
-    let mut step = nice::step_up((most - required_m) / count as f64);
-    loop {
-        let mut first = libm::floor(required_m / step) * step + step;
-        if first - required_m < 0.3 * step {
-            first += step;
+    let width = (most - required_m) / count as f64;
+    // Classes are wider than the grain, so rounding keeps their limits apart and above the requirement.
+    let grain = nice::step_down(0.7 * width);
+    let inner = (1..count).map(|number| libm::round((required_m + width * number as f64) / grain) * grain);
+    inner.chain([libm::ceil(most / grain) * grain]).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use proptest::prelude::*;
+
+    use super::*;
+
+    proptest! {
+        #[test]
+        fn limits_ascend_hold_every_value_and_never_split_at_the_requirement(
+            values in prop::collection::vec(0.01..50_000.0_f64, 0..30),
+            required_m in 1.0..20_000.0_f64,
+        ) {
+            let limits = limits(&values, required_m);
+            prop_assert!(limits[0] > 0.0);
+            prop_assert!(limits.windows(2).all(|pair| pair[0] < pair[1]), "{limits:?}");
+            let last = limits[CLASSES - 1];
+            // A limit that is a sum of round steps may round off in its last digits.
+            prop_assert!(values.iter().all(|&value| value <= last * (1.0 + 1e-9)), "{limits:?}");
+            prop_assert!(limits.contains(&required_m) || last <= required_m, "{limits:?}");
         }
-        if first + step * (count - 1) as f64 >= most {
-            return (0..count).map(|number| first + step * number as f64).collect();
-        }
-        step = nice::step_up(step * 1.01);
+    }
+
+    #[test]
+    fn limits_are_round() {
+        assert_eq!(limits(&[80.0, 420.0, 590.0], 450.0), [150.0, 300.0, 450.0, 550.0, 600.0]);
+        assert_eq!(limits(&[80.0, 190.0], 450.0), [40.0, 80.0, 120.0, 160.0, 200.0]);
+        assert_eq!(limits(&[500.0, 880.0], 450.0)[0], 450.0);
     }
 }

@@ -1,6 +1,6 @@
 //! The chart of `lines`: which line fixes the vehicle soonest?
 
-use super::classes::Scale;
+use super::classes::{Finding, Scale};
 use super::colours::{GREY, INK, SOFT_INK};
 use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
 use super::place::Taken;
@@ -12,7 +12,7 @@ use crate::interval::larger;
 use crate::report::{ChartLandmark, LineReport, LinesReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
-pub(super) const BOX_LEAST_PX: f64 = 4.0;
+const BOX_LEAST_PX: f64 = 4.0;
 /// Widest label over the width of the frame.
 const LABEL_SHARE: f64 = 0.2;
 
@@ -37,19 +37,20 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
     sheet.foot(&report.provenance, &report.parameters, &extra_pieces(report, outside));
 
     frame.draw_ground(&mut sheet);
-    draw_landmarks(&mut sheet.scene, &frame, &report.landmarks, k);
+    draw_landmarks(&mut sheet.scene, &frame, &report.landmarks, BOX_LEAST_PX * larger(1.0, k));
     let ribbon = Ribbon { width: 10.0 * k, casing: larger(1.0, 1.5 * k), hatch: larger(1.0, 1.6 * k) };
     let mut findings = Vec::new();
     for line in &report.lines {
         ribbon.case(&mut sheet.scene, &track_px(&frame, line));
-        for (index, segment) in line.segments.iter().enumerate() {
-            let finding = scale.finding(segment);
-            findings.push(finding);
-            let path = frame.path(&segment.path);
-            if index > 0 {
-                ribbon.joint(&mut sheet.scene, &path, finding);
+        let mut before: Option<(Vec<Px>, Finding)> = None;
+        for segment in &line.segments {
+            let (path, finding) = (frame.path(&segment.path), scale.finding(segment));
+            if let Some((before, its_finding)) = &before {
+                ribbon.joint(&mut sheet.scene, before, &path, *its_finding);
             }
             ribbon.segment(&mut sheet.scene, &path, finding);
+            findings.push(finding);
+            before = Some((path, finding));
         }
     }
     draw_names(&mut sheet, &frame, report, ribbon.half());
@@ -107,9 +108,8 @@ fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport) {
     sheet.scene.text((frame.rect.left, row), &name, font, SOFT_INK);
 }
 
-/// Boxes at true size, or small squares where a box would not show.
-pub(super) fn draw_landmarks(scene: &mut Scene, frame: &MapFrame, landmarks: &[ChartLandmark], k: f64) {
-    let least = BOX_LEAST_PX * larger(1.0, k);
+/// Boxes at true size, or squares of `least` pixels where a box would not show.
+pub(super) fn draw_landmarks(scene: &mut Scene, frame: &MapFrame, landmarks: &[ChartLandmark], least: f64) {
     for landmark in landmarks {
         let width = larger(least, 2.0 * landmark.half_width_east_m * frame.px_per_m);
         let height = larger(least, 2.0 * landmark.half_width_north_m * frame.px_per_m);

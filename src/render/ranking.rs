@@ -4,7 +4,7 @@ use super::colours::{BAR, INK, PALE, SOFT_INK};
 use super::furniture::Sheet;
 use super::nice;
 use super::scene::Rect;
-use super::text;
+use super::text::{self, Font};
 use crate::dive::RankBy;
 use crate::interval::larger;
 use crate::report::{LineReport, LinesReport};
@@ -61,18 +61,18 @@ fn order_in_words(rank_by: RankBy) -> &'static str {
 }
 
 /// Rank and name; returns the name's rectangle.
-fn name(sheet: &mut Sheet, at: Rect, line: &LineReport, room: f64) -> Rect {
+fn name(sheet: &mut Sheet, at: Rect, line: &LineReport, font: Font, room: f64) -> Rect {
     let sizes = sheet.sizes;
     let left = at.left + 34.0 * sizes.k;
     sheet.scene.text((at.left, at.top), &line.rank.to_string(), sizes.body(), SOFT_INK);
-    let name = text::fit(&text::printable(&line.name), sizes.heading(), room);
-    sheet.scene.text((left, at.top), &name, sizes.heading(), INK)
+    let name = text::fit(&text::printable(&line.name), font, room);
+    sheet.scene.text((left, at.top), &name, font, INK)
 }
 
 /// Name on the first line; bar, share and percentile on the second.
 fn roomy_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
-    let k = sheet.sizes.k;
-    let name = name(sheet, at, line, at.width() - 34.0 * k);
+    let (k, font) = (sheet.sizes.k, sheet.sizes.heading());
+    let name = name(sheet, at, line, font, at.width() - 34.0 * k);
     let bar = Rect::new(name.left, name.bottom + 4.0 * k, name.left + 150.0 * k, name.bottom + 20.0 * k);
     let right = share(sheet, bar, line);
     let p95 = match line.estimated.p95_m.value {
@@ -84,18 +84,18 @@ fn roomy_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
 
 /// Everything on one line.
 fn tight_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
-    let k = sheet.sizes.k;
-    let bar_left = at.left + 200.0 * k;
-    let name = name(sheet, at, line, bar_left - at.left - 44.0 * k);
+    let (k, font) = (sheet.sizes.k, sheet.sizes.body());
+    let bar_left = at.left + 220.0 * k;
+    let name = name(sheet, at, line, font, bar_left - at.left - 42.0 * k);
     let (_, middle) = name.centre();
-    let bar = Rect::new(bar_left, middle - 7.0 * k, bar_left + 50.0 * k, middle + 7.0 * k);
+    let bar = Rect::new(bar_left, middle - 7.0 * k, bar_left + 36.0 * k, middle + 7.0 * k);
     let right = share(sheet, bar, line);
     let p95 = line
         .estimated
         .p95_m
         .value
         .map_or_else(|| "none".to_owned(), |p95| format!("{} m", nice::metres(p95)));
-    percentile(sheet, bar, larger(right + 8.0 * k, bar.right + 76.0 * k), at.right, &p95);
+    percentile(sheet, bar, larger(right + 8.0 * k, bar.right + 74.0 * k), at.right, &p95);
 }
 
 /// Bar and figure of the share; returns the figure's right edge.

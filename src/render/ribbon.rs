@@ -42,10 +42,16 @@ impl Ribbon {
         scene.stroke(ends, self.width + 2.0 * self.casing, INK);
     }
 
-    /// Rounds the corner where a segment joins the one before it; drawn before the segment itself.
-    pub(super) fn joint(&self, scene: &mut Scene, points: &[Px], finding: Finding) {
-        if let Some(&start) = points.first() {
-            scene.disc(start, self.width / 2.0, ground(finding));
+    /// Closes the outer side of the corner between two segments with the colour of the first; drawn between the two,
+    /// so that the second covers what lies on its own side.
+    pub(super) fn joint(&self, scene: &mut Scene, first: &[Px], second: &[Px], first_finding: Finding) {
+        if let ([.., a, b], [c, d, ..]) = (first, second) {
+            let (u, v) = ((b.0 - a.0, b.1 - a.1), (d.0 - c.0, d.1 - c.1));
+            let (cross, dot) = (u.0 * v.1 - u.1 * v.0, u.0 * v.0 + u.1 * v.1);
+            // Under three degrees the strokes meet without a gap.
+            if cross.abs() > 0.05 * dot.abs() || dot < 0.0 {
+                scene.disc(*b, self.width / 2.0, ground(first_finding));
+            }
         }
     }
 

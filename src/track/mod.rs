@@ -2,7 +2,11 @@
 //!
 //! *Frame.* The working frame of [`crate::frame`], metres.
 
+mod csv;
+mod geojson;
+mod gpx;
 pub mod plan;
+pub mod read;
 
 use crate::frame::LocalPoint;
 

@@ -3,6 +3,7 @@
 mod demo;
 mod export;
 mod intervals;
+mod layers;
 mod one_dimension;
 mod oracle;
 mod render;

@@ -20,6 +20,10 @@ fn write_pictures() {
     write("lines-small.png", render::lines_png(&four, &small).unwrap());
     let tall = ChartSize { width_px: 1240, height_px: 1754 };
     write("lines-tall.png", render::lines_png(&four, &tall).unwrap());
+    for count in [0, 1, 3, 9, 14] {
+        let bytes = render::trace_png(&reports::trace(count), &size).unwrap();
+        write(&format!("trace-{count}.png"), bytes);
+    }
     for seed in 0..4 {
         let bytes = render::lines_png(&reports::random_scene(seed), &size).unwrap();
         write(&format!("random-{seed}.png"), bytes);

@@ -159,3 +159,64 @@ fn random_bounds(rng: &mut ChaCha8Rng) -> Bounds {
         heading_slices: rng.random_range(1..4),
     }
 }
+
+/// A random field of `count` landmarks at 100 per km² with a straight line through its middle: the scene of the
+/// benchmarks. Side-looking sonar to 75 m, 0.3 % and 1° dead reckoning, boxes of ± 2 m.
+pub fn open_field(count: usize) -> RandomScene {
+    let mut rng = ChaCha8Rng::seed_from_u64(count as u64);
+    let side_m = 100.0 * (count as f64).sqrt();
+    let landmarks: Vec<Landmark> = (0..count)
+        .map(|i| Landmark {
+            id: i.to_string(),
+            position: LocalPoint::new(rng.random_range(0.0..side_m), rng.random_range(0.0..side_m)),
+            half_width_east_m: 2.0,
+            half_width_north_m: 2.0,
+        })
+        .collect();
+    let middle = 0.5 * side_m;
+    let line = Line {
+        name: "field".into(),
+        waypoints: vec![
+            LocalPoint::new(middle - 600.0, middle - 300.0),
+            LocalPoint::new(middle + 600.0, middle + 300.0),
+        ],
+    };
+    let degree = 1f64.to_radians();
+    RandomScene {
+        map: SolverMap::new(&landmarks),
+        landmarks,
+        plan: Plan::new(&line, 15.0),
+        line,
+        vehicle: Vehicle { speed_mps: 1.5, turn_radius_m: 15.0 },
+        bounds: Bounds {
+            dead_reckoning: DeadReckoning {
+                scale_error: 0.003,
+                heading_bias_rad: 0.7 * degree,
+                heading_noise_rad: 0.3 * degree,
+                drift_mps: 0.0,
+            },
+            sonar: Sonar {
+                kind: SonarKind::SideLooking { nadir_gap_rad: 30.0 * degree },
+                range_min_m: 0.0,
+                range_max_m: 75.0,
+                altitude_m: 15.0,
+                range_error_m: 0.5,
+                range_error_fraction: 0.005,
+                bearing_error_rad: degree,
+                altitude_error_m: 0.5,
+                detection_chance: 1.0,
+                detect_in_turns: false,
+            },
+            heading_slices: 1,
+        },
+        scatter_m: 0.0,
+        search_area: vec![
+            LocalPoint::new(0.0, 0.0),
+            LocalPoint::new(side_m, 0.0),
+            LocalPoint::new(side_m, side_m),
+            LocalPoint::new(0.0, side_m),
+        ],
+        shape: ErrorShape::Uniform,
+        fix_size_m: 25.0,
+    }
+}

@@ -1,0 +1,374 @@
+//! Checks of the whole: identifiers, uncertainty, lines, and whether map, lines and sonar fit together.
+
+use std::collections::BTreeMap;
+
+use rstar::primitives::{GeomWithData, Rectangle};
+use rstar::{AABB, RTree};
+
+use super::settings::Settings;
+use super::site::{Site, Sources, bounding};
+use crate::frame::LocalPoint;
+use crate::interval::{larger, smaller};
+use crate::map::Landmark;
+use crate::problem::{Findings, Problem};
+use crate::track::Line;
+use crate::units::{bearing_words, count_words, length_words};
+use crate::vehicle::{Sonar, SonarKind};
+
+/// Waypoints closer than this are the same point, metres: a millimetre, the last digit surveys write.
+const SAME_POINT_M: f64 = 1e-3;
+/// Most places named in one message.
+const NAMED: usize = 10;
+
+fn joined(mut names: Vec<String>) -> String {
+    let more = names.len().saturating_sub(NAMED);
+    names.truncate(NAMED);
+    let list = names.join(", ");
+    if more > 0 { format!("{list} and {more} more") } else { list }
+}
+
+/// Refuses landmarks that share an identifier.
+pub(super) fn identifiers(sources: &Sources, findings: &mut Findings) {
+    let mut seen: BTreeMap<String, Vec<usize>> = BTreeMap::new();
+    for (i, row) in sources.landmarks.rows.iter().enumerate() {
+        seen.entry(row.label()).or_default().push(i);
+    }
+    let mut twice: Vec<(usize, String, Vec<usize>)> =
+        seen.into_iter().filter(|(_, rows)| rows.len() > 1).map(|(id, rows)| (rows[0], id, rows)).collect();
+    twice.sort();
+    for (first, id, rows) in twice {
+        let places = rows.iter().map(|i| sources.landmarks.rows[*i].where_words()).collect();
+        findings.problem(
+            Problem::new(
+                &sources.landmark_file,
+                format!("the identifier \"{id}\" stands {} times: {}", rows.len(), joined(places)),
+            )
+            .line(sources.landmarks.rows[first].line)
+            .accepted("each identifier once")
+            .advice("rename or remove the duplicates"),
+        );
+    }
+}
+
+/// What is missing to turn the uncertainty figures into bounds.
+pub(super) fn missing_uncertainty(sources: &Sources, settings: &Settings) -> Option<Vec<Problem>> {
+    let rows = &sources.landmarks.rows;
+    if rows.is_empty() {
+        return None;
+    }
+    let mut problems = Vec::new();
+    let without: Vec<String> =
+        rows.iter().filter(|r| r.uncertainty_m.is_none()).map(|r| r.where_words()).collect();
+    if !without.is_empty() && settings.uncertainty_m.is_none() {
+        problems.push(
+            Problem::new(
+                &sources.landmark_file,
+                format!(
+                    "{} of {} landmarks have no uncertainty: {}",
+                    without.len(),
+                    rows.len(),
+                    joined(without)
+                ),
+            )
+            .accepted("an uncertainty for every landmark (columns uncertainty_m, or uncertainty_east_m and uncertainty_north_m)")
+            .advice("add it, or set a default with uncertainty_m = … under [map] in the dive file"),
+        );
+    }
+    if settings.declared.is_none() {
+        problems.push(
+            Problem::new(
+                &sources.dive_file,
+                "is missing: a 95 % figure is not a bound, so the file must say what its figures mean",
+            )
+            .place("key map.uncertainty")
+            .accepted("\"bound\" (hard limits), \"sigma\" (one standard deviation per axis) or \"p95\" (95 % radius)"),
+        );
+    }
+    (!problems.is_empty()).then_some(problems)
+}
+
+/// The bounds of all landmarks, true metres east and north, from the figures and the declared factor.
+pub(super) fn half_widths(
+    sources: &Sources,
+    settings: &Settings,
+    findings: &mut Findings,
+) -> Option<Vec<(f64, f64)>> {
+    let rows = &sources.landmarks.rows;
+    let factor = settings.declared.map_or(1.0, |d| d.factor());
+    let scaled = |u: f64| if factor > 1.0 { crate::interval::up(u * factor) } else { u };
+    let mut out = Vec::with_capacity(rows.len());
+    let (mut defaulted, mut zero) = (0, Vec::new());
+    for row in rows {
+        let (east, north) = match row.uncertainty_m {
+            Some(own) => own,
+            None => {
+                defaulted += 1;
+                let default = settings.uncertainty_m?;
+                (default, default)
+            }
+        };
+        if east <= 0.0 || north <= 0.0 {
+            zero.push(row.where_words());
+        }
+        out.push((scaled(east), scaled(north)));
+    }
+    let file = Some(sources.landmark_file.as_path());
+    if let Some(default) = settings.uncertainty_m.filter(|_| defaulted > 0) {
+        findings.inform(
+            file,
+            format!("{} without own uncertainty, set to {default} m", count_words(defaulted, "landmark")),
+        );
+    }
+    if !zero.is_empty() {
+        findings.warn(
+            file,
+            format!(
+                "{} with zero uncertainty, which no survey reaches: {}; results hold only if these are exact",
+                count_words(zero.len(), "landmark"),
+                joined(zero)
+            ),
+        );
+    }
+    Some(out)
+}
+
+/// Lines with distinct names, at least two waypoints and no repeated ones.
+pub(super) fn lines(site: &Site, findings: &mut Findings) -> Vec<Line> {
+    let mut out: Vec<Line> = Vec::new();
+    let mut first_use: BTreeMap<&str, String> = BTreeMap::new();
+    for line in &site.lines {
+        let problem = |what: String| {
+            Problem::new(&line.file, what).place(format!("line \"{}\" ({})", line.name, line.origin))
+        };
+        let here = format!("{}, {}", line.file.display(), line.origin);
+        if let Some(earlier) = first_use.get(line.name.as_str()) {
+            findings.problem(
+                problem(format!("the name is already used ({earlier})")).accepted("each line name once"),
+            );
+        }
+        first_use.entry(&line.name).or_insert(here);
+        if line.waypoints.len() < 2 {
+            findings.problem(
+                problem(format!("has {}", count_words(line.waypoints.len(), "waypoint")))
+                    .accepted("at least two waypoints"),
+            );
+            continue;
+        }
+        let mut kept: Vec<LocalPoint> = Vec::with_capacity(line.waypoints.len());
+        for p in &line.waypoints {
+            if kept.last().is_none_or(|last| last.distance_m(*p) >= SAME_POINT_M) {
+                kept.push(*p);
+            }
+        }
+        if kept.len() < 2 {
+            findings.problem(
+                problem(format!("has zero length: its {} waypoints are the same point", line.waypoints.len()))
+                    .accepted("at least two waypoints apart"),
+            );
+            continue;
+        }
+        let dropped = line.waypoints.len() - kept.len();
+        if dropped > 0 {
+            findings.inform(
+                Some(&line.file),
+                format!("line \"{}\": {} dropped", line.name, count_words(dropped, "repeated waypoint")),
+            );
+        }
+        out.push(Line { name: line.name.clone(), waypoints: kept });
+    }
+    out
+}
+
+/// Refuses a map and lines that lie apart by more than the sonar reaches.
+pub(super) fn meet(site: &Site, lines: &[Line], sonar: &Sonar, findings: &mut Findings) {
+    let map = bounding(site.landmarks.iter().copied());
+    let track = bounding(lines.iter().flat_map(|l| l.waypoints.iter().copied()));
+    let Some(((map_low, map_high), (low, high))) = map.zip(track) else { return };
+    let apart = |a_low: f64, a_high: f64, b_low: f64, b_high: f64| {
+        larger(0.0, larger(b_low - a_high, a_low - b_high))
+    };
+    let gap = libm::hypot(
+        apart(map_low.east_m, map_high.east_m, low.east_m, high.east_m),
+        apart(map_low.north_m, map_high.north_m, low.north_m, high.north_m),
+    );
+    if gap <= sonar.reach_m() {
+        return;
+    }
+    let middle =
+        |a: LocalPoint, b: LocalPoint| LocalPoint::new(0.5 * (a.east_m + b.east_m), 0.5 * (a.north_m + b.north_m));
+    let bearing = middle(map_low, map_high).bearing_rad(middle(low, high));
+    let file = site.lines.first().map(|l| l.file.clone()).unwrap_or_default();
+    findings.problem(
+        Problem::new(
+            file,
+            format!(
+                "lines and landmarks do not meet: the gap is {} ({gap:.0} m), the lines lie on bearing {} from the \
+                 landmarks, and the sonar reaches {}",
+                length_words(gap),
+                bearing_words(bearing),
+                length_words(sonar.reach_m())
+            ),
+        )
+        .accepted("lines within sonar reach of the mapped area")
+        .advice("check the coordinate systems of both files, and for swapped axes"),
+    );
+}
+
+/// Says what few, coincident or overlapping landmarks mean.
+pub(super) fn landmarks(sources: &Sources, landmarks: &[Landmark], findings: &mut Findings) {
+    let file = Some(sources.landmark_file.as_path());
+    match landmarks.len() {
+        0 => findings.warn(file, "no landmarks: the vehicle will never get a fix, on any line"),
+        1 => findings.warn(
+            file,
+            "one landmark: with a good heading one detection of it gives a position, as wide as its box and the sonar and \
+             heading errors; with a loose heading it gives a ring about it, and a false detection cannot be told from it",
+        ),
+        2 => findings.warn(
+            file,
+            "two landmarks: one detection leaves two places, so both must be detected on one run; with a loose heading \
+             runs in opposite directions look alike",
+        ),
+        _ => {}
+    }
+    let mut sorted: Vec<LocalPoint> = landmarks.iter().map(|l| l.position).collect();
+    sorted.sort_by(|a, b| a.east_m.total_cmp(&b.east_m).then(a.north_m.total_cmp(&b.north_m)));
+    let coincident = sorted.windows(2).filter(|w| w[0] == w[1]).count();
+    if coincident > 0 {
+        findings.warn(
+            file,
+            format!(
+                "{} at exactly the same place as another: probably the same object picked twice; kept",
+                count_words(coincident, "landmark")
+            ),
+        );
+    }
+    let tree = RTree::bulk_load(
+        landmarks
+            .iter()
+            .enumerate()
+            .map(|(i, l)| {
+                let (e, n) = (l.position.east_m, l.position.north_m);
+                let (we, wn) = (l.half_width_east_m, l.half_width_north_m);
+                GeomWithData::new(Rectangle::from_corners([e - we, n - wn], [e + we, n + wn]), i)
+            })
+            .collect(),
+    );
+    // Two hits are enough to know (the box always meets itself), so dense maps cost no more than sparse ones.
+    let overlapping = tree
+        .iter()
+        .filter(|b| {
+            let envelope = AABB::from_corners(b.geom().lower(), b.geom().upper());
+            tree.locate_in_envelope_intersecting(envelope).take(2).count() > 1
+        })
+        .count();
+    if overlapping > 0 {
+        findings.warn(
+            file,
+            format!(
+                "{} whose box overlaps another's: they cannot be told apart by position; kept",
+                count_words(overlapping, "landmark")
+            ),
+        );
+    }
+}
+
+/// Warns of lines along which nothing will be seen, with the offset that would change it.
+pub(super) fn swath(landmarks: &[Landmark], lines: &[Line], sonar: &Sonar, findings: &mut Findings) {
+    if landmarks.is_empty() {
+        return;
+    }
+    let (near, far) = (sonar.nearest_m(), sonar.reach_m());
+    let side_looking = matches!(sonar.kind, SonarKind::SideLooking { .. });
+    let tree: RTree<GeomWithData<[f64; 2], usize>> = RTree::bulk_load(
+        landmarks
+            .iter()
+            .enumerate()
+            .map(|(i, l)| GeomWithData::new([l.position.east_m, l.position.north_m], i))
+            .collect(),
+    );
+    for line in lines {
+        let seen = line.waypoints.windows(2).any(|leg| {
+            let low = [
+                smaller(leg[0].east_m, leg[1].east_m) - far,
+                smaller(leg[0].north_m, leg[1].north_m) - far,
+            ];
+            let high =
+                [larger(leg[0].east_m, leg[1].east_m) + far, larger(leg[0].north_m, leg[1].north_m) + far];
+            tree.locate_in_envelope(AABB::from_corners(low, high)).any(|p| {
+                let near_leg = NearLeg::of(leg[0], leg[1], landmarks[p.data].position);
+                (near..=far).contains(&near_leg.distance_m) && (near_leg.is_abeam || !side_looking)
+            })
+        });
+        if seen {
+            continue;
+        }
+        let Some((NearLeg { distance_m: distance, foot, .. }, landmark)) = nearest(&tree, landmarks, line) else {
+            continue;
+        };
+        let middle = 0.5 * (near + far);
+        let toward = foot.bearing_rad(landmark.position);
+        // Inside the gap the line has to move away from the landmark, beyond reach toward it.
+        let bearing = if distance < near { toward + std::f64::consts::PI } else { toward };
+        findings.warn(
+            None,
+            format!(
+                "line \"{}\": 0 detections expected, no landmark lies {} to {} from it (the nearest, {}, is {} away); an \
+                 offset of {} toward {} would bring it into the middle of the swath",
+                line.name,
+                length_words(near),
+                length_words(far),
+                landmark.id,
+                length_words(distance),
+                length_words((distance - middle).abs()),
+                bearing_words(bearing),
+            ),
+        );
+    }
+}
+
+/// The landmark nearest to a line.
+fn nearest<'l>(
+    tree: &RTree<GeomWithData<[f64; 2], usize>>,
+    landmarks: &'l [Landmark],
+    line: &Line,
+) -> Option<(NearLeg, &'l Landmark)> {
+    let mut best: Option<(NearLeg, &Landmark)> = None;
+    for leg in line.waypoints.windows(2) {
+        let middle =
+            [0.5 * (leg[0].east_m + leg[1].east_m), 0.5 * (leg[0].north_m + leg[1].north_m)];
+        let half = 0.5 * leg[0].distance_m(leg[1]);
+        // No point of the leg is farther than half its length from the middle: once landmarks are farther from the
+        // middle than that plus the best distance, none of the rest is nearer.
+        for (p, distance_2) in tree.nearest_neighbor_iter_with_distance_2(middle) {
+            if best.as_ref().is_some_and(|(b, _)| distance_2 > (half + b.distance_m).powi(2)) {
+                break;
+            }
+            let here = NearLeg::of(leg[0], leg[1], landmarks[p.data].position);
+            if best.as_ref().is_none_or(|(b, _)| here.distance_m < b.distance_m) {
+                best = Some((here, &landmarks[p.data]));
+            }
+        }
+    }
+    best
+}
+
+/// Where a point lies from a leg.
+#[derive(Clone, Copy)]
+struct NearLeg {
+    distance_m: f64,
+    /// The nearest point of the leg.
+    foot: LocalPoint,
+    /// Whether the point comes abeam somewhere along the leg.
+    is_abeam: bool,
+}
+
+impl NearLeg {
+    fn of(a: LocalPoint, b: LocalPoint, p: LocalPoint) -> Self {
+        let (de, dn) = (b.east_m - a.east_m, b.north_m - a.north_m);
+        let along = ((p.east_m - a.east_m) * de + (p.north_m - a.north_m) * dn) / (de * de + dn * dn);
+        let t = along.clamp(0.0, 1.0);
+        let foot = LocalPoint::new(a.east_m + t * de, a.north_m + t * dn);
+        Self { distance_m: foot.distance_m(p), foot, is_abeam: (0.0..=1.0).contains(&along) }
+    }
+}

@@ -1,0 +1,178 @@
+//! From the dive file to a [`Dive`]: every file read once, every problem collected before anything is refused.
+
+use std::path::{Path, PathBuf};
+
+use super::section::Document;
+use super::settings::Settings;
+use super::site::{Site, Sources};
+use super::{Dive, InputFile, Start, area, checks, widen};
+use crate::frame::Crs;
+use crate::input::InputText;
+use crate::map::Landmark;
+use crate::problem::{Findings, Problem, Problems};
+use crate::{map, track};
+
+impl Dive {
+    /// Reads a dive file and everything it names.
+    ///
+    /// # Errors
+    /// All problems found in all files, in the order the files were read. Nothing is written.
+    pub fn read(path: &Path) -> Result<Self, Problems> {
+        let mut findings = Findings::default();
+        match read(path, &mut findings) {
+            Some(dive) if findings.problems.is_empty() => Ok(dive),
+            _ => {
+                if findings.problems.is_empty() {
+                    // Every way to no dive has stated its problem; say so rather than fail in silence.
+                    findings.problem(Problem::new(path, "could not be understood"));
+                }
+                Err(Problems(findings.problems))
+            }
+        }
+    }
+}
+
+/// All inputs as text, with the settings that came from the dive file.
+struct Read {
+    settings: Settings,
+    inputs: Vec<InputFile>,
+    sources: Sources,
+    area: Option<(PathBuf, InputText)>,
+}
+
+fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
+    let read = read_files(path, findings)?;
+    if !findings.problems.is_empty() {
+        return None;
+    }
+    let Read { settings, inputs, sources, area } = read;
+    let (vehicle, sonar) = (settings.vehicle?, settings.sonar?);
+    let scatter_m = settings.scatter_m?;
+    let site = Site::place(&sources, settings.working.clone(), sonar.reach_m(), findings)?;
+    checks::identifiers(&sources, findings);
+    let lines = checks::lines(&site, findings);
+    if !findings.problems.is_empty() {
+        return None;
+    }
+    checks::meet(&site, &lines, &sonar, findings);
+    let margin_m = sonar.reach_m() + scatter_m + 2.0 * vehicle.turn_radius_m;
+    let search_area = match &area {
+        Some((_, input)) => {
+            area::read(input, settings.area_crs.as_ref(), &site.frame, &lines, scatter_m, findings)?
+        }
+        None => area::around(&site, &lines, margin_m, findings)?,
+    };
+    if !findings.problems.is_empty() {
+        return None;
+    }
+
+    let grid = widen::Grid::over(&site, &search_area, settings.seabed_depth_m, findings)?;
+    let half_widths = checks::half_widths(&sources, &settings, findings)?;
+    let landmarks: Vec<Landmark> = sources
+        .landmarks
+        .rows
+        .iter()
+        .zip(&site.landmarks)
+        .zip(half_widths)
+        .map(|((row, position), (east, north))| Landmark {
+            id: row.label(),
+            position: *position,
+            half_width_east_m: grid.half_width_m(east),
+            half_width_north_m: grid.half_width_m(north),
+        })
+        .collect();
+    let dead_reckoning = grid.dead_reckoning(settings.dead_reckoning?);
+    let widened_sonar = grid.sonar(sonar);
+
+    let uncertainty_statement = match settings.declared {
+        Some(declared) => declared.statement(landmarks.len()),
+        None => "no uncertainty is given, because there are no landmarks".into(),
+    };
+    findings.inform(Some(&sources.landmark_file), uncertainty_statement.clone());
+    grid.report(findings);
+    site.report(&sources, &lines, findings);
+    checks::landmarks(&sources, &landmarks, findings);
+    checks::swath(&landmarks, &lines, &widened_sonar, findings);
+    if !settings.turn_radius_given && lines.iter().any(|l| l.waypoints.len() > 2) {
+        findings.warn(
+            None,
+            "vehicle.turn_radius_m is not given: the vehicle is taken to turn on the spot, so no landmark is lost in a turn",
+        );
+    }
+    Some(Dive {
+        name: settings.name?,
+        path: path.to_path_buf(),
+        frame: site.frame,
+        landmarks,
+        uncertainty_statement,
+        lines,
+        vehicle,
+        dead_reckoning,
+        sonar: widened_sonar,
+        start: Start { search_area, scatter_m },
+        scoring: settings.scoring?,
+        inputs,
+        notices: std::mem::take(&mut findings.notices),
+    })
+}
+
+/// Reads the dive file and all files it names, as far as they can be read.
+fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
+    let input = InputText::read(path, path, findings)?;
+    let document = Document::parse(path, &input.text, findings)?;
+    let settings = Settings::read(&document, findings);
+    let folder = path.parent().unwrap_or_else(|| Path::new(""));
+    let name = path.file_name().map_or_else(String::new, |n| n.to_string_lossy().into_owned());
+    let mut inputs = vec![InputFile { name, sha256: input.sha256.clone() }];
+    let mut open = |name: &Path, findings: &mut Findings| {
+        let input = InputText::read(&folder.join(name), name, findings)?;
+        inputs.push(InputFile { name: name.display().to_string(), sha256: input.sha256.clone() });
+        Some(input)
+    };
+    let landmark_input = settings.landmarks.as_deref().and_then(|n| open(n, findings));
+    let mut line_inputs = Vec::new();
+    for file in &settings.line_files {
+        line_inputs.extend(open(file, findings));
+    }
+    let area =
+        settings.search_area.as_ref().and_then(|n| open(n, findings).map(|input| (n.clone(), input)));
+
+    let map_options = map::read::ReadOptions {
+        decimal_comma: settings.map_decimal_comma,
+        skip_bad_rows: settings.skip_bad_rows,
+    };
+    let landmarks = match (&landmark_input, &settings.map_crs) {
+        (Some(input), Some(crs)) => map::read::read(input, crs, map_options, findings),
+        _ => None,
+    };
+    let line_options = track::read::ReadOptions {
+        declared: settings.lines_crs.as_ref(),
+        of_map: settings.map_crs.as_ref(),
+        decimal_comma: settings.lines_decimal_comma,
+    };
+    let mut lines = Vec::new();
+    for input in &line_inputs {
+        if let Some(file) = track::read::read(input, line_options, findings) {
+            lines.push((input.name.clone(), file));
+        }
+    }
+    let sources = Sources {
+        dive_file: path.to_path_buf(),
+        landmark_file: settings.landmarks.clone()?,
+        landmarks: landmarks?,
+        lines,
+    };
+    if let Some(rows) = checks::missing_uncertainty(&sources, &settings) {
+        for problem in rows {
+            findings.problem(problem);
+        }
+    }
+    Some(Read { settings, inputs, sources, area })
+}
+
+/// The coordinate system every file was read in, for the statements about datums.
+pub(super) fn systems(sources: &Sources) -> Vec<(&Path, &Crs)> {
+    let mut all = vec![(sources.landmark_file.as_path(), &sources.landmarks.crs)];
+    all.extend(sources.lines.iter().map(|(name, file)| (name.as_path(), &file.crs)));
+    all
+}

@@ -1,0 +1,301 @@
+//! The dive file as a tree of keys with line numbers, checked against the table of keys.
+//!
+//! The tree is walked by hand instead of through `serde`, which stops at the first fault: a user with five mistakes is to
+//! see five messages.
+
+use std::path::{Path, PathBuf};
+
+use toml::Spanned;
+use toml::de::{DeTable, DeValue};
+
+use crate::bounds::{self, KEYS, Key, Kind, Need};
+use crate::frame::Crs;
+use crate::input::line_at;
+use crate::problem::{Findings, Problem};
+
+/// The parsed dive file.
+pub(super) struct Document<'a> {
+    file: &'a Path,
+    text: &'a str,
+    root: DeTable<'a>,
+}
+
+type Value<'a> = Spanned<DeValue<'a>>;
+
+impl<'a> Document<'a> {
+    /// Parses the text; syntax errors and unknown keys become findings. None when nothing can be made of it.
+    pub(super) fn parse(file: &'a Path, text: &'a str, findings: &mut Findings) -> Option<Self> {
+        let (root, errors) = DeTable::parse_recoverable(text);
+        for e in &errors {
+            let at = e.span().map_or(0, |s| s.start);
+            let line = line_at(text, at);
+            let shown = text.lines().nth(line as usize - 1).unwrap_or("").trim();
+            findings.problem(
+                Problem::new(file, format!("\"{shown}\": {}", e.message().replace('\n', ", ")))
+                    .line(line)
+                    .accepted("TOML: [table] headers and key = value lines"),
+            );
+        }
+        let document = Self { file, text, root: root.into_inner() };
+        if !errors.is_empty() {
+            // What recovery made of a broken file may lack keys that are there: no further messages.
+            return None;
+        }
+        document.check_names(findings);
+        Some(document)
+    }
+
+    /// Refuses keys and tables that are not in the table of keys, with the nearest one that is.
+    fn check_names(&self, findings: &mut Findings) {
+        let sections: Vec<&str> = {
+            let mut all: Vec<&str> = KEYS.iter().map(|k| k.section).filter(|s| !s.is_empty()).collect();
+            all.dedup();
+            all
+        };
+        for (key, value) in &self.root {
+            let name: &str = key.get_ref();
+            let line = line_at(self.text, key.span().start);
+            match value.get_ref() {
+                DeValue::Table(table) if sections.contains(&name) => {
+                    for inner in table.keys() {
+                        let inner_name: &str = inner.get_ref();
+                        if !KEYS.iter().any(|k| k.section == name && k.name == inner_name) {
+                            findings.problem(self.unknown(
+                                name,
+                                inner_name,
+                                line_at(self.text, inner.span().start),
+                            ));
+                        }
+                    }
+                }
+                DeValue::Table(_) => {
+                    let nearest = nearest(name, &sections);
+                    findings.problem(
+                        Problem::new(self.file, format!("the table [{name}] is not known"))
+                            .line(line)
+                            .accepted(format!("[{}]", sections.join("], [")))
+                            .advice(nearest.map_or_else(String::new, |n| format!("did you mean [{n}]?"))),
+                    );
+                }
+                _ if sections.contains(&name) => findings.problem(
+                    Problem::new(self.file, "is a value where a table is needed")
+                        .line(line)
+                        .place(format!("key {name}"))
+                        .accepted(format!("a table header [{name}] with keys below it")),
+                ),
+                _ if !KEYS.iter().any(|k| k.section.is_empty() && k.name == name) => {
+                    findings.problem(self.unknown("", name, line));
+                }
+                _ => {}
+            }
+        }
+    }
+
+    fn unknown(&self, section: &str, name: &str, line: u64) -> Problem {
+        let full = if section.is_empty() { name.to_owned() } else { format!("{section}.{name}") };
+        let problem =
+            Problem::new(self.file, "is not known and would have no effect").line(line).place(format!("key {full}"));
+        if let Some(elsewhere) = KEYS.iter().find(|k| k.name == name && k.section != section) {
+            let home = if elsewhere.section.is_empty() {
+                "at the top of the file".to_owned()
+            } else {
+                format!("in [{}]", elsewhere.section)
+            };
+            return problem.advice(format!("{name} belongs {home}"));
+        }
+        let here: Vec<&str> = KEYS.iter().filter(|k| k.section == section).map(|k| k.name).collect();
+        match nearest(name, &here) {
+            Some(n) => problem.advice(format!("did you mean {n}?")),
+            None => problem.accepted(here.join(", ")),
+        }
+    }
+
+    fn value(&self, section: &str, name: &str) -> Option<&Value<'a>> {
+        if section.is_empty() {
+            return self.root.get(name);
+        }
+        match self.root.get(section)?.get_ref() {
+            DeValue::Table(table) => table.get(name),
+            _ => None,
+        }
+    }
+
+    /// Whether the file has the key.
+    pub(super) fn has(&self, section: &str, name: &str) -> bool {
+        self.value(section, name).is_some()
+    }
+
+    /// A problem at the value of a key, or at the key's table, or at the file when neither is there.
+    pub(super) fn problem(&self, section: &str, name: &str, what: impl Into<String>) -> Problem {
+        let key = bounds::find(section, name);
+        let at = self.value(section, name).or_else(|| self.root.get(section)).map(Spanned::span);
+        Problem::new(self.file, what)
+            .line(at.map(|s| line_at(self.text, s.start)))
+            .place(format!("key {}", key.full_name()))
+    }
+
+    fn source(&self, value: &Value<'_>) -> &str {
+        self.text.get(value.span()).unwrap_or("")
+    }
+
+    /// The value of a key when it is there; a finding when it is required and is not.
+    fn lookup(&self, key: &Key, findings: &mut Findings) -> Option<&Value<'a>> {
+        let value = self.value(key.section, key.name);
+        if value.is_none() && key.need == Need::Required {
+            let mut problem = self.problem(key.section, key.name, "is missing").accepted(key.accepted());
+            if key.full_name() == "map.crs" {
+                problem = problem.advice(
+                    "without it the numbers have no meaning; write one of: crs = \"EPSG:4326\" for latitude and \
+                     longitude, crs = \"EPSG:32631\" (the code of your grid) for eastings and northings, crs = \
+                     \"local\" for plain metres",
+                );
+            } else {
+                problem = problem.advice(format!("{} Add it", key.meaning));
+            }
+            findings.problem(problem);
+        }
+        value
+    }
+
+    fn wrong(&self, key: &Key, value: &Value<'_>, why: &str, findings: &mut Findings) {
+        findings.problem(
+            self.problem(key.section, key.name, format!("{} {why}", self.source(value))).accepted(key.accepted()),
+        );
+    }
+
+    /// A number, its default, or none.
+    pub(super) fn number(&self, section: &str, name: &str, findings: &mut Findings) -> Option<f64> {
+        let key = bounds::find(section, name);
+        let (Kind::Number(range) | Kind::Whole(range)) = key.kind else {
+            panic!("{} is not a number in the table of keys", key.full_name())
+        };
+        let Some(value) = self.lookup(key, findings) else {
+            return match key.need {
+                Need::Default(text) => text.parse().ok(),
+                _ => None,
+            };
+        };
+        let whole = matches!(key.kind, Kind::Whole(_));
+        let x = match value.get_ref() {
+            DeValue::Integer(i) => {
+                i64::from_str_radix(i.as_str(), i.radix()).ok().map_or(f64::INFINITY, |i| i as f64)
+            }
+            DeValue::Float(f) if !whole => f.as_str().parse().unwrap_or(f64::NAN),
+            DeValue::Float(_) => {
+                self.wrong(key, value, "is not a whole number", findings);
+                return None;
+            }
+            _ => {
+                self.wrong(key, value, "is not a number", findings);
+                return None;
+            }
+        };
+        if range.contains(x) {
+            return Some(x);
+        }
+        let why = if x.is_finite() { "is out of range" } else { "is not a finite number in range" };
+        self.wrong(key, value, why, findings);
+        None
+    }
+
+    /// A text, or none.
+    pub(super) fn text(&self, section: &str, name: &str, findings: &mut Findings) -> Option<String> {
+        let key = bounds::find(section, name);
+        let Some(value) = self.lookup(key, findings) else {
+            return match key.need {
+                Need::Default(text) => Some(text.trim_matches('"').to_owned()),
+                _ => None,
+            };
+        };
+        let DeValue::String(text) = value.get_ref() else {
+            self.wrong(key, value, "is not text", findings);
+            return None;
+        };
+        if text.trim().is_empty() {
+            self.wrong(key, value, "is empty", findings);
+            return None;
+        }
+        if let Kind::Choice(words) = key.kind
+            && !words.contains(&text.as_ref())
+        {
+            self.wrong(key, value, "is not one of the choices", findings);
+            return None;
+        }
+        Some(text.trim().to_owned())
+    }
+
+    /// `true` or `false`.
+    pub(super) fn flag(&self, section: &str, name: &str, findings: &mut Findings) -> bool {
+        let key = bounds::find(section, name);
+        match self.lookup(key, findings).map(|v| (v, v.get_ref())) {
+            None => key.need == Need::Default("true"),
+            Some((_, DeValue::Boolean(b))) => *b,
+            Some((value, _)) => {
+                self.wrong(key, value, "is neither true nor false", findings);
+                false
+            }
+        }
+    }
+
+    /// A list of texts; one text alone counts as a list of one.
+    pub(super) fn list(&self, section: &str, name: &str, findings: &mut Findings) -> Option<Vec<String>> {
+        let key = bounds::find(section, name);
+        let value = self.lookup(key, findings)?;
+        let items: Vec<&Value<'_>> = match value.get_ref() {
+            DeValue::String(_) => vec![value],
+            DeValue::Array(items) => items.iter().collect(),
+            _ => {
+                self.wrong(key, value, "is not a list", findings);
+                return None;
+            }
+        };
+        let mut out = Vec::new();
+        for item in &items {
+            match item.get_ref() {
+                DeValue::String(text)
+                    if !matches!(key.kind, Kind::Choices(words) if !words.contains(&text.as_ref())) =>
+                {
+                    out.push(text.trim().to_owned());
+                }
+                DeValue::String(_) => self.wrong(key, item, "is not one of the choices", findings),
+                _ => self.wrong(key, item, "is not text", findings),
+            }
+        }
+        if items.is_empty() {
+            self.wrong(key, value, "is empty", findings);
+        }
+        (out.len() == items.len() && !out.is_empty()).then_some(out)
+    }
+
+    /// A coordinate system, or none.
+    pub(super) fn crs(&self, section: &str, name: &str, findings: &mut Findings) -> Option<Crs> {
+        let text = self.text(section, name, findings)?;
+        match Crs::parse(&text) {
+            Ok(crs) => Some(crs),
+            Err(e) => {
+                let key = bounds::find(section, name);
+                findings.problem(
+                    self.problem(section, name, format!("\"{text}\" cannot be used: {e}")).accepted(key.accepted()),
+                );
+                None
+            }
+        }
+    }
+
+    /// A file name, or none.
+    pub(super) fn file(&self, section: &str, name: &str, findings: &mut Findings) -> Option<PathBuf> {
+        self.text(section, name, findings).map(PathBuf::from)
+    }
+}
+
+/// The nearest of some words by edit distance with swaps, if it is near at all.
+fn nearest<'w>(word: &str, words: &[&'w str]) -> Option<&'w str> {
+    /// Share of letters that must agree for a suggestion to help rather than puzzle.
+    const NEAR: f64 = 0.4;
+    words
+        .iter()
+        .map(|w| (strsim::normalized_damerau_levenshtein(word, w), *w))
+        .max_by(|a, b| a.0.total_cmp(&b.0))
+        .filter(|(score, _)| *score >= NEAR)
+        .map(|(_, w)| w)
+}

@@ -1,0 +1,242 @@
+//! Separated-value tables: separator, header with aliases, rows with their line numbers.
+//!
+//! The `csv` crate splits the text; this module adds what it leaves to the caller: which separator, which column means
+//! what, how many fields a row must have, and the true line of a row after blank lines.
+
+use std::path::{Path, PathBuf};
+
+use super::InputText;
+use crate::problem::{Findings, Problem};
+
+/// A column the reader knows, with the names it goes by.
+#[derive(Clone, Copy, Debug)]
+pub struct Column {
+    /// What the reader calls it.
+    pub key: &'static str,
+    /// Names accepted in the header, lower case; earlier ones win where `one_only` is not set.
+    pub names: &'static [&'static str],
+    /// Whether two columns with names from the list are a mistake (true) or the first name wins (false).
+    pub one_only: bool,
+}
+
+/// A table read from a file.
+#[derive(Debug)]
+pub struct Table {
+    /// Name of the file.
+    pub file: PathBuf,
+    /// The header as written.
+    pub header: Vec<String>,
+    /// Rows that have as many fields as the header.
+    pub rows: Vec<Row>,
+    /// Rows that have not.
+    pub misfits: Vec<Problem>,
+    found: Vec<(&'static str, usize)>,
+}
+
+/// One row.
+#[derive(Debug)]
+pub struct Row {
+    /// Line on which it starts, from 1.
+    pub line: u64,
+    record: csv::StringRecord,
+}
+
+impl Row {
+    /// Text of a field, without surrounding blanks.
+    pub fn text(&self, column: usize) -> &str {
+        self.record.get(column).unwrap_or("").trim()
+    }
+}
+
+const SEPARATORS: [u8; 3] = [b',', b';', b'\t'];
+
+impl Table {
+    /// Splits a text into header and rows. None, with findings, when there is no header to work with.
+    pub fn read(input: &InputText, columns: &[Column], findings: &mut Findings) -> Option<Self> {
+        let file = input.name.as_path();
+        let Some(separator) = sniff(input, columns, findings) else {
+            return None;
+        };
+        let mut reader = csv::ReaderBuilder::new()
+            .delimiter(separator)
+            .has_headers(false)
+            .flexible(true)
+            .from_reader(input.text.as_bytes());
+        let mut header = None;
+        let mut rows = Vec::new();
+        let mut misfits = Vec::new();
+        let mut blank = 0usize;
+        let mut lines = LineCounter::new(&input.text);
+        for record in reader.records() {
+            let record = match record {
+                Ok(record) => record,
+                Err(e) => {
+                    findings.problem(Problem::new(file, format!("cannot be split into fields: {e}")));
+                    break;
+                }
+            };
+            let line = lines.line_of(record.position().map_or(0, csv::Position::byte) as usize);
+            let Some(width) = header.as_ref().map(Vec::len) else {
+                header = Some(record.iter().map(|f| f.trim().to_owned()).collect());
+                continue;
+            };
+            if record.iter().all(|f| f.trim().is_empty()) {
+                blank += 1;
+            } else if record.len() != width {
+                misfits.push(
+                    Problem::new(file, format!("the row has {} fields, the header {width}", record.len()))
+                        .line(line)
+                        .accepted(format!("{width} fields"))
+                        .advice(
+                            "quote fields that contain the separator; with decimal commas, separate by semicolons",
+                        ),
+                );
+            } else {
+                rows.push(Row { line, record });
+            }
+        }
+        if blank > 0 {
+            let n = crate::units::count_words(blank, "row");
+            findings.inform(Some(file), format!("{n} without any text skipped"));
+        }
+        let header: Vec<String> = header?;
+        let found = find_columns(file, &header, columns, findings)?;
+        Some(Self { file: file.to_path_buf(), header, rows, misfits, found })
+    }
+
+    /// Position of a column, if the file has it.
+    pub fn column(&self, key: &str) -> Option<usize> {
+        self.found.iter().find(|(k, _)| *k == key).map(|(_, i)| *i)
+    }
+
+    /// `column northing_m`, with the name as the file writes it.
+    pub fn place(&self, column: usize) -> String {
+        format!("column {}", self.header[column])
+    }
+
+    /// Tells which columns were not used, `used` being those that were.
+    pub fn report_unused(&self, used: &[usize], findings: &mut Findings) {
+        let names: Vec<&str> = (0..self.header.len())
+            .filter(|i| !used.contains(i))
+            .map(|i| self.header[i].as_str())
+            .filter(|n| !n.is_empty())
+            .collect();
+        if !names.is_empty() {
+            findings.inform(Some(&self.file), format!("columns not used: {}", names.join(", ")));
+        }
+    }
+}
+
+/// Lower case, blanks and hyphens to underscores, so that `Easting (m)`-like spellings stay readable in the alias list.
+fn normal(name: &str) -> String {
+    name.trim().to_lowercase().replace([' ', '-'], "_")
+}
+
+/// The separator under which the header makes most sense; refused when two make equal sense.
+fn sniff(input: &InputText, columns: &[Column], findings: &mut Findings) -> Option<u8> {
+    let file = input.name.as_path();
+    let Some((at, first)) = input.text.lines().enumerate().find(|(_, l)| !l.trim().is_empty()) else {
+        findings.problem(
+            Problem::new(file, "is empty").accepted("a header line with column names, then one row per entry"),
+        );
+        return None;
+    };
+    let known = |separator: u8| {
+        first
+            .split(char::from(separator))
+            .filter(|f| {
+                let name = normal(f.trim().trim_matches('"'));
+                columns.iter().any(|c| c.names.contains(&name.as_str()))
+            })
+            .count()
+    };
+    let scores = SEPARATORS.map(known);
+    let best = scores.iter().copied().fold(0, Ord::max);
+    let winners: Vec<u8> =
+        SEPARATORS.iter().zip(scores).filter(|(_, s)| *s == best).map(|(b, _)| *b).collect();
+    if best == 0 {
+        let names: Vec<&str> = columns.iter().map(|c| c.names[0]).collect();
+        let shown: String = first.chars().take(80).collect();
+        findings.problem(
+            Problem::new(file, format!("the header \"{shown}\" names no known column"))
+                .line(at as u64 + 1)
+                .accepted(format!("columns separated by comma, semicolon or tab, such as {}", names.join(", ")))
+                .advice("put a header line with column names at the top"),
+        );
+        return None;
+    }
+    // With a single known column every separator finds it: take the one that occurs, else the comma.
+    let occurring: Vec<u8> = winners.iter().copied().filter(|b| first.as_bytes().contains(b)).collect();
+    match (winners.as_slice(), occurring.as_slice()) {
+        ([one], _) | (_, [one]) => Some(*one),
+        (_, []) => Some(b','),
+        _ => {
+            findings.problem(
+                Problem::new(file, "the header mixes separators, so the columns cannot be told apart")
+                    .line(at as u64 + 1)
+                    .accepted("one of comma, semicolon or tab between all columns"),
+            );
+            None
+        }
+    }
+}
+
+fn find_columns(
+    file: &Path,
+    header: &[String],
+    columns: &[Column],
+    findings: &mut Findings,
+) -> Option<Vec<(&'static str, usize)>> {
+    let names: Vec<String> = header.iter().map(|h| normal(h)).collect();
+    let mut found = Vec::new();
+    let mut sound = true;
+    for column in columns {
+        let mut hits: Vec<usize> = column
+            .names
+            .iter()
+            .flat_map(|n| names.iter().enumerate().filter(move |(_, h)| h == n).map(|(i, _)| i))
+            .collect();
+        let first_name = hits.first().map(|i| names[*i].clone());
+        if !column.one_only {
+            hits.retain(|i| Some(&names[*i]) == first_name.as_ref());
+        }
+        if hits.len() > 1 {
+            hits.sort_unstable();
+            let twice = hits.iter().map(|i| header[*i].as_str()).collect::<Vec<_>>().join("\" and \"");
+            findings.problem(
+                Problem::new(file, format!("the columns \"{twice}\" mean the same"))
+                    .line(1)
+                    .accepted("one of them")
+                    .advice("rename or remove the other"),
+            );
+            sound = false;
+        }
+        if let Some(i) = hits.first() {
+            found.push((column.key, *i));
+        }
+    }
+    sound.then_some(found)
+}
+
+/// Turns growing byte offsets into line numbers, skipping the line ends that precede a record.
+struct LineCounter<'a> {
+    bytes: &'a [u8],
+    at: usize,
+    line: u64,
+}
+
+impl<'a> LineCounter<'a> {
+    fn new(text: &'a str) -> Self {
+        Self { bytes: text.as_bytes(), at: 0, line: 1 }
+    }
+
+    fn line_of(&mut self, offset: usize) -> u64 {
+        while self.at < self.bytes.len() && (self.at < offset || matches!(self.bytes[self.at], b'\r' | b'\n')) {
+            if self.bytes[self.at] == b'\n' {
+                self.line += 1;
+            }
+            self.at += 1;
+        }
+        self.line
+    }
+}

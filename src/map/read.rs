@@ -1,0 +1,78 @@
+//! Landmark files: what every format has in common.
+
+use super::{csv, geojson};
+use crate::frame::{Crs, Given};
+use crate::input::{Format, InputText};
+use crate::problem::{Findings, Problem};
+
+/// A landmark as its file gives it: not yet in the working frame, its uncertainty not yet a bound.
+#[derive(Clone, Debug, PartialEq)]
+pub struct LandmarkRow {
+    /// Line in the file, for tables.
+    pub line: Option<u64>,
+    /// Place in the file, where there are no lines: `feature 3`.
+    pub place: Option<String>,
+    /// Identifier; none where the file has none.
+    pub id: Option<String>,
+    /// Position in the file's coordinate system.
+    pub position: Given,
+    /// Uncertainty east and north as written, metres.
+    pub uncertainty_m: Option<(f64, f64)>,
+}
+
+impl LandmarkRow {
+    /// The identifier, or the row or feature it stands in.
+    pub fn label(&self) -> String {
+        self.id.clone().or_else(|| self.line.map(|l| format!("row {l}"))).unwrap_or_else(|| self.where_words())
+    }
+
+    /// `line 17` or `feature 3`.
+    pub fn where_words(&self) -> String {
+        match (&self.place, self.line) {
+            (Some(place), _) => place.clone(),
+            (None, Some(line)) => format!("line {line}"),
+            (None, None) => "the file".into(),
+        }
+    }
+}
+
+/// All landmarks of a file.
+#[derive(Clone, Debug, PartialEq)]
+pub struct LandmarkFile {
+    /// The coordinate system of the positions.
+    pub crs: Crs,
+    /// In file order.
+    pub rows: Vec<LandmarkRow>,
+}
+
+/// How to read a landmark file.
+#[derive(Clone, Copy, Debug, Default)]
+pub struct ReadOptions {
+    /// Numbers are written with a decimal comma.
+    pub decimal_comma: bool,
+    /// Bad rows are left out and counted.
+    pub skip_bad_rows: bool,
+}
+
+/// Reads the landmarks of a file whose coordinate system the dive file states. None, with findings, when the file
+/// cannot be used.
+pub fn read(
+    input: &InputText,
+    crs: &Crs,
+    options: ReadOptions,
+    findings: &mut Findings,
+) -> Option<LandmarkFile> {
+    let before = findings.problems.len();
+    let file = match input.format() {
+        Some(Format::Csv) => csv::read(input, crs, options, findings),
+        Some(Format::GeoJson) => geojson::read(input, crs, options, findings),
+        Some(Format::Gpx) | None => {
+            findings.problem(
+                Problem::new(&input.name, "is in no format that holds landmarks")
+                    .accepted("CSV (.csv, .tsv, .txt) or GeoJSON points (.geojson, .json)"),
+            );
+            None
+        }
+    };
+    file.filter(|_| findings.problems.len() == before)
+}
