@@ -53,7 +53,8 @@ fn run(arguments: &Arguments) -> Result<Exit> {
     match &arguments.command {
         Command::Check { dive } => check(dive, common),
         Command::Lines { dive, out, rank_by, draws, require } => {
-            let asked = LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
+            let asked =
+                LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
             lines(dive, &asked, common)
         }
         Command::Trace { dive, line, from_m, draw, out } => {
@@ -135,11 +136,14 @@ fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Ex
         let best = report.lines.iter().find(|line| line.rank == 1);
         let reached = best.and_then(|line| line.estimated.within_required_share.value).unwrap_or(0.0);
         if reached < required {
-            print_notices([&warning(format!(
-                "the first-ranked line fixes within the required distance in {:.1} % of dives, below the {:.1} % asked for",
-                100.0 * reached,
-                100.0 * required
-            ))], common.quiet);
+            print_notices(
+                [&warning(format!(
+                    "the first-ranked line fixes within the required distance in {:.1} % of dives, below the {:.1} % asked for",
+                    100.0 * reached,
+                    100.0 * required
+                ))],
+                common.quiet,
+            );
             return Exit::RequirementNotMet;
         }
     }
@@ -163,19 +167,18 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     let report = assess::trace(&Setup::new(&dive), request)?;
     let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
-        let files = [
-            ("trace.json", json.clone()),
-            ("trace.png", render::trace_png(&report, &ChartSize::default())?),
-        ];
+        let files =
+            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &ChartSize::default())?)];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
     }
     let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.events.iter().any(|event| event.spread_m.is_none()) {
-        print_notices([&warning(
-            "no position explains the detections: the bounds contradict the data".to_owned(),
-        )], common.quiet);
+        print_notices(
+            [&warning("no position explains the detections: the bounds contradict the data".to_owned())],
+            common.quiet,
+        );
         return Ok(Exit::Contradiction);
     }
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })

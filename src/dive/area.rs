@@ -66,7 +66,8 @@ pub(super) fn read(
         findings.problem(problem(&format!("has {} features", content.list.len())));
         return None;
     };
-    let Some(GeometryValue::Polygon { coordinates }) = only.feature.geometry.as_ref().map(|g| &g.value) else {
+    let Some(GeometryValue::Polygon { coordinates }) = only.feature.geometry.as_ref().map(|g| &g.value)
+    else {
         findings.problem(problem("holds no Polygon").place("feature 1"));
         return None;
     };
@@ -78,8 +79,8 @@ pub(super) fn read(
     let mut corners: Vec<LocalPoint> = Vec::new();
     for (i, position) in coordinates.first().map_or(&[][..], Vec::as_slice).iter().enumerate() {
         let place = format!("corner {}", i + 1);
-        let given = features::xy(position)
-            .and_then(|(x, y)| check.pair(x, y, None, &place, &place, &mut problems));
+        let given =
+            features::xy(position).and_then(|(x, y)| check.pair(x, y, None, &place, &place, &mut problems));
         match given.map(|g: Given| crs.to_frame(g, frame)) {
             Some(Ok(p)) if corners.last() != Some(&p) => corners.push(p),
             Some(Ok(_)) | None => {}
@@ -142,8 +143,7 @@ fn cross(a: LocalPoint, b: LocalPoint, c: LocalPoint) -> f64 {
 fn is_convex(corners: &[LocalPoint]) -> bool {
     let n = corners.len();
     let turns = (0..n).map(|i| cross(corners[i], corners[(i + 1) % n], corners[(i + 2) % n]));
-    let (left, right) =
-        turns.fold((false, false), |(l, r), t| (l || t > 0.0, r || t < 0.0));
+    let (left, right) = turns.fold((false, false), |(l, r), t| (l || t > 0.0, r || t < 0.0));
     // A ring that crosses itself may turn one way only and yet be no convex polygon; its hull has fewer corners.
     !(left && right) && convex_hull(corners).len() == n
 }

@@ -162,8 +162,11 @@ pub(super) fn lines(site: &Site, findings: &mut Findings) -> Vec<Line> {
         }
         if kept.len() < 2 {
             findings.problem(
-                problem(format!("has zero length: its {} waypoints are the same point", line.waypoints.len()))
-                    .accepted("at least two waypoints apart"),
+                problem(format!(
+                    "has zero length: its {} waypoints are the same point",
+                    line.waypoints.len()
+                ))
+                .accepted("at least two waypoints apart"),
             );
             continue;
         }
@@ -194,8 +197,9 @@ pub(super) fn meet(site: &Site, lines: &[Line], sonar: &Sonar, findings: &mut Fi
     if gap <= sonar.reach_m() {
         return;
     }
-    let middle =
-        |a: LocalPoint, b: LocalPoint| LocalPoint::new(0.5 * (a.east_m + b.east_m), 0.5 * (a.north_m + b.north_m));
+    let middle = |a: LocalPoint, b: LocalPoint| {
+        LocalPoint::new(0.5 * (a.east_m + b.east_m), 0.5 * (a.north_m + b.north_m))
+    };
     let bearing = middle(map_low, map_high).bearing_rad(middle(low, high));
     let file = site.lines.first().map(|l| l.file.clone()).unwrap_or_default();
     findings.problem(
@@ -289,10 +293,8 @@ pub(super) fn swath(landmarks: &[Landmark], lines: &[Line], sonar: &Sonar, findi
     );
     for line in lines {
         let seen = line.waypoints.windows(2).any(|leg| {
-            let low = [
-                smaller(leg[0].east_m, leg[1].east_m) - far,
-                smaller(leg[0].north_m, leg[1].north_m) - far,
-            ];
+            let low =
+                [smaller(leg[0].east_m, leg[1].east_m) - far, smaller(leg[0].north_m, leg[1].north_m) - far];
             let high =
                 [larger(leg[0].east_m, leg[1].east_m) + far, larger(leg[0].north_m, leg[1].north_m) + far];
             tree.locate_in_envelope(AABB::from_corners(low, high)).any(|p| {
@@ -303,7 +305,8 @@ pub(super) fn swath(landmarks: &[Landmark], lines: &[Line], sonar: &Sonar, findi
         if seen {
             continue;
         }
-        let Some((NearLeg { distance_m: distance, foot, .. }, landmark)) = nearest(&tree, landmarks, line) else {
+        let Some((NearLeg { distance_m: distance, foot, .. }, landmark)) = nearest(&tree, landmarks, line)
+        else {
             continue;
         };
         let middle = 0.5 * (near + far);
@@ -335,8 +338,7 @@ fn nearest<'l>(
 ) -> Option<(NearLeg, &'l Landmark)> {
     let mut best: Option<(NearLeg, &Landmark)> = None;
     for leg in line.waypoints.windows(2) {
-        let middle =
-            [0.5 * (leg[0].east_m + leg[1].east_m), 0.5 * (leg[0].north_m + leg[1].north_m)];
+        let middle = [0.5 * (leg[0].east_m + leg[1].east_m), 0.5 * (leg[0].north_m + leg[1].north_m)];
         let half = 0.5 * leg[0].distance_m(leg[1]);
         // No point of the leg is farther than half its length from the middle: once landmarks are farther from the
         // middle than that plus the best distance, none of the rest is nearer.

@@ -134,8 +134,7 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
     for file in &settings.line_files {
         line_inputs.extend(open(file, findings));
     }
-    let area =
-        settings.search_area.as_ref().and_then(|n| open(n, findings).map(|input| (n.clone(), input)));
+    let area = settings.search_area.as_ref().and_then(|n| open(n, findings).map(|input| (n.clone(), input)));
 
     let map_options = map::read::ReadOptions {
         decimal_comma: settings.map_decimal_comma,

@@ -93,8 +93,9 @@ impl<'a> Document<'a> {
 
     fn unknown(&self, section: &str, name: &str, line: u64) -> Problem {
         let full = if section.is_empty() { name.to_owned() } else { format!("{section}.{name}") };
-        let problem =
-            Problem::new(self.file, "is not known and would have no effect").line(line).place(format!("key {full}"));
+        let problem = Problem::new(self.file, "is not known and would have no effect")
+            .line(line)
+            .place(format!("key {full}"));
         if let Some(elsewhere) = KEYS.iter().find(|k| k.name == name && k.section != section) {
             let home = if elsewhere.section.is_empty() {
                 "at the top of the file".to_owned()
@@ -159,7 +160,8 @@ impl<'a> Document<'a> {
 
     fn wrong(&self, key: &Key, value: &Value<'_>, why: &str, findings: &mut Findings) {
         findings.problem(
-            self.problem(key.section, key.name, format!("{} {why}", self.source(value))).accepted(key.accepted()),
+            self.problem(key.section, key.name, format!("{} {why}", self.source(value)))
+                .accepted(key.accepted()),
         );
     }
 
@@ -252,8 +254,7 @@ impl<'a> Document<'a> {
         let mut out = Vec::new();
         for item in &items {
             match item.get_ref() {
-                DeValue::String(text)
-                    if !matches!(key.kind, Kind::Choices(words) if !words.contains(&text.as_ref())) =>
+                DeValue::String(text) if !matches!(key.kind, Kind::Choices(words) if !words.contains(&text.as_ref())) =>
                 {
                     out.push(text.trim().to_owned());
                 }
@@ -275,7 +276,8 @@ impl<'a> Document<'a> {
             Err(e) => {
                 let key = bounds::find(section, name);
                 findings.problem(
-                    self.problem(section, name, format!("\"{text}\" cannot be used: {e}")).accepted(key.accepted()),
+                    self.problem(section, name, format!("\"{text}\" cannot be used: {e}"))
+                        .accepted(key.accepted()),
                 );
                 None
             }

@@ -97,9 +97,10 @@ fn working(doc: &Document<'_>, map_crs: Option<&Crs>, f: &mut Findings) -> Optio
         (Crs::Grid(frame), Some(Crs::Geographic { .. } | Crs::Grid(_)) | None) => return Some(frame.clone()),
         (Crs::Local, Some(Crs::Local)) => return Some(Frame::local()),
         (Crs::Geographic { .. }, _) => ("is latitude and longitude, not a grid in metres", ""),
-        (Crs::Local, _) => {
-            ("is local metres, but the landmarks have a place on the Earth", "remove it, or name a projected grid")
-        }
+        (Crs::Local, _) => (
+            "is local metres, but the landmarks have a place on the Earth",
+            "remove it, or name a projected grid",
+        ),
         (Crs::Grid(_), _) => ("is a grid, but the landmarks are in local metres", "remove it"),
     };
     f.problem(
@@ -167,7 +168,8 @@ fn sonar(doc: &Document<'_>, f: &mut Findings) -> Option<Sonar> {
     let stray_key = if side { "sector_deg" } else { "nadir_gap_deg" };
     if doc.has("sonar", stray_key) {
         f.problem(
-            doc.problem("sonar", stray_key, format!("has no effect with kind = \"{word}\"")).advice("remove it"),
+            doc.problem("sonar", stray_key, format!("has no effect with kind = \"{word}\""))
+                .advice("remove it"),
         );
     }
     if !side && !doc.has("sonar", "sector_deg") {
@@ -225,7 +227,9 @@ fn consistent_sonar(doc: &Document<'_>, sonar: &Sonar, f: &mut Findings) -> bool
             doc.problem(
                 "sonar",
                 "altitude_error_m",
-                format!("altitude {h} m and its error {dh} m together are not below sonar.range_max_m, {far} m"),
+                format!(
+                    "altitude {h} m and its error {dh} m together are not below sonar.range_max_m, {far} m"
+                ),
             )
             .accepted("an altitude that stays below the longest slant range"),
         );

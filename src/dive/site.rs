@@ -66,7 +66,12 @@ impl Site {
         for row in &sources.landmarks.rows {
             match sources.landmarks.crs.to_frame(row.position, &frame) {
                 Ok(p) => landmarks.push(p),
-                Err(e) => findings.problem(place_problem(&sources.landmark_file, row.line, row.place.as_deref(), &e)),
+                Err(e) => findings.problem(place_problem(
+                    &sources.landmark_file,
+                    row.line,
+                    row.place.as_deref(),
+                    &e,
+                )),
             }
         }
         let mut lines = Vec::new();
@@ -198,7 +203,11 @@ fn place_problem(file: &std::path::Path, line: Option<u64>, place: Option<&str>,
 
 fn extent_words(points: &[LocalPoint]) -> String {
     let Some((low, high)) = bounding(points.iter().copied()) else { return "none".into() };
-    format!("{} east by {} north", length_words(high.east_m - low.east_m), length_words(high.north_m - low.north_m))
+    format!(
+        "{} east by {} north",
+        length_words(high.east_m - low.east_m),
+        length_words(high.north_m - low.north_m)
+    )
 }
 
 /// South-west and north-east corner of the points.
@@ -273,10 +282,7 @@ fn geographic_bounds(points: impl IntoIterator<Item = GeoPoint>) -> Option<(GeoP
 }
 
 fn middle(bounds: (GeoPoint, GeoPoint)) -> Point<f64> {
-    Point::new(
-        0.5 * (bounds.0.lon_deg + bounds.1.lon_deg),
-        0.5 * (bounds.0.lat_deg + bounds.1.lat_deg),
-    )
+    Point::new(0.5 * (bounds.0.lon_deg + bounds.1.lon_deg), 0.5 * (bounds.0.lat_deg + bounds.1.lat_deg))
 }
 
 /// Refuses lines that are so far from the landmarks that no grid holds both, and says when swapped axes explain it.

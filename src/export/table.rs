@@ -97,14 +97,21 @@ pub fn trace_table(report: &TraceReport) -> String {
 /// What was understood of a dive: notices, bounds in force, lines. The caution comes last.
 pub fn check_text(report: &CheckReport) -> String {
     let p = &report.parameters;
-    let mut text = format!("{}
+    let mut text = format!(
+        "{}
 {}
 
-", printable(&report.provenance.dive), report.provenance.coordinate_system);
+",
+        printable(&report.provenance.dive),
+        report.provenance.coordinate_system
+    );
     for notice in &report.notices {
         let kind = if notice.is_warning { "WARNING: " } else { "" };
-        text.push_str(&format!("- {kind}{}
-", printable(&notice.text)));
+        text.push_str(&format!(
+            "- {kind}{}
+",
+            printable(&notice.text)
+        ));
     }
     let swath = match (p.nadir_gap_deg, p.sector_deg) {
         (Some(gap), _) => format!("nadir gap {} deg", short(gap)),

@@ -55,7 +55,9 @@ pub enum FrameError {
         datum: String,
     },
     /// No such latitude or longitude.
-    #[error("latitude {lat_deg}, longitude {lon_deg} does not exist: latitude is −90 to 90, longitude −180 to 360 degrees")]
+    #[error(
+        "latitude {lat_deg}, longitude {lon_deg} does not exist: latitude is −90 to 90, longitude −180 to 360 degrees"
+    )]
     NotOnEarth {
         /// Latitude, degrees.
         lat_deg: f64,
@@ -103,6 +105,8 @@ pub enum FrameError {
         reason: String,
     },
     /// Local metres have no latitude and longitude.
-    #[error("local metres are not tied to the Earth, so they cannot be turned into or made from other coordinates")]
+    #[error(
+        "local metres are not tied to the Earth, so they cannot be turned into or made from other coordinates"
+    )]
     LocalHasNoEarth,
 }

@@ -195,7 +195,8 @@ impl Frame {
     /// Local metres; a grid value that belongs to no position or to one outside the grid's limits.
     pub fn to_geo(&self, p: LocalPoint) -> Result<GeoPoint, FrameError> {
         let grid = self.grid.as_ref().ok_or(FrameError::LocalHasNoEarth)?;
-        let outside = || FrameError::OutsideGrid { name: grid.name.clone(), east_m: p.east_m, north_m: p.north_m };
+        let outside =
+            || FrameError::OutsideGrid { name: grid.name.clone(), east_m: p.east_m, north_m: p.north_m };
         let mut xyz = (p.east_m, p.north_m, 0.0);
         proj4rs::transform::transform(&grid.proj, &grid.geographic, &mut xyz).map_err(|_| outside())?;
         let geo = GeoPoint { lat_deg: xyz.1.to_degrees(), lon_deg: xyz.0.to_degrees() };

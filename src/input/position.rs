@@ -12,9 +12,17 @@ use crate::units::{self, Axis};
 /// Columns that hold coordinates.
 pub const COORDINATE_COLUMNS: [Column; 4] = [
     Column { key: "lat", names: &["lat", "latitude", "lat_deg", "latitude_deg"], one_only: true },
-    Column { key: "lon", names: &["lon", "lng", "long", "longitude", "lon_deg", "longitude_deg"], one_only: true },
+    Column {
+        key: "lon",
+        names: &["lon", "lng", "long", "longitude", "lon_deg", "longitude_deg"],
+        one_only: true,
+    },
     Column { key: "east", names: &["easting", "easting_m", "east", "east_m", "x", "x_m"], one_only: true },
-    Column { key: "north", names: &["northing", "northing_m", "north", "north_m", "y", "y_m"], one_only: true },
+    Column {
+        key: "north",
+        names: &["northing", "northing_m", "north", "north_m", "y", "y_m"],
+        one_only: true,
+    },
 ];
 
 /// The two columns to read, chosen by the coordinate system: x is longitude or easting.
@@ -49,7 +57,11 @@ impl PositionColumns {
             format!("no column {} for positions in {}", missing.join(" and no column "), crs.name()),
         )
         .line(1)
-        .accepted(if geographic { "lat and lon in degrees" } else { "easting and northing in metres" });
+        .accepted(if geographic {
+            "lat and lon in degrees"
+        } else {
+            "easting and northing in metres"
+        });
         if other.iter().all(|k| table.column(k).is_some()) {
             problem = problem.advice(format!(
                 "the file has {} and {}: state the coordinate system they are in, such as crs = \"{}\"",
@@ -113,7 +125,11 @@ impl<'a> PositionCheck<'a> {
                         Problem::new(&table.file, format!("\"{text}\" {}", fault.what))
                             .line(row.line)
                             .place(table.place(column))
-                            .accepted(if geographic { "degrees, such as 52.657570" } else { "metres, such as 512300.5" })
+                            .accepted(if geographic {
+                                "degrees, such as 52.657570"
+                            } else {
+                                "metres, such as 512300.5"
+                            })
                             .advice(fault.advice),
                     );
                 })
@@ -176,8 +192,10 @@ impl<'a> PositionCheck<'a> {
         let (Some(x), Some(y)) = (self.x, self.y) else { return true };
         let name = self.crs.name();
         if self.crs.is_geographic() && self.outside * 2 > self.seen {
-            let swapped = bounds::LATITUDE.contains(x.0) && bounds::LATITUDE.contains(x.1)
-                && bounds::LONGITUDE.contains(y.0) && bounds::LONGITUDE.contains(y.1);
+            let swapped = bounds::LATITUDE.contains(x.0)
+                && bounds::LATITUDE.contains(x.1)
+                && bounds::LONGITUDE.contains(y.0)
+                && bounds::LONGITUDE.contains(y.1);
             findings.problem(
                 Problem::new(
                     &self.file,

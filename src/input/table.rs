@@ -137,7 +137,8 @@ fn sniff(input: &InputText, columns: &[Column], findings: &mut Findings) -> Opti
     let file = input.name.as_path();
     let Some((at, first)) = input.text.lines().enumerate().find(|(_, l)| !l.trim().is_empty()) else {
         findings.problem(
-            Problem::new(file, "is empty").accepted("a header line with column names, then one row per entry"),
+            Problem::new(file, "is empty")
+                .accepted("a header line with column names, then one row per entry"),
         );
         return None;
     };
@@ -160,7 +161,10 @@ fn sniff(input: &InputText, columns: &[Column], findings: &mut Findings) -> Opti
         findings.problem(
             Problem::new(file, format!("the header \"{shown}\" names no known column"))
                 .line(at as u64 + 1)
-                .accepted(format!("columns separated by comma, semicolon or tab, such as {}", names.join(", ")))
+                .accepted(format!(
+                    "columns separated by comma, semicolon or tab, such as {}",
+                    names.join(", ")
+                ))
                 .advice("put a header line with column names at the top"),
         );
         return None;
@@ -231,7 +235,8 @@ impl<'a> LineCounter<'a> {
     }
 
     fn line_of(&mut self, offset: usize) -> u64 {
-        while self.at < self.bytes.len() && (self.at < offset || matches!(self.bytes[self.at], b'\r' | b'\n')) {
+        while self.at < self.bytes.len() && (self.at < offset || matches!(self.bytes[self.at], b'\r' | b'\n'))
+        {
             if self.bytes[self.at] == b'\n' {
                 self.line += 1;
             }

@@ -21,7 +21,8 @@ const ID: Column = Column {
 const BOTH: Column =
     Column { key: "both", names: &["uncertainty_m", "uncertainty", "unc_m"], one_only: true };
 const EAST: Column = Column { key: "u_east", names: &["uncertainty_east_m", "unc_east_m"], one_only: true };
-const NORTH: Column = Column { key: "u_north", names: &["uncertainty_north_m", "unc_north_m"], one_only: true };
+const NORTH: Column =
+    Column { key: "u_north", names: &["uncertainty_north_m", "unc_north_m"], one_only: true };
 
 pub(super) fn read(
     input: &InputText,

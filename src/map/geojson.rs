@@ -34,9 +34,8 @@ pub(super) fn read(
             Some(GeometryValue::Point { coordinates }) => vec![coordinates],
             Some(GeometryValue::MultiPoint { coordinates }) => coordinates.iter().collect(),
             Some(other) => {
-                bad.add([
-                    problem(format!("is a {}, not a landmark", other.type_name())).accepted("Point or MultiPoint")
-                ]);
+                bad.add([problem(format!("is a {}, not a landmark", other.type_name()))
+                    .accepted("Point or MultiPoint")]);
                 continue;
             }
             None => {

@@ -23,7 +23,10 @@ pub struct LandmarkRow {
 impl LandmarkRow {
     /// The identifier, or the row or feature it stands in.
     pub fn label(&self) -> String {
-        self.id.clone().or_else(|| self.line.map(|l| format!("row {l}"))).unwrap_or_else(|| self.where_words())
+        self.id
+            .clone()
+            .or_else(|| self.line.map(|l| format!("row {l}")))
+            .unwrap_or_else(|| self.where_words())
     }
 
     /// `line 17` or `feature 3`.

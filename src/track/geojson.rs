@@ -48,8 +48,9 @@ pub(super) fn read(input: &InputText, declared: Option<&Crs>, findings: &mut Fin
             for (k, position) in part.iter().enumerate() {
                 let at = format!("{origin}, position {}", k + 1);
                 let Some((x, y)) = geojson::xy(position) else {
-                    problems
-                        .push(Problem::new(&input.name, "has fewer than two numbers").place(at).accepted("x and y"));
+                    problems.push(
+                        Problem::new(&input.name, "has fewer than two numbers").place(at).accepted("x and y"),
+                    );
                     continue;
                 };
                 let (x_place, y_place) = (format!("{at}, first number"), format!("{at}, second number"));

@@ -94,7 +94,11 @@ fn bad_points(input: &InputText) -> Vec<Problem> {
                     Problem::new(&input.name, what)
                         .line(input.line_at(at))
                         .place(format!("{tag} {}, attribute {attribute}", i + 1))
-                        .accepted(if attribute == "lat" { "−90 to 90 degrees" } else { "−180 to 180 degrees" }),
+                        .accepted(if attribute == "lat" {
+                            "−90 to 90 degrees"
+                        } else {
+                            "−180 to 180 degrees"
+                        }),
                 );
             }
         }

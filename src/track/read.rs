@@ -63,7 +63,9 @@ pub fn read(input: &InputText, options: ReadOptions<'_>, findings: &mut Findings
     };
     let file = file.filter(|_| findings.problems.len() == before)?;
     if file.lines.is_empty() {
-        findings.problem(Problem::new(&input.name, "holds no line").accepted("at least one line with two waypoints"));
+        findings.problem(
+            Problem::new(&input.name, "holds no line").accepted("at least one line with two waypoints"),
+        );
         return None;
     }
     Some(file)

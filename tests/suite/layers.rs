@@ -54,7 +54,8 @@ fn modules_use_lower_ranks_only() {
         if module == "lib" || module == "main" {
             continue;
         }
-        let rank = *ranks.get(module.as_str()).unwrap_or_else(|| panic!("give src/{module} a rank in this test"));
+        let rank =
+            *ranks.get(module.as_str()).unwrap_or_else(|| panic!("give src/{module} a rank in this test"));
         for line in fs::read_to_string(&file).expect("a source").lines() {
             let code = line.split("//").next().unwrap_or_default();
             for used in code.split("crate::").skip(1) {

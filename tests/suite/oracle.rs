@@ -50,7 +50,8 @@ impl Oracle<'_> {
                 let length = 0.5 * piece.length_m * (1.0 + self.within(dr.scale_error));
                 let heading = piece.heading_rad + bias + self.within(dr.heading_noise_rad);
                 let toward = self.rng.random_range(0.0..std::f64::consts::TAU);
-                let drift = self.rng.random_range(0.0..=1.0f64).sqrt() * dr.drift_mps * 0.5 * piece.duration_s;
+                let drift =
+                    self.rng.random_range(0.0..=1.0f64).sqrt() * dr.drift_mps * 0.5 * piece.duration_s;
                 east += length * heading.sin() + drift * toward.sin();
                 north += length * heading.cos() + drift * toward.cos();
             }
@@ -105,7 +106,11 @@ impl Oracle<'_> {
             let east = at.east_m + self.within(half_east);
             let north = at.north_m + self.within(half_north);
             if let Some((bearing, range)) = self.relative(event, bias) {
-                found.push(Particle { east: east - range * bearing.sin(), north: north - range * bearing.cos(), bias });
+                found.push(Particle {
+                    east: east - range * bearing.sin(),
+                    north: north - range * bearing.cos(),
+                    bias,
+                });
             }
         }
         found
@@ -134,9 +139,8 @@ fn groups(points: &[Particle], gap: f64) -> usize {
         count += 1;
         let mut front = vec![seed];
         while let Some(p) = front.pop() {
-            let (near, far) = left
-                .into_iter()
-                .partition(|q: &Particle| (q.east - p.east).hypot(q.north - p.north) <= gap);
+            let (near, far) =
+                left.into_iter().partition(|q: &Particle| (q.east - p.east).hypot(q.north - p.north) <= gap);
             left = far;
             front.extend::<Vec<Particle>>(near);
         }
@@ -157,7 +161,13 @@ fn small_scene(number: u64) -> RandomScene {
         );
     }
     let corner = |e: f64, n: f64| LocalPoint::new(origin.east_m + e, origin.north_m + n);
-    scene.line = Line { name: "small".into(), waypoints: vec![corner(20.0, rng.random_range(50.0..350.0)), corner(380.0, rng.random_range(50.0..350.0))] };
+    scene.line = Line {
+        name: "small".into(),
+        waypoints: vec![
+            corner(20.0, rng.random_range(50.0..350.0)),
+            corner(380.0, rng.random_range(50.0..350.0)),
+        ],
+    };
     scene.plan = Plan::new(&scene.line, 0.0);
     // So large that it excludes nothing: the search below does not know the start area.
     let (lo, hi) = (-2000.0, 2400.0);
@@ -179,8 +189,11 @@ fn every_position_that_an_independent_search_finds_is_in_the_set() {
         let scene = small_scene(number);
         let log = log_of(&scene, number);
         let steps = steps(&log, &scene.bounds);
-        let mut oracle =
-            Oracle { landmarks: &scene.landmarks, bounds: scene.bounds, rng: ChaCha8Rng::seed_from_u64(number) };
+        let mut oracle = Oracle {
+            landmarks: &scene.landmarks,
+            bounds: scene.bounds,
+            rng: ChaCha8Rng::seed_from_u64(number),
+        };
         let mut particles: Vec<Particle> = Vec::new();
         let mut is_running = true;
         scene.solver().run(&steps, |summary, set| {
