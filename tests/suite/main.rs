@@ -9,5 +9,6 @@ mod oracle;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
+mod sets;
 mod soundness;
 mod support;
