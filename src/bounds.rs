@@ -446,7 +446,7 @@ mod tests {
     #[test]
     fn every_default_is_accepted_by_its_own_range() {
         for k in KEYS {
-            if let (Kind::Number(r) | Kind::Whole(r), Need::Default(text)) = (k.kind, k.need) {
+            if let (Kind::Number(r) | Kind::Whole(r), Default(text)) = (k.kind, k.need) {
                 assert!(r.contains(text.parse().unwrap()), "{}", k.full_name());
             }
         }

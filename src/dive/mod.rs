@@ -6,6 +6,7 @@ mod read;
 mod section;
 mod settings;
 mod site;
+mod swath;
 mod widen;
 
 use std::path::PathBuf;

@@ -5,9 +5,9 @@ use std::path::{Path, PathBuf};
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
-use super::{Dive, InputFile, Start, area, checks, widen};
+use super::{Dive, InputFile, Start, area, checks, swath, widen};
 use crate::frame::Crs;
-use crate::input::InputText;
+use crate::input::{Format, InputText};
 use crate::map::Landmark;
 use crate::problem::{Findings, Problem, Problems};
 use crate::{map, track};
@@ -49,7 +49,6 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
     let (vehicle, sonar) = (settings.vehicle?, settings.sonar?);
     let scatter_m = settings.scatter_m?;
     let site = Site::place(&sources, settings.working.clone(), sonar.reach_m(), findings)?;
-    checks::identifiers(&sources, findings);
     let lines = checks::lines(&site, findings);
     if !findings.problems.is_empty() {
         return None;
@@ -92,7 +91,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
     grid.report(findings);
     site.report(&sources, &lines, findings);
     checks::landmarks(&sources, &landmarks, findings);
-    checks::swath(&landmarks, &lines, &widened_sonar, findings);
+    swath::check(&landmarks, &lines, &widened_sonar, findings);
     if !settings.turn_radius_given && lines.iter().any(|l| l.waypoints.len() > 2) {
         findings.warn(
             None,
@@ -155,18 +154,45 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
             lines.push((input.name.clone(), file));
         }
     }
+    refuse_without_effect(&document, landmark_input.as_ref(), &line_inputs, findings);
     let sources = Sources {
         dive_file: path.to_path_buf(),
         landmark_file: settings.landmarks.clone()?,
         landmarks: landmarks?,
         lines,
     };
+    checks::identifiers(&sources, findings);
     if let Some(rows) = checks::missing_uncertainty(&sources, &settings) {
         for problem in rows {
             findings.problem(problem);
         }
     }
     Some(Read { settings, inputs, sources, area })
+}
+
+/// Refuses keys that say something about a format that none of the files has.
+fn refuse_without_effect(
+    document: &Document<'_>,
+    landmarks: Option<&InputText>,
+    lines: &[InputText],
+    findings: &mut Findings,
+) {
+    let mut refuse = |section: &str, name: &str, what: &str| {
+        if document.has(section, name) {
+            findings.problem(
+                document.problem(section, name, format!("has no effect: {what}")).advice("remove it"),
+            );
+        }
+    };
+    if landmarks.is_some_and(|i| i.format() != Some(Format::Csv)) {
+        refuse("map", "decimal_comma", "the landmark file is not CSV");
+    }
+    if !lines.is_empty() && lines.iter().all(|i| i.format() != Some(Format::Csv)) {
+        refuse("lines", "decimal_comma", "no line file is CSV");
+    }
+    if !lines.is_empty() && lines.iter().all(|i| i.format() == Some(Format::Gpx)) {
+        refuse("lines", "crs", "GPX is always WGS 84 latitude and longitude");
+    }
 }
 
 /// The coordinate system every file was read in, for the statements about datums.

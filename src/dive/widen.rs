@@ -17,7 +17,6 @@ use super::site::Site;
 use crate::frame::{GridDistortion, LocalPoint};
 use crate::interval::{larger, smaller, up};
 use crate::problem::{Findings, Problem};
-use crate::units::bearing_words;
 use crate::vehicle::{DeadReckoning, Sonar};
 
 /// Largest deviation of the grid scale from 1 that is put into the bounds; beyond it another grid is the better answer.
@@ -161,11 +160,10 @@ impl Grid {
             None,
             format!(
                 "headings are to grid north, which lies {:.3}° {} of true north in the middle of the site; {:.4}° is added \
-                 to the heading noise for its change over the site (heading 000° on the chart is {} true)",
+                 to the heading noise for its change over the site",
                 d.convergence_middle_rad().to_degrees().abs(),
                 if d.convergence_middle_rad() < 0.0 { "west" } else { "east" },
                 self.turn_rad.to_degrees(),
-                bearing_words(d.convergence_middle_rad()),
             ),
         );
     }

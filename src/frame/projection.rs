@@ -132,7 +132,7 @@ impl Frame {
             .join(" ");
         let geographic =
             Proj::from_proj_string(&format!("+proj=longlat {ellipsoid} +no_defs")).map_err(fail)?;
-        let meridian_deg = transverse.then(|| proj.longitude_of_origin().to_degrees());
+        let meridian_deg = transverse.then(|| (proj.longitude_of_origin().to_degrees() * 1e9).round() / 1e9);
         Ok(Self { grid: Some(Arc::new(Grid { epsg, name, datum, proj, geographic, meridian_deg, is_utm })) })
     }
 

@@ -45,9 +45,9 @@ impl InputText {
                     std::io::ErrorKind::NotFound => format!("no such file (looked for {})", path.display()),
                     _ => format!("cannot be read: {e}"),
                 };
-                findings.problem(
-                    Problem::new(name, what).advice("check the name; it is relative to the dive file"),
-                );
+                let advice =
+                    if path == name { "" } else { "check the name; it is relative to the dive file" };
+                findings.problem(Problem::new(name, what).advice(advice));
                 return None;
             }
         };

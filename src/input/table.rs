@@ -54,9 +54,7 @@ impl Table {
     /// Splits a text into header and rows. None, with findings, when there is no header to work with.
     pub fn read(input: &InputText, columns: &[Column], findings: &mut Findings) -> Option<Self> {
         let file = input.name.as_path();
-        let Some(separator) = sniff(input, columns, findings) else {
-            return None;
-        };
+        let separator = sniff(input, columns, findings)?;
         let mut reader = csv::ReaderBuilder::new()
             .delimiter(separator)
             .has_headers(false)
@@ -82,6 +80,14 @@ impl Table {
             };
             if record.iter().all(|f| f.trim().is_empty()) {
                 blank += 1;
+            } else if record.iter().any(|f| f.contains('\n')) {
+                // An unclosed quotation mark would swallow every row up to the next one without a trace.
+                misfits.push(
+                    Problem::new(file, "a field runs over more than one line")
+                        .line(line)
+                        .accepted("fields that end on their line")
+                        .advice("close the quotation mark, or double it inside a field"),
+                );
             } else if record.len() != width {
                 misfits.push(
                     Problem::new(file, format!("the row has {} fields, the header {width}", record.len()))

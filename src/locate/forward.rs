@@ -96,7 +96,18 @@ pub struct Solver<'a> {
 impl Solver<'_> {
     /// Runs the forward pass over `steps`, lost in the search area just before the first of them. The travel of the
     /// first step is part of the run. `visit` is called with every event's feasible set.
-    pub fn run(&self, steps: &[Step], mut visit: impl FnMut(EventSummary, &Feasible)) -> Outcome {
+    pub fn run(&self, steps: &[Step], visit: impl FnMut(EventSummary, &Feasible)) -> Outcome {
+        self.run_where(steps, |_| true, visit)
+    }
+
+    /// As [`Solver::run`], but uses the sighting of step number `k` only where `uses(k)`. Leaving sightings out can only
+    /// enlarge the sets.
+    pub fn run_where(
+        &self,
+        steps: &[Step],
+        uses: impl Fn(usize) -> bool,
+        mut visit: impl FnMut(EventSummary, &Feasible),
+    ) -> Outcome {
         let Some(first) = steps.first() else { return Outcome::default() };
         let slices = first.travel.len();
         let mut set = Feasible {
@@ -114,7 +125,7 @@ impl Solver<'_> {
             for (total, more) in travel.iter_mut().zip(&step.travel) {
                 add_reaches(total, more);
             }
-            let Some(looks) = &step.sighting else { continue };
+            let Some(looks) = step.sighting.as_ref().filter(|_| uses(number)) else { continue };
             let Some(next) = self.advance(&set, &travel, looks) else {
                 outcome.is_undecided = true;
                 break;

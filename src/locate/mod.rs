@@ -19,10 +19,12 @@
 //! *References.* [`crate::bibliography::BERTSEKAS_RHODES_1971`], [`crate::bibliography::JAULIN_2001`].
 
 pub mod cell;
+mod composed;
 mod feasible;
 mod forward;
 mod steps;
 
+pub use composed::{ComposedOutcome, ComposedRun};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};

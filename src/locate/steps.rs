@@ -37,6 +37,12 @@ pub struct Bounds {
 }
 
 impl Bounds {
+    /// The altitudes above the seabed that the bounds allow, metres.
+    pub(super) fn altitude(&self) -> Interval {
+        Interval::around(self.sonar.altitude_m, self.sonar.altitude_error_m)
+            .intersection(Interval::new(0.0, f64::INFINITY))
+    }
+
     /// The slices of the bias interval. Neighbours share their end, so their union is the whole interval.
     fn bias_slices(&self) -> Vec<Interval> {
         let bias = self.dead_reckoning.heading_bias_rad;
@@ -53,6 +59,18 @@ pub struct Look {
     pub from_landmark: Reaches,
     /// A box around S, for the index.
     pub extent: Box2,
+}
+
+impl Look {
+    /// From the reaches of −S.
+    pub fn new(from_landmark: Reaches) -> Self {
+        let s = mirrored(&from_landmark);
+        let side = |toward: usize| {
+            let away = (toward + DIRECTION_COUNT / 2) % DIRECTION_COUNT;
+            Interval::new(-larger(s[away], -s[toward]), s[toward])
+        };
+        Self { extent: Box2 { east: side(0), north: side(4) }, from_landmark }
+    }
 }
 
 /// One event as the solver sees it.
@@ -74,7 +92,10 @@ pub fn steps(log: &Log, bounds: &Bounds) -> Vec<Step> {
         .iter()
         .map(|event| Step {
             along_m: event.along_m,
-            travel: slices.iter().map(|&bias| travel_reaches(&event.travel, bias, bounds)).collect(),
+            travel: slices
+                .iter()
+                .map(|&bias| TravelError::new(bias, &bounds.dead_reckoning).reaches(&event.travel))
+                .collect(),
             sighting: event
                 .sighting
                 .as_ref()
@@ -83,22 +104,44 @@ pub fn steps(log: &Log, bounds: &Bounds) -> Vec<Step> {
         .collect()
 }
 
-/// Reaches of the displacements that reported pieces allow.
-fn travel_reaches(pieces: &[ReportedPiece], bias: Interval, bounds: &Bounds) -> Reaches {
-    let dead_reckoning = &bounds.dead_reckoning;
-    let heading_error = heading_error(bias, dead_reckoning);
-    let scale = Interval::around(1.0, dead_reckoning.scale_error);
-    let drift = Interval::point(dead_reckoning.drift_mps);
-    let mut total = [0.0; DIRECTION_COUNT];
-    let mut slack_m = Interval::point(RESOLUTION_M);
-    for piece in pieces {
-        let rho = Interval::point(piece.length_m) * scale;
-        let theta = Interval::point(piece.heading_rad) + heading_error;
-        add_reaches(&mut total, &polar_reaches(rho, theta));
-        slack_m = slack_m + drift * Interval::point(piece.duration_s);
+/// What travel may differ from its report: true distance over reported distance, true heading less reported heading,
+/// and what is added in any direction.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct TravelError {
+    /// True distance over reported distance.
+    pub scale: Interval,
+    /// True heading less reported heading, radians.
+    pub heading: Interval,
+    /// Drift, metres per second.
+    pub drift_mps: f64,
+    /// Added once per travel, metres.
+    pub slack_m: f64,
+}
+
+impl TravelError {
+    /// Under `bounds`, for one slice of the bias.
+    fn new(bias: Interval, dead_reckoning: &DeadReckoning) -> Self {
+        Self {
+            scale: Interval::around(1.0, dead_reckoning.scale_error),
+            heading: heading_error(bias, dead_reckoning),
+            drift_mps: dead_reckoning.drift_mps,
+            slack_m: RESOLUTION_M,
+        }
     }
-    add_reaches(&mut total, &disc_reaches(slack_m.hi()));
-    total
+
+    /// Reaches of the displacements that reported pieces allow.
+    pub fn reaches(&self, pieces: &[ReportedPiece]) -> Reaches {
+        let mut total = [0.0; DIRECTION_COUNT];
+        let mut slack_m = Interval::point(self.slack_m);
+        for piece in pieces {
+            let rho = Interval::point(piece.length_m) * self.scale;
+            let theta = Interval::point(piece.heading_rad) + self.heading;
+            add_reaches(&mut total, &polar_reaches(rho, theta));
+            slack_m = slack_m + Interval::point(self.drift_mps) * Interval::point(piece.duration_s);
+        }
+        add_reaches(&mut total, &disc_reaches(slack_m.hi()));
+        total
+    }
 }
 
 /// Bias and noise together: what the true heading may differ from the reported one.
@@ -113,9 +156,7 @@ fn look(sighting: &Sighting, bias: Interval, bounds: &Bounds) -> Option<Look> {
     let growth = Interval::around(1.0, sonar.range_error_fraction);
     let measured = Interval::point(sighting.slant_range_m);
     let slant = ((measured + additive) / growth).intersection(Interval::new(0.0, f64::INFINITY));
-    let altitude = Interval::around(sonar.altitude_m, sonar.altitude_error_m)
-        .intersection(Interval::new(0.0, f64::INFINITY));
-    let rho = horizontal_range(slant, altitude);
+    let rho = horizontal_range(slant, bounds.altitude());
     if rho.is_empty() {
         return None;
     }
@@ -123,10 +164,5 @@ fn look(sighting: &Sighting, bias: Interval, bounds: &Bounds) -> Option<Look> {
         + Interval::point(sighting.relative_bearing_rad)
         + Interval::around(0.0, sonar.bearing_error_rad)
         + heading_error(bias, &bounds.dead_reckoning);
-    let s = polar_reaches(rho, theta);
-    let side = |toward: usize| {
-        let away = (toward + DIRECTION_COUNT / 2) % DIRECTION_COUNT;
-        Interval::new(-larger(s[away], -s[toward]), s[toward])
-    };
-    Some(Look { from_landmark: mirrored(&s), extent: Box2 { east: side(0), north: side(4) } })
+    Some(Look::new(mirrored(&polar_reaches(rho, theta))))
 }

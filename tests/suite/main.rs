@@ -2,10 +2,13 @@
 
 mod demo;
 mod export;
+mod guarantee;
 mod intervals;
 mod layers;
+mod load;
 mod one_dimension;
 mod oracle;
+mod projection;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;

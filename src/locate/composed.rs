@@ -1,0 +1,454 @@
+//! The guarantee: one run with composed bounds that holds every feasible set of every admissible dive along a track.
+//!
+//! *Idea.* Let the vehicle really run the planned track. Whatever it measures lies within the bounds of the truth, and
+//! whatever another position explains lies within the bounds of the measurement. So another position's ideal values
+//! lie within **twice composed** bounds of the truth's, and the truth's are known: they follow from the track and the
+//! map. The solver is run once on these ideal values with the composed bounds. Call its result W(s), the set at
+//! distance s along the track, and X(s) the feasible set of a dive.
+//!
+//! *Claim.* X(s) ⊆ W(s), for every dive along the track within the bounds, at every s at which W is evaluated.
+//!
+//! *Proof.* Take a dive, a history that its solver keeps, and write ′ for the values of that history. It suffices to
+//! show that each step of the history is allowed in W; every operation is monotone, so the cells follow.
+//!
+//! 1. *Travel.* Through-water motion w(t) of the truth is reported as ρ(t), ψ(t) with |w| = ρ(1 + σ),
+//!    dir w = ψ + β + ν. The history moves by ρ(1 + σ′) in direction ψ + β′ + ν′, plus c′. Hence its through-water
+//!    motion is w turned by γ + (ν′ − ν), γ = β′ − β constant, and scaled by (1 + σ′)/(1 + σ), which lies in
+//!    κ = [(1 − s)/(1 + s), (1 + s)/(1 − s)]. With w = g − c (g the planned motion over ground) the displacement is
+//!    ∫ κ·Rot·g dt − ∫ κ·Rot·c dt + ∫ c′ dt: the polar patch of the planned motion with scale κ and heading error
+//!    γ ± 2ν, plus a disc of radius (1 + max κ)·c·Δt. (Doubling c alone would be too little: the drift of the truth is
+//!    scaled with the log.)
+//! 2. *Bias.* A solver with n slices of width δ = 2B/n over [−B, B] keeps β′ in one slice, so γ lies in a window of
+//!    width δ somewhere in [−2B, 2B]. Windows of width 2δ at steps of δ contain every such window whole.
+//! 3. *Range.* |r − R| ≤ a + bR and |r − R′| ≤ a + bR′ give R′ ∈ [(R(1 − b) − 2a)/(1 + b), (R(1 + b) + 2a)/(1 − b)].
+//!    The altitude enters as its interval both times.
+//! 4. *Bearing, side-looking.* The truth sees the landmark in world direction bow ± 90° + ε; the history places it in
+//!    direction bow ± 90° + ε′ + γ + (ν′ − ν), where bow lies within the crab angle χ = asin(c/v) of the track. The
+//!    truth's own beam error moves the instant of the sighting, see 6.
+//! 5. *Bearing, forward-looking.* The measured bearing errs by ε; the history's direction is the true direction
+//!    + γ + (ν′ − ν) + (ε′ − ε).
+//! 6. *Instant.* A landmark is sighted at some s_i in a window [s₁, s₂] that box, beam error and crab angle allow. Refer
+//!    the constraint to s₂: the history's position there is its position at s_i plus its travel over s₂ − s_i, which
+//!    lies in the convex hull of 0 and the travel over s₂ − s₁. The order of sightings within overlapping windows does
+//!    not matter, because each constraint is stated at its own s₂ and the travel between those is exact to the bounds.
+//! 7. *Certain sightings.* Only landmarks are used whose sighting happens in every admissible dive: the window lies
+//!    within one straight piece, and range, nadir gap and sector are met over the whole box, altitude interval and crab
+//!    angle. Bow direction and position change continuously, so the beam cannot skip the landmark. Sightings of other
+//!    landmarks can only shrink X further.
+//! 8. *Strays and misses.* At most g certain sightings are missing from a dive, and the history may leave at most f
+//!    sightings unexplained: W may leave f + g of its sightings unexplained.
+//!
+//! *Fix distance.* At s₂ of a sighting every dive has had that sighting. X at its last event before s₂ has a spread no
+//! larger than that of ⋃ over the windows of bias of (W ⊕ E), where E = conv{0, s·u − κ·s·Rot·u} accounts for slices
+//! that drift apart on the way from the event to s₂ (s = s₂ − s₁, u the direction of the track): moving a set by a
+//! common vector leaves its spread as it is, and adding travel to it cannot make it narrower. That spread is compared
+//! with the fix size.
+//!
+//! *References.* Method of [`crate::bibliography::BERTSEKAS_RHODES_1971`]; the composition is derived above.
+
+use super::Bounds;
+use super::cell::{Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
+use super::feasible::Feasible;
+use super::forward::Solver;
+use super::steps::{Look, RESOLUTION_M, RESOLUTION_RAD, Step, TravelError};
+use crate::detect::{ReportedPiece, Scene};
+use crate::interval::{Box2, Interval, larger};
+use crate::map::Landmark;
+use crate::track::plan::{Piece, Plan};
+use crate::vehicle::{SonarKind, horizontal_range};
+
+/// Allowance per travel and per range, metres: covers the resolution allowance of both the truth's and the history's
+/// solver and the rounding of a dive's own steps (each below 10⁻⁷ m at coordinates of 10⁷ m).
+const COMPOSED_RESOLUTION_M: f64 = 10.0 * RESOLUTION_M;
+
+/// Likewise for angles, radians.
+const COMPOSED_RESOLUTION_RAD: f64 = 4.0 * RESOLUTION_RAD;
+
+/// Widest half-sector for which leaving the sector is used as a certain sighting, radians (80°): beyond it the range
+/// at the edge is no longer monotone in the bearing. Entering is used for every sector.
+const LEAVING_SECTOR_MAX_RAD: f64 = 80.0 * std::f64::consts::PI / 180.0;
+
+/// One certain sighting in composed terms.
+#[derive(Clone, Debug)]
+struct CertainSighting {
+    /// Number of the landmark.
+    landmark: usize,
+    /// Along the track: earliest and latest instant.
+    window: Interval,
+    /// Horizontal range of the history, metres.
+    rho: Interval,
+    /// World direction of the landmark in the history less γ, radians.
+    theta: Interval,
+    /// Heading of the track, radians.
+    heading_rad: f64,
+}
+
+/// The composed run along one track, ready to be solved from any start.
+#[derive(Clone, Debug)]
+pub struct ComposedRun {
+    steps: Vec<Step>,
+    /// Earliest instant of the sighting of each step, along the track; at a mark its own place.
+    earliest_m: Vec<f64>,
+    /// By step and window of bias: what slices may drift apart between the event and the step (the set E).
+    drift_apart: Vec<Vec<Reaches>>,
+}
+
+/// What the composed run says about one start.
+#[derive(Clone, Debug, PartialEq)]
+pub struct ComposedOutcome {
+    /// Guaranteed fix distance from the start, metres.
+    pub fix_m: Option<f64>,
+    /// Certain sightings from the start to the end of the line.
+    pub certain_sightings: usize,
+    /// Places at the last certain sighting.
+    pub places: Option<usize>,
+    /// Upper bound of the spread at the last certain sighting, metres.
+    pub spread_m: Option<f64>,
+    /// Whether the cell budget ran out.
+    pub is_undecided: bool,
+}
+
+impl ComposedRun {
+    /// Prepares the composed run along `plan` (which is taken as the vehicle's true track), to be solved from any of
+    /// `starts_m`, ascending distances along it.
+    pub fn new(scene: &Scene<'_>, plan: &Plan, starts_m: &[f64], bounds: &Bounds) -> Self {
+        let windows = gamma_windows(bounds);
+        let dead_reckoning = &bounds.dead_reckoning;
+        let one = Interval::point(1.0);
+        let s = Interval::point(dead_reckoning.scale_error);
+        let scale = ((one - s) / (one + s)).hull((one + s) / (one - s));
+        let drift_mps =
+            (Interval::point(dead_reckoning.drift_mps) * (one + Interval::point(scale.hi()))).hi();
+        let noise = Interval::around(0.0, dead_reckoning.heading_noise_rad);
+        let heading_error = noise + noise + Interval::around(0.0, COMPOSED_RESOLUTION_RAD);
+        let travel_error = |gamma: Interval| TravelError {
+            scale,
+            heading: gamma + heading_error,
+            drift_mps,
+            slack_m: COMPOSED_RESOLUTION_M,
+        };
+        let sightings = certain_sightings(scene, plan, bounds);
+        let mut stops: Vec<(f64, Option<&CertainSighting>)> = starts_m.iter().map(|&at| (at, None)).collect();
+        stops.extend(sightings.iter().map(|sighting| (sighting.window.hi(), Some(sighting))));
+        stops.sort_by(|a, b| {
+            a.0.total_cmp(&b.0)
+                .then(a.1.is_some().cmp(&b.1.is_some()))
+                .then(a.1.map(|x| x.landmark).cmp(&b.1.map(|x| x.landmark)))
+        });
+        let mut run = Self { steps: Vec::new(), earliest_m: Vec::new(), drift_apart: Vec::new() };
+        let mut at_m = 0.0;
+        for (along_m, sighting) in stops {
+            let pieces = pieces_between(plan, at_m, along_m, scene.vehicle.speed_mps);
+            at_m = along_m;
+            run.steps.push(Step {
+                along_m,
+                travel: windows.iter().map(|&gamma| travel_error(gamma).reaches(&pieces)).collect(),
+                sighting: sighting.map(|x| {
+                    windows
+                        .iter()
+                        .map(|&gamma| {
+                            Some(x.look(gamma + heading_error, &travel_error(gamma), scene.vehicle.speed_mps))
+                        })
+                        .collect()
+                }),
+            });
+            run.earliest_m.push(sighting.map_or(along_m, |x| x.window.lo()));
+            run.drift_apart.push(match sighting {
+                None => Vec::new(),
+                Some(x) => windows.iter().map(|&gamma| x.drift_apart(&travel_error(gamma))).collect(),
+            });
+        }
+        run
+    }
+
+    /// Solves from `start_m`, one of the starts given to [`ComposedRun::new`]. `solver` must have the stray budget
+    /// f + g. `visit` gets every set W at its distance along the track.
+    ///
+    /// # Panics
+    /// When `start_m` is not one of the starts.
+    pub fn solve(
+        &self,
+        solver: &Solver<'_>,
+        start_m: f64,
+        mut visit: impl FnMut(f64, &Feasible),
+    ) -> ComposedOutcome {
+        let first = 1 + self
+            .steps
+            .iter()
+            .position(|step| step.sighting.is_none() && step.along_m == start_m)
+            .expect("the start was announced");
+        let mut outcome = ComposedOutcome {
+            fix_m: None,
+            certain_sightings: 0,
+            places: None,
+            spread_m: None,
+            is_undecided: false,
+        };
+        let solved = solver.run_where(
+            &self.steps[first..],
+            // A sighting that may have happened before the start is not certain from here.
+            |number| self.earliest_m[first + number] >= start_m,
+            |summary, set| {
+                let spread_m = spread_over_window(set, &self.drift_apart[first + summary.step]);
+                outcome.certain_sightings += 1;
+                outcome.places = Some(summary.places);
+                outcome.spread_m = spread_m;
+                if outcome.fix_m.is_none() && spread_m.is_some_and(|spread| spread <= solver.fix_size_m) {
+                    outcome.fix_m = Some(summary.along_m - start_m);
+                }
+                visit(summary.along_m, set);
+            },
+        );
+        outcome.is_undecided = solved.is_undecided;
+        outcome
+    }
+}
+
+impl CertainSighting {
+    /// The relative positions of the history at the end of the window.
+    fn look(&self, heading_error: Interval, travel: &TravelError, speed_mps: f64) -> Look {
+        let mut from_landmark = mirrored(&polar_reaches(self.rho, self.theta + heading_error));
+        add_reaches(&mut from_landmark, &self.carried(travel, speed_mps));
+        add_reaches(&mut from_landmark, &disc_reaches(COMPOSED_RESOLUTION_M));
+        Look::new(from_landmark)
+    }
+
+    /// conv{0, travel over the window}.
+    fn carried(&self, travel: &TravelError, speed_mps: f64) -> Reaches {
+        let length_m = self.window.width();
+        let piece =
+            ReportedPiece { length_m, heading_rad: self.heading_rad, duration_s: length_m / speed_mps };
+        travel.reaches(&[piece]).map(|reach| larger(reach, 0.0))
+    }
+
+    /// conv{0, s·u − κ·s·Rot·u} with s the width of the window.
+    fn drift_apart(&self, travel: &TravelError) -> Reaches {
+        let length = Interval::point(self.window.width());
+        let heading = Interval::point(self.heading_rad);
+        let mut apart = polar_reaches(length, heading);
+        let turned = mirrored(&polar_reaches(length * travel.scale, heading + travel.heading));
+        add_reaches(&mut apart, &turned);
+        apart.map(|reach| larger(reach, 0.0))
+    }
+}
+
+/// Spread of ⋃ (W ⊕ E) over the windows of bias.
+fn spread_over_window(set: &Feasible, drift_apart: &[Reaches]) -> Option<f64> {
+    set.states
+        .iter()
+        .map(|state| state.cell.minkowski_sum(&drift_apart[usize::from(state.slice)]))
+        .reduce(|a, b| a.hull(&b))
+        .map(|hull| hull.diameter_m())
+}
+
+/// The windows of γ: width 2δ at steps of δ over [−2B, 2B], δ = 2B/n.
+fn gamma_windows(bounds: &Bounds) -> Vec<Interval> {
+    let bias = Interval::point(bounds.dead_reckoning.heading_bias_rad);
+    let count = bounds.heading_slices;
+    let end = |k: usize| {
+        let share = Interval::point(2.0 * k as f64) / Interval::point(count as f64) - Interval::point(2.0);
+        bias * share
+    };
+    (0..2 * count - 1).map(|k| end(k).hull(end(k + 2))).collect()
+}
+
+/// The planned motion between two distances along the track.
+fn pieces_between(plan: &Plan, from_m: f64, to_m: f64, speed_mps: f64) -> Vec<ReportedPiece> {
+    plan.pieces
+        .iter()
+        .filter_map(|piece| {
+            let start = larger(from_m, piece.along_m);
+            let end = crate::interval::smaller(to_m, piece.along_m + piece.length_m);
+            (end > start).then(|| ReportedPiece {
+                length_m: end - start,
+                heading_rad: piece.heading_rad,
+                duration_s: (end - start) / speed_mps,
+            })
+        })
+        .collect()
+}
+
+/// All certain sightings along the track.
+fn certain_sightings(scene: &Scene<'_>, plan: &Plan, bounds: &Bounds) -> Vec<CertainSighting> {
+    let reach = Interval::around(0.0, scene.sonar.range_max_m);
+    let mut found = Vec::new();
+    for piece in plan.pieces.iter().filter(|piece| scene.sonar.detect_in_turns || !piece.in_turn) {
+        let ends = Box2::hull_of(&[piece.start, piece.point_at(piece.length_m)]);
+        let near = ends.minkowski_sum(Box2 { east: reach, north: reach });
+        let mut numbers: Vec<usize> = scene.index.meeting(near).collect();
+        numbers.sort_unstable();
+        for landmark in numbers {
+            let geometry = Passage::new(scene, piece, landmark, bounds);
+            match scene.sonar.kind {
+                SonarKind::SideLooking { nadir_gap_rad } => found.extend(geometry.abeam(nadir_gap_rad)),
+                SonarKind::ForwardLooking { half_sector_rad } => {
+                    let entering = geometry.entering(half_sector_rad);
+                    if entering.is_some() {
+                        found.extend(geometry.leaving(half_sector_rad));
+                    }
+                    found.extend(entering);
+                }
+            }
+        }
+    }
+    found
+}
+
+/// One landmark's box seen from one straight piece of the track.
+struct Passage<'a> {
+    scene: &'a Scene<'a>,
+    piece: &'a Piece,
+    landmark: usize,
+    /// Along the piece from its start, metres.
+    ahead: Interval,
+    /// To starboard of the piece, metres.
+    starboard: Interval,
+    /// Altitude above the seabed.
+    altitude: Interval,
+    /// Half of the crab angle's interval; none when the drift may be as fast as the vehicle.
+    crab_rad: Option<f64>,
+}
+
+impl<'a> Passage<'a> {
+    fn new(scene: &'a Scene<'a>, piece: &'a Piece, number: usize, bounds: &'a Bounds) -> Self {
+        let landmark: &Landmark = &scene.landmarks[number];
+        let b = landmark.bounds();
+        let slack = Interval::around(0.0, RESOLUTION_M);
+        let east = b.east - Interval::point(piece.start.east_m) + slack;
+        let north = b.north - Interval::point(piece.start.north_m) + slack;
+        let heading = Interval::point(piece.heading_rad);
+        let (sin, cos) = (heading.sin(), heading.cos());
+        let ratio = bounds.dead_reckoning.drift_mps / scene.vehicle.speed_mps;
+        Self {
+            scene,
+            piece,
+
+            landmark: number,
+            ahead: east * sin + north * cos,
+            starboard: east * cos - north * sin,
+            altitude: bounds.altitude(),
+            // `libm::asin` is within 1 ulp; the resolution of angles covers it many times over.
+            crab_rad: (ratio < 1.0).then(|| libm::asin(ratio) + RESOLUTION_RAD),
+        }
+    }
+
+    /// |starboard| when the side is certain.
+    fn across(&self) -> Option<Interval> {
+        if self.starboard.lo() > 0.0 {
+            Some(self.starboard)
+        } else if self.starboard.hi() < 0.0 {
+            Some(-self.starboard)
+        } else {
+            None
+        }
+    }
+
+    /// The sighting when `window` (from the start of the piece) lies on the piece.
+    fn certain(&self, window: Interval, rho: Interval, theta: Interval) -> Option<CertainSighting> {
+        let on_piece = Interval::new(0.0, self.piece.length_m);
+        (!rho.is_empty() && on_piece.contains_interval(window)).then(|| CertainSighting {
+            landmark: self.landmark,
+            window: window + Interval::point(self.piece.along_m),
+            rho,
+            theta: theta + Interval::point(self.piece.heading_rad),
+            heading_rad: self.piece.heading_rad,
+        })
+    }
+
+    /// Horizontal range in the history from the slant range in the truth (point 3 of the proof).
+    fn composed_range(&self, slant: Interval) -> Interval {
+        let sonar = &self.scene.sonar;
+        let (a, b) = (sonar.range_error_m + COMPOSED_RESOLUTION_M, sonar.range_error_fraction);
+        let (one, b) = (Interval::point(1.0), Interval::point(b));
+        let twice = Interval::point(2.0) * Interval::point(a);
+        let lo = ((slant * (one - b)) - twice) / (one + b);
+        let hi = ((slant * (one + b)) + twice) / (one - b);
+        horizontal_range(lo.hull(hi).intersection(Interval::new(0.0, f64::INFINITY)), self.altitude)
+    }
+
+    /// Side-looking sonar: the beam passes the landmark.
+    fn abeam(&self, nadir_gap_rad: f64) -> Option<CertainSighting> {
+        let sonar = &self.scene.sonar;
+        let across = self.across()?;
+        // Angle of the beam off the track's normal: crab and beam error.
+        let off = self.crab_rad? + sonar.bearing_error_rad + RESOLUTION_RAD;
+        if off >= 1.0 {
+            return None;
+        }
+        let off = Interval::new(-off, off);
+        let rho = across / off.cos();
+        let slant = (rho.sqr() + self.altitude.sqr()).sqrt();
+        let gap =
+            (self.altitude * Interval::point(nadir_gap_rad).sin()) / Interval::point(nadir_gap_rad).cos();
+        let is_in_swath =
+            slant.lo() > sonar.range_min_m && slant.hi() < sonar.range_max_m && rho.lo() > gap.hi();
+        if !is_in_swath {
+            return None;
+        }
+        let window = self.ahead + across * (off.sin() / off.cos());
+        let side = if self.starboard.lo() > 0.0 { 1.0 } else { -1.0 };
+        let quarter =
+            Interval::point(side * std::f64::consts::FRAC_PI_2) + Interval::around(0.0, RESOLUTION_RAD);
+        self.certain(window, self.composed_range(slant), quarter + off)
+    }
+
+    /// Forward-looking sonar: the landmark comes within the far range while inside the sector.
+    fn entering(&self, half_sector_rad: f64) -> Option<CertainSighting> {
+        let sonar = &self.scene.sonar;
+        let slant = Interval::point(sonar.range_max_m);
+        let far = horizontal_range(slant, self.altitude);
+        let forward = (far.sqr() - self.starboard.sqr()).sqrt();
+        let near = horizontal_range(Interval::point(sonar.range_min_m), self.altitude);
+        if far.is_empty() || forward.is_empty() || forward.lo() <= 0.0 {
+            return None;
+        }
+        // A landmark nearer than the nearest range would enter from inside.
+        if !near.is_empty() && near.hi() >= far.lo() {
+            return None;
+        }
+        let bearing = bearing_of(self.starboard, forward);
+        let crab = Interval::around(0.0, self.crab_rad?);
+        let relative = bearing + crab;
+        let inside = Interval::new(-half_sector_rad, half_sector_rad);
+        if !(inside.contains_interval(relative)
+            && relative.hi() < half_sector_rad
+            && relative.lo() > -half_sector_rad)
+        {
+            return None;
+        }
+        let twice_error = Interval::around(0.0, 2.0 * sonar.bearing_error_rad + RESOLUTION_RAD);
+        self.certain(self.ahead - forward, self.composed_range(slant), bearing + twice_error)
+    }
+
+    /// Forward-looking sonar: the landmark leaves across the edge of the sector, having entered.
+    fn leaving(&self, half_sector_rad: f64) -> Option<CertainSighting> {
+        let sonar = &self.scene.sonar;
+        let across = self.across()?;
+        let edge = Interval::around(half_sector_rad, self.crab_rad?);
+        if edge.hi() > LEAVING_SECTOR_MAX_RAD || edge.lo() <= 0.0 {
+            return None;
+        }
+        let rho = across / edge.sin();
+        let slant = (rho.sqr() + self.altitude.sqr()).sqrt();
+        if slant.lo() <= sonar.range_min_m || slant.hi() >= sonar.range_max_m {
+            return None;
+        }
+        let window = self.ahead - across * (edge.cos() / edge.sin());
+        let side = if self.starboard.lo() > 0.0 { edge } else { -edge };
+        let twice_error = Interval::around(0.0, 2.0 * sonar.bearing_error_rad + RESOLUTION_RAD);
+        self.certain(window, self.composed_range(slant), side + twice_error)
+    }
+}
+
+/// Bearings of the points { (starboard, forward) } off the track, for forward > 0: atan2 is monotone in each argument
+/// there, so its extremes lie at corners of the box.
+fn bearing_of(starboard: Interval, forward: Interval) -> Interval {
+    let mut bearing = Interval::EMPTY;
+    for x in [starboard.lo(), starboard.hi()] {
+        for y in [forward.lo(), forward.hi()] {
+            // `libm::atan2` is within 1 ulp; the resolution of angles covers it many times over.
+            bearing = bearing.hull(Interval::around(libm::atan2(x, y), RESOLUTION_RAD));
+        }
+    }
+    bearing
+}
