@@ -12,5 +12,6 @@ mod projection;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
+mod sets;
 mod soundness;
 mod support;
