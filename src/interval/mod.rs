@@ -17,6 +17,7 @@ mod relaxed;
 mod trig;
 mod union;
 
+pub use crate::order::{larger, smaller};
 pub use box2::Box2;
 pub use relaxed::relaxed_intersection;
 pub use union::IntervalUnion;
@@ -33,18 +34,6 @@ pub fn down(x: f64) -> f64 {
 #[inline]
 pub fn up(x: f64) -> f64 {
     x.next_up()
-}
-
-/// The larger of two numbers by IEEE total order (not-a-number is never dropped silently).
-#[inline]
-pub fn larger(a: f64, b: f64) -> f64 {
-    if a.total_cmp(&b).is_lt() { b } else { a }
-}
-
-/// The smaller of two numbers by IEEE total order.
-#[inline]
-pub fn smaller(a: f64, b: f64) -> f64 {
-    if b.total_cmp(&a).is_lt() { b } else { a }
 }
 
 /// A closed interval [lo, hi] of reals; empty when lo > hi.

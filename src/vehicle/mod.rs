@@ -77,7 +77,8 @@ impl Sonar {
     /// Shortest horizontal range at the nominal altitude, metres: where the shortest slant range or the nadir
     /// gap ends, whichever is farther out.
     pub fn nearest_m(&self) -> f64 {
-        let by_range = libm::sqrt((self.range_min_m.powi(2) - self.altitude_m.powi(2)).clamp(0.0, f64::INFINITY));
+        let by_range =
+            libm::sqrt((self.range_min_m.powi(2) - self.altitude_m.powi(2)).clamp(0.0, f64::INFINITY));
         let by_gap = match self.kind {
             SonarKind::SideLooking { nadir_gap_rad } => self.altitude_m * libm::tan(nadir_gap_rad),
             SonarKind::ForwardLooking { .. } => 0.0,
