@@ -1,6 +1,9 @@
 //! All integration tests in one binary.
 
+mod cli;
+mod craters;
 mod demo;
+mod determinism;
 mod export;
 mod guarantee;
 mod intervals;
@@ -9,6 +12,7 @@ mod load;
 mod one_dimension;
 mod oracle;
 mod projection;
+mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
