@@ -115,20 +115,18 @@ impl<'a> Setup<'a> {
         let dive = self.dive;
         let (sonar, bounds, scoring) = (&dive.sonar, &dive.dead_reckoning, &dive.scoring);
         let (sonar_kind, sector_deg, nadir_gap_deg) = match sonar.kind {
-            SonarKind::SideLooking { nadir_gap_rad } => {
-                ("side-looking", None, Some(nadir_gap_rad.to_degrees()))
-            }
+            SonarKind::SideLooking { nadir_gap_rad } => ("side-looking", None, Some(degrees(nadir_gap_rad))),
             SonarKind::ForwardLooking { half_sector_rad } => {
-                ("forward-looking", Some(2.0 * half_sector_rad.to_degrees()), None)
+                ("forward-looking", Some(degrees(2.0 * half_sector_rad)), None)
             }
         };
         let half_widths = || dive.landmarks.iter().flat_map(|l| [l.half_width_east_m, l.half_width_north_m]);
         Parameters {
             speed_mps: dive.vehicle.speed_mps,
             turn_radius_m: dive.vehicle.turn_radius_m,
-            scale_error_pct: bounds.scale_error * 100.0,
-            heading_bias_deg: bounds.heading_bias_rad.to_degrees(),
-            heading_noise_deg: bounds.heading_noise_rad.to_degrees(),
+            scale_error_pct: per_cent(bounds.scale_error),
+            heading_bias_deg: degrees(bounds.heading_bias_rad),
+            heading_noise_deg: degrees(bounds.heading_noise_rad),
             drift_mps: bounds.drift_mps,
             sonar_kind,
             range_min_m: sonar.range_min_m,
@@ -139,8 +137,8 @@ impl<'a> Setup<'a> {
             nadir_gap_deg,
             altitude_m: sonar.altitude_m,
             range_error_m: sonar.range_error_m,
-            range_error_pct: sonar.range_error_fraction * 100.0,
-            bearing_error_deg: sonar.bearing_error_rad.to_degrees(),
+            range_error_pct: per_cent(sonar.range_error_fraction),
+            bearing_error_deg: degrees(sonar.bearing_error_rad),
             altitude_error_m: sonar.altitude_error_m,
             detection_chance: sonar.detection_chance,
             detect_in_turns: sonar.detect_in_turns,
@@ -158,6 +156,17 @@ impl<'a> Setup<'a> {
             cell_budget: scoring.cell_budget,
         }
     }
+}
+
+/// Radians as the degrees that a user would type: rounded to 10⁻⁹°, so that 30° does not come back as 29.999999999999996.
+/// For display only; the bounds themselves are never rounded.
+fn degrees(radians: f64) -> f64 {
+    (radians.to_degrees() * 1e9).round() / 1e9
+}
+
+/// A fraction as per cent, likewise.
+fn per_cent(fraction: f64) -> f64 {
+    (fraction * 100.0 * 1e9).round() / 1e9
 }
 
 /// Slices of the heading-bias interval.

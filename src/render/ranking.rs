@@ -25,7 +25,7 @@ pub(super) fn draw(sheet: &mut Sheet, area: Rect, report: &LinesReport) {
     let mut ranked: Vec<&LineReport> = report.lines.iter().collect();
     ranked.sort_by_key(|line| line.rank);
     // Two lines for each, or one when there are many.
-    let roomy = sizes.body().line_px() + 36.0 * k;
+    let roomy = sizes.body().line_px() + 38.0 * k;
     let tight = sizes.body().line_px() + 4.0 * k;
     let rows_at = |pitch: f64, bottom: f64| ((bottom - y) / pitch) as usize;
     let is_roomy = ranked.len() <= rows_at(roomy, area.bottom);
@@ -73,7 +73,7 @@ fn name(sheet: &mut Sheet, at: Rect, line: &LineReport, font: Font, room: f64) -
 fn roomy_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
     let (k, font) = (sheet.sizes.k, sheet.sizes.heading());
     let name = name(sheet, at, line, font, at.width() - 34.0 * k);
-    let bar = Rect::new(name.left, name.bottom + 4.0 * k, name.left + 150.0 * k, name.bottom + 20.0 * k);
+    let bar = Rect::new(name.left, name.bottom + 6.0 * k, name.left + 150.0 * k, name.bottom + 22.0 * k);
     let right = share(sheet, bar, line);
     let p95 = match line.estimated.p95_m.value {
         Some(p95) => format!("p95 {} m", nice::metres(p95)),

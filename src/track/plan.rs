@@ -121,7 +121,8 @@ impl Plan {
 
     /// Length of the track that lies in turns, metres.
     pub fn turn_length_m(&self) -> f64 {
-        self.pieces.iter().filter(|p| p.in_turn).map(|p| p.length_m).sum()
+        // The empty sum of floats is −0; the 0 in front makes it 0.
+        self.pieces.iter().filter(|p| p.in_turn).fold(0.0, |sum, p| sum + p.length_m)
     }
 
     /// The point at a distance along the track, clamped to its ends.

@@ -1,4 +1,6 @@
 //! All integration tests in one binary.
+#![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
+#![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
 mod cli;
 mod craters;
@@ -16,5 +18,6 @@ mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
+mod sets;
 mod soundness;
 mod support;

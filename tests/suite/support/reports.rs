@@ -258,7 +258,7 @@ pub fn trace(count: usize) -> TraceReport {
     for index in 0..count {
         let t = (index + 1) as f64 / (count + 1) as f64;
         let truth = at(300.0 + 1400.0 * t, 1000.0 + 100.0 * t);
-        let wanted = (300.0 / 4.0_f64.powi(index as i32)).round().max(1.0) as usize;
+        let wanted = (300.0 / 4.0_f64.powi(index as i32)).clamp(1.0, 300.0).round() as usize;
         let half = 12.0 / (index as f64 + 1.0);
         let mut cells: Vec<Vec<LocalPoint>> = (1..wanted)
             .map(|_| octagon(at(random.random_range(0.0..2000.0), random.random_range(0.0..2000.0)), half))

@@ -162,6 +162,7 @@ fn random_bounds(rng: &mut ChaCha8Rng) -> Bounds {
 
 /// A random field of `count` landmarks at 100 per km² with a straight line through its middle: the scene of the
 /// benchmarks. Side-looking sonar to 75 m, 0.3 % and 1° dead reckoning, boxes of ± 2 m.
+#[allow(dead_code, reason = "the benchmarks use it")]
 pub fn open_field(count: usize) -> RandomScene {
     let mut rng = ChaCha8Rng::seed_from_u64(count as u64);
     let side_m = 100.0 * (count as f64).sqrt();
