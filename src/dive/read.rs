@@ -110,6 +110,8 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         sonar: widened_sonar,
         start: Start { search_area, scatter_m },
         scoring: settings.scoring?,
+        heading_slices: settings.heading_slices?,
+        budget: settings.budget?,
         inputs,
         notices: std::mem::take(&mut findings.notices),
     })

@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use super::section::Document;
-use super::{ErrorShape, RankBy, Scoring};
+use super::{Budget, ErrorShape, RankBy, Scoring};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -32,6 +32,8 @@ pub(super) struct Settings {
     pub area_crs: Option<Crs>,
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
+    pub heading_slices: Option<usize>,
+    pub budget: Option<Budget>,
 }
 
 impl Settings {
@@ -66,6 +68,8 @@ impl Settings {
         }
         let scatter_m = doc.number("start", "scatter_m", f);
         let scoring = scoring(doc, f);
+        let heading_slices = doc.number("dead_reckoning", "heading_slices", f).map(|n| n as usize);
+        let budget = budget(doc, f);
         Self {
             name,
             landmarks,
@@ -87,6 +91,8 @@ impl Settings {
             area_crs,
             scatter_m,
             scoring,
+            heading_slices,
+            budget,
         }
     }
 }
@@ -162,6 +168,7 @@ fn sonar(doc: &Document<'_>, f: &mut Findings) -> Option<Sonar> {
     let bearing_error = number("bearing_error_deg", f);
     let altitude_error = number("altitude_error_m", f);
     let chance = number("detection_chance", f);
+    let strays = number("strays_per_km", f);
     let detect_in_turns = doc.flag("sonar", "detect_in_turns", f);
     let word = word?;
     let side = word == "side-looking";
@@ -194,6 +201,7 @@ fn sonar(doc: &Document<'_>, f: &mut Findings) -> Option<Sonar> {
         bearing_error_rad: bearing_error?.to_radians(),
         altitude_error_m: altitude_error?,
         detection_chance: chance?,
+        strays_per_km: strays?,
         detect_in_turns,
     };
     consistent_sonar(doc, &sonar, f).then_some(sonar)
@@ -258,6 +266,12 @@ fn consistent_sonar(doc: &Document<'_>, sonar: &Sonar, f: &mut Findings) -> bool
     f.problems.len() == before
 }
 
+fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {
+    let strays = doc.number("budget", "strays", f);
+    let misses = doc.number("budget", "misses", f);
+    Some(Budget { strays: strays? as u8, misses: misses? as u8 })
+}
+
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
     let number = |name: &str, f: &mut Findings| doc.number("scoring", name, f);
     let fix_size = number("fix_size_m", f);
@@ -281,10 +295,11 @@ fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
         })
         .collect();
     let rank_by = match rank_by?.as_str() {
+        "share" => RankBy::Share,
         "p95" => RankBy::P95,
         "median" => RankBy::Median,
         "no-fix" => RankBy::NoFix,
-        _ => RankBy::Share,
+        _ => RankBy::Guaranteed,
     };
     // Whole numbers in range are exact in f64: the ranges end at 2^53.
     Some(Scoring {

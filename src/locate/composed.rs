@@ -51,6 +51,7 @@ use super::cell::{Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
 use super::feasible::Feasible;
 use super::forward::Solver;
 use super::steps::{Look, RESOLUTION_M, RESOLUTION_RAD, Step, TravelError};
+use super::watch::FixWatch;
 use crate::detect::{ReportedPiece, Scene};
 use crate::interval::{Box2, Interval, larger};
 use crate::map::Landmark;
@@ -98,6 +99,8 @@ pub struct ComposedRun {
 pub struct ComposedOutcome {
     /// Guaranteed fix distance from the start, metres.
     pub fix_m: Option<f64>,
+    /// Guaranteed distance from the start to a fix that lasts to the end of the line, metres.
+    pub lasting_m: Option<f64>,
     /// Certain sightings from the start to the end of the line.
     pub certain_sightings: usize,
     /// Places at the last certain sighting.
@@ -128,7 +131,9 @@ impl ComposedRun {
             slack_m: COMPOSED_RESOLUTION_M,
         };
         let sightings = certain_sightings(scene, plan, bounds);
-        let mut stops: Vec<(f64, Option<&CertainSighting>)> = starts_m.iter().map(|&at| (at, None)).collect();
+        // The end of the line is a mark too, so that a fix is known to last until there.
+        let mut stops: Vec<(f64, Option<&CertainSighting>)> =
+            starts_m.iter().chain([&plan.length_m]).map(|&at| (at, None)).collect();
         stops.extend(sightings.iter().map(|sighting| (sighting.window.hi(), Some(sighting))));
         stops.sort_by(|a, b| {
             a.0.total_cmp(&b.0)
@@ -179,27 +184,31 @@ impl ComposedRun {
             .expect("the start was announced");
         let mut outcome = ComposedOutcome {
             fix_m: None,
+            lasting_m: None,
             certain_sightings: 0,
             places: None,
             spread_m: None,
             is_undecided: false,
         };
+        let steps = &self.steps[first..];
+        let mut watch = FixWatch::new(steps, solver.fix_size_m);
         let solved = solver.run_where(
-            &self.steps[first..],
+            steps,
             // A sighting that may have happened before the start is not certain from here.
             |number| self.earliest_m[first + number] >= start_m,
             |summary, set| {
                 let spread_m = spread_over_window(set, &self.drift_apart[first + summary.step]);
+                watch.see(summary.step, set, spread_m);
                 outcome.certain_sightings += 1;
                 outcome.places = Some(summary.places);
                 outcome.spread_m = spread_m;
-                if outcome.fix_m.is_none() && spread_m.is_some_and(|spread| spread <= solver.fix_size_m) {
-                    outcome.fix_m = Some(summary.along_m - start_m);
-                }
                 visit(summary.along_m, set);
             },
         );
         outcome.is_undecided = solved.is_undecided;
+        let history = watch.finish(!solved.is_undecided);
+        outcome.fix_m = history.first_along_m.map(|along_m| along_m - start_m);
+        outcome.lasting_m = history.lasting_along_m.map(|along_m| along_m - start_m);
         outcome
     }
 }

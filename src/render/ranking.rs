@@ -53,6 +53,7 @@ pub(super) fn draw(sheet: &mut Sheet, area: Rect, report: &LinesReport) {
 
 fn order_in_words(rank_by: RankBy) -> &'static str {
     match rank_by {
+        RankBy::Guaranteed => "ordered by guaranteed share of the line",
         RankBy::Share => "ordered by this share",
         RankBy::P95 => "ordered by 95th percentile (p95)",
         RankBy::Median => "ordered by median fix distance",
