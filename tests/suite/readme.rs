@@ -409,7 +409,7 @@ fn stated_constants_are_those_in_force() {
     assert_eq!(format!("{:.1}", 100.0 * none_of_60), "6.0");
 }
 
-/// "Line C meets the most landmarks and is the worst choice"; every line ends more than 5 % of its runs without a fix.
+/// "Line C meets the most landmarks and comes last"; every line ends more than 5 % of its runs without a fix.
 #[test]
 fn what_is_said_of_the_demo_holds() {
     let report: serde_json::Value =
