@@ -2,7 +2,10 @@
 #![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
+mod cli;
+mod craters;
 mod demo;
+mod determinism;
 mod export;
 mod guarantee;
 mod intervals;
@@ -11,6 +14,7 @@ mod load;
 mod one_dimension;
 mod oracle;
 mod projection;
+mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
