@@ -180,6 +180,13 @@ pub const KEYS: &[Key] = &[
     ),
     key(
         "map",
+        "complete_inside",
+        Kind::File,
+        Without("no area"),
+        "Polygon (GeoJSON, WGS 84 or local metres like the map) inside which every mapped landmark exists; needed for budget.nothing_seen.",
+    ),
+    key(
+        "map",
         "decimal_comma",
         Kind::Flag,
         Default("false"),
@@ -256,6 +263,13 @@ pub const KEYS: &[Key] = &[
         "Bound on the speed of an unknown drift.",
     ),
     key(
+        "dead_reckoning",
+        "heading_slices",
+        Kind::Whole(Range::closed(1.0, 720.0, "")),
+        Default("4"),
+        "Slices of the heading bias that are solved one by one; more are tighter and slower.",
+    ),
+    key(
         "sonar",
         "kind",
         Kind::Choice(&["side-looking", "forward-looking"]),
@@ -320,12 +334,40 @@ pub const KEYS: &[Key] = &[
         Default("1"),
         "Chance that a landmark inside the swath is detected.",
     ),
+    number(
+        "sonar",
+        "strays_per_km",
+        Range::closed(0.0, 1_000.0, "per km"),
+        Default("0"),
+        "Simulated detections of things that are not on the map, per kilometre of line.",
+    ),
     key(
         "sonar",
         "detect_in_turns",
         Kind::Flag,
         Default("false"),
         "Landmarks are also detected while the vehicle turns.",
+    ),
+    key(
+        "budget",
+        "strays",
+        Kind::Whole(Range::closed(0.0, 20.0, "")),
+        Default("0"),
+        "Most detections per run that may be of something that is not on the map.",
+    ),
+    key(
+        "budget",
+        "misses",
+        Kind::Whole(Range::closed(0.0, 20.0, "")),
+        Default("0"),
+        "Most landmarks per run that may be missed although they are certainly inside the swath.",
+    ),
+    key(
+        "budget",
+        "nothing_seen",
+        Kind::Flag,
+        Default("false"),
+        "A landmark certainly passed and not detected speaks against a position (side-looking sonar, detection_chance 1).",
     ),
     key(
         "start",
@@ -393,8 +435,8 @@ pub const KEYS: &[Key] = &[
     key(
         "scoring",
         "rank_by",
-        Kind::Choice(&["share", "p95", "median", "no-fix"]),
-        Default("\"share\""),
+        Kind::Choice(&["guaranteed", "share", "p95", "median", "no-fix"]),
+        Default("\"guaranteed\""),
         "What orders the ranking of the lines.",
     ),
     key(

@@ -27,6 +27,7 @@ pub mod input;
 pub mod interval;
 pub mod locate;
 pub mod map;
+pub mod order;
 pub mod problem;
 pub mod render;
 pub mod report;

@@ -4,7 +4,7 @@ use rayon::prelude::*;
 
 use super::Setup;
 use crate::detect::{DrawnErrors, simulate};
-use crate::locate::steps;
+use crate::locate::{FixWatch, steps};
 use crate::track::plan::Plan;
 
 /// The run from one segment start in one simulated dive.
@@ -12,6 +12,12 @@ use crate::track::plan::Plan;
 pub(super) struct Run {
     /// Metres run until the first fix.
     pub fix_m: Option<f64>,
+    /// Metres run until the fix that lasts to the end of the line.
+    pub lasting_m: Option<f64>,
+    /// Whether a fix was lost again.
+    pub has_relapse: bool,
+    /// Whether the first fix does not hold the true position (only beyond the stray budget).
+    pub is_wrong: bool,
     /// Whether the solver ran out of its cell budget before a fix.
     pub is_undecided: bool,
     /// After each detection: metres run, number of places, spread.
@@ -35,16 +41,30 @@ pub(super) fn run_line(
         .into_par_iter()
         .map(|draw| {
             let errors = DrawnErrors::new(scoring.seed, name, draw as u64, setup.shape_of(draw));
-            let dive = simulate(&scene, plan, starts_m, &errors);
+            // The end of the line is a mark too, so that a fix is known to last until there.
+            let marked: Vec<f64> = starts_m.iter().copied().chain([plan.length_m]).collect();
+            let dive = simulate(&scene, plan, &marked, &errors);
             let steps = steps(&dive.log, &bounds);
             let marks = (0..steps.len()).filter(|&i| steps[i].sighting.is_none());
             let runs = marks
                 .zip(starts_m)
                 .map(|(mark, &start_m)| {
-                    let outcome = solver.run(&steps[mark + 1..], |_, _| {});
-                    let fix_m = outcome.first_fix_along_m(scoring.fix_size_m).map(|along| along - start_m);
+                    let ahead = &steps[mark + 1..];
+                    let mut watch = FixWatch::new(ahead, scoring.fix_size_m);
+                    let mut is_wrong = false;
+                    let outcome = solver.run(ahead, |event, set| {
+                        let is_first_fix = watch.see(event.step, set, event.spread_m);
+                        let truth = dive.truth[mark + 1 + event.step].position;
+                        is_wrong |= is_first_fix && !set.contains(truth);
+                    });
+                    let is_complete = !outcome.is_undecided && outcome.contradiction().is_none();
+                    let history = watch.finish(is_complete);
+                    let fix_m = history.first_along_m.map(|along| along - start_m);
                     Run {
                         fix_m,
+                        lasting_m: history.lasting_along_m.map(|along| along - start_m),
+                        has_relapse: history.relapses > 0,
+                        is_wrong,
                         is_undecided: outcome.is_undecided && fix_m.is_none(),
                         curve: outcome
                             .events

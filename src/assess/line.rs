@@ -1,6 +1,7 @@
 //! The score of a line from its simulated dives.
 
 use super::ensemble::{Run, run_line};
+use super::guarantee::{guaranteed_fixes, over_line, terms};
 use super::statistics::{at_rank_of_share, percentile, share, sort_missing_last};
 use super::{Setup, rank};
 use crate::detect::expected_detections;
@@ -19,6 +20,7 @@ pub fn score_lines(setup: &Setup<'_>, tick: &(dyn Fn() + Sync)) -> LinesReport {
         provenance: setup.provenance("fixability.lines"),
         parameters: setup.parameters(),
         rank_by,
+        guarantee: Some(terms(setup)),
         lines,
         landmarks: setup.chart_landmarks(),
     }
@@ -29,6 +31,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
     let starts_m = setup.segment_starts(plan.length_m);
     let detections = expected_detections(&setup.scene(), &plan);
     let draws = run_line(setup, &line.name, &plan, &starts_m, tick);
+    let mut guaranteed = guaranteed_fixes(setup, &plan, &starts_m).into_iter();
     let estimate = |runs: &[&Run]| estimated(runs, setup);
     let segments: Vec<SegmentReport> = starts_m
         .iter()
@@ -43,7 +46,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
                 path: plan.path(start_m, end_m),
                 detections_ahead: detections.iter().filter(|&&along_m| along_m >= start_m).count(),
                 estimated: estimate(&runs),
-                guaranteed: None,
+                guaranteed: guaranteed.next(),
             }
         })
         .collect();
@@ -59,6 +62,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
         blind_turn_m: setup.blind_turn_m(&plan),
         waypoints: line.waypoints.clone(),
         estimated: estimate(&all),
+        guaranteed: over_line(&segments, required_m),
         segments_p95_within_share: passing as f64 / segments.len() as f64,
         profile: profile(&draws, &starts_m, plan.length_m, setup.dive.scoring.segment_m),
         segments,
@@ -73,14 +77,23 @@ fn estimated(runs: &[&Run], setup: &Setup<'_>) -> EstimatedFix {
     sort_missing_last(&mut fixes);
     let within = fixes.iter().flatten().filter(|&&fix_m| fix_m <= scoring.required_fix_m).count();
     let without = fixes.iter().filter(|fix_m| fix_m.is_none()).count();
-    let undecided = runs.iter().filter(|run| run.is_undecided).count();
+    let mut lasting: Vec<Option<f64>> = runs.iter().map(|run| run.lasting_m).collect();
+    sort_missing_last(&mut lasting);
+    let share_of = |is: fn(&Run) -> bool| {
+        let count = runs.iter().filter(|run| is(run)).count();
+        count as f64 / (runs.len() as f64).clamp(1.0, f64::INFINITY)
+    };
     EstimatedFix {
         dives,
         median_m: percentile(&fixes, 0.5, dives),
         p95_m: percentile(&fixes, 0.95, dives),
         within_required_share: share(within, runs.len(), dives),
         no_fix_share: share(without, runs.len(), dives),
-        undecided_share: undecided as f64 / (runs.len() as f64).clamp(1.0, f64::INFINITY),
+        lasting_median_m: percentile(&lasting, 0.5, dives),
+        lasting_p95_m: percentile(&lasting, 0.95, dives),
+        relapse_share: share_of(|run| run.has_relapse),
+        wrong_fix_share: share_of(|run| run.is_wrong),
+        undecided_share: share_of(|run| run.is_undecided),
     }
 }
 
@@ -90,7 +103,7 @@ fn profile(draws: &[Vec<Run>], starts_m: &[f64], length_m: f64, step_m: f64) -> 
     (1..=count)
         .map(|k| {
             let run_m = k as f64 * step_m;
-            let (mut places, mut spreads, mut fixed, mut runs) = (Vec::new(), Vec::new(), 0, 0);
+            let (mut places, mut spreads, mut fixed, mut runs) = (Vec::new(), Vec::new(), 0usize, 0usize);
             for draw in draws {
                 for (run, start_m) in draw.iter().zip(starts_m) {
                     if start_m + run_m > length_m {
@@ -114,7 +127,7 @@ fn profile(draws: &[Vec<Run>], starts_m: &[f64], length_m: f64, step_m: f64) -> 
                 places_p95: at_rank_of_share(&places, 0.95),
                 spread_median_m: at_rank_of_share(&spreads, 0.5),
                 spread_p95_m: at_rank_of_share(&spreads, 0.95),
-                fixed_share: f64::from(u32::try_from(fixed).unwrap_or(u32::MAX)) / runs as f64,
+                fixed_share: fixed as f64 / runs as f64,
             }
         })
         .collect()

@@ -1,9 +1,11 @@
-//! Scores: what simulated dives say about a line, and one dive in detail.
+//! Scores: what is guaranteed of a line, what simulated dives say about it, and one dive in detail.
 //!
-//! Everything here is *estimated* from simulated dives and carries a confidence interval.
+//! What comes from [`guarantee`] is true for every error within the bounds. Everything else is *estimated* from
+//! simulated dives and carries a confidence interval. The two stand in fields of their own.
 
 mod check;
 mod ensemble;
+mod guarantee;
 mod line;
 mod rank;
 pub mod statistics;
@@ -53,7 +55,7 @@ impl<'a> Setup<'a> {
             map: &self.map,
             search_area: Cell::around_points(&self.dive.start.search_area),
             cell_budget: self.dive.scoring.cell_budget,
-            stray_budget: 0,
+            stray_budget: self.dive.budget.strays,
             fix_size_m: self.dive.scoring.fix_size_m,
         }
     }
@@ -63,7 +65,7 @@ impl<'a> Setup<'a> {
         Bounds {
             dead_reckoning: self.dive.dead_reckoning,
             sonar: self.dive.sonar,
-            heading_slices: HEADING_SLICES,
+            heading_slices: self.dive.heading_slices,
         }
     }
 
@@ -115,21 +117,20 @@ impl<'a> Setup<'a> {
         let dive = self.dive;
         let (sonar, bounds, scoring) = (&dive.sonar, &dive.dead_reckoning, &dive.scoring);
         let (sonar_kind, sector_deg, nadir_gap_deg) = match sonar.kind {
-            SonarKind::SideLooking { nadir_gap_rad } => {
-                ("side-looking", None, Some(nadir_gap_rad.to_degrees()))
-            }
+            SonarKind::SideLooking { nadir_gap_rad } => ("side-looking", None, Some(degrees(nadir_gap_rad))),
             SonarKind::ForwardLooking { half_sector_rad } => {
-                ("forward-looking", Some(2.0 * half_sector_rad.to_degrees()), None)
+                ("forward-looking", Some(degrees(2.0 * half_sector_rad)), None)
             }
         };
         let half_widths = || dive.landmarks.iter().flat_map(|l| [l.half_width_east_m, l.half_width_north_m]);
         Parameters {
             speed_mps: dive.vehicle.speed_mps,
             turn_radius_m: dive.vehicle.turn_radius_m,
-            scale_error_pct: bounds.scale_error * 100.0,
-            heading_bias_deg: bounds.heading_bias_rad.to_degrees(),
-            heading_noise_deg: bounds.heading_noise_rad.to_degrees(),
+            scale_error_pct: per_cent(bounds.scale_error),
+            heading_bias_deg: degrees(bounds.heading_bias_rad),
+            heading_noise_deg: degrees(bounds.heading_noise_rad),
             drift_mps: bounds.drift_mps,
+            heading_slices: dive.heading_slices,
             sonar_kind,
             range_min_m: sonar.range_min_m,
             range_max_m: sonar.range_max_m,
@@ -139,15 +140,18 @@ impl<'a> Setup<'a> {
             nadir_gap_deg,
             altitude_m: sonar.altitude_m,
             range_error_m: sonar.range_error_m,
-            range_error_pct: sonar.range_error_fraction * 100.0,
-            bearing_error_deg: sonar.bearing_error_rad.to_degrees(),
+            range_error_pct: per_cent(sonar.range_error_fraction),
+            bearing_error_deg: degrees(sonar.bearing_error_rad),
             altitude_error_m: sonar.altitude_error_m,
             detection_chance: sonar.detection_chance,
+            strays_per_km: sonar.strays_per_km,
             detect_in_turns: sonar.detect_in_turns,
             landmarks: dive.landmarks.len(),
             landmark_uncertainty: dive.uncertainty_statement.clone(),
             half_width_min_m: half_widths().min_by(f64::total_cmp),
             half_width_max_m: half_widths().max_by(f64::total_cmp),
+            stray_budget: dive.budget.strays,
+            miss_budget: dive.budget.misses,
             search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
             scatter_m: dive.start.scatter_m,
             fix_size_m: scoring.fix_size_m,
@@ -160,5 +164,13 @@ impl<'a> Setup<'a> {
     }
 }
 
-/// Slices of the heading-bias interval.
-const HEADING_SLICES: usize = 1;
+/// Radians as the degrees that a user would type: rounded to 10⁻⁹°, so that 30° does not come back as 29.999999999999996.
+/// For display only; the bounds themselves are never rounded.
+fn degrees(radians: f64) -> f64 {
+    (radians.to_degrees() * 1e9).round() / 1e9
+}
+
+/// A fraction as per cent, likewise.
+fn per_cent(fraction: f64) -> f64 {
+    (fraction * 100.0 * 1e9).round() / 1e9
+}

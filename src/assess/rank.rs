@@ -12,6 +12,7 @@ pub(super) fn rank(lines: &mut [LineReport], by: RankBy) {
         let (a, b) = (&lines[i].estimated, &lines[j].estimated);
         let p95 = missing_last(a.p95_m.value, b.p95_m.value);
         match by {
+            RankBy::Guaranteed => missing_last(guaranteed_share(&lines[j]), guaranteed_share(&lines[i])),
             RankBy::Share => missing_last(b.within_required_share.value, a.within_required_share.value),
             RankBy::P95 => p95,
             RankBy::Median => missing_last(a.median_m.value, b.median_m.value),
@@ -24,6 +25,11 @@ pub(super) fn rank(lines: &mut [LineReport], by: RankBy) {
     for (position, line) in order.into_iter().enumerate() {
         lines[line].rank = position + 1;
     }
+}
+
+/// Share of the line with a guaranteed fix within the required distance.
+fn guaranteed_share(line: &LineReport) -> Option<f64> {
+    line.guaranteed.map(|guaranteed| guaranteed.within_required_share)
 }
 
 /// Ascending, with missing values after all others.

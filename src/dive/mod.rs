@@ -33,6 +33,8 @@ pub enum ErrorShape {
 #[derive(Clone, Copy, Debug, PartialEq, Eq, serde::Serialize, clap::ValueEnum)]
 #[serde(rename_all = "kebab-case")]
 pub enum RankBy {
+    /// Share of the line with a guaranteed fix within the required distance; ties by 95th percentile.
+    Guaranteed,
     /// Share of dives (over all segment starts) with a fix within the required distance; ties by 95th percentile.
     Share,
     /// 95th percentile fix distance over all segment starts, shortest first.
@@ -50,6 +52,15 @@ pub struct Start {
     pub search_area: Vec<LocalPoint>,
     /// Radius of the descent scatter about the planned start of a line, metres, at least 0.
     pub scatter_m: f64,
+}
+
+/// What may go wrong with detections in one run and still be covered.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, serde::Serialize)]
+pub struct Budget {
+    /// Most detections of something that is not on the map.
+    pub strays: u8,
+    /// Most landmarks missed although they are certainly inside the swath.
+    pub misses: u8,
 }
 
 /// How lines are scored.
@@ -107,6 +118,12 @@ pub struct Dive {
     pub start: Start,
     /// How lines are scored.
     pub scoring: Scoring,
+    /// Slices of the heading-bias interval that the solver takes one by one, at least 1.
+    pub heading_slices: usize,
+    /// Detections that may be strays and landmarks that may be missed.
+    pub budget: Budget,
+    /// Corners of the polygon inside which "nothing seen" is evidence; none when it is not used.
+    pub nothing_seen_inside: Option<Vec<LocalPoint>>,
     /// What was read, with fingerprints: dive file first, then in the order named.
     pub inputs: Vec<InputFile>,
     /// What was understood and what to watch, for `check` and for standard error.

@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use super::section::Document;
-use super::{ErrorShape, RankBy, Scoring};
+use super::{Budget, ErrorShape, RankBy, Scoring};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -30,8 +30,12 @@ pub(super) struct Settings {
     pub sonar: Option<Sonar>,
     pub search_area: Option<PathBuf>,
     pub area_crs: Option<Crs>,
+    pub complete_inside: Option<PathBuf>,
+    pub nothing_seen: bool,
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
+    pub heading_slices: Option<usize>,
+    pub budget: Option<Budget>,
 }
 
 impl Settings {
@@ -65,7 +69,11 @@ impl Settings {
             );
         }
         let scatter_m = doc.number("start", "scatter_m", f);
+        let complete_inside = doc.file("map", "complete_inside", f);
+        let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
         let scoring = scoring(doc, f);
+        let heading_slices = doc.number("dead_reckoning", "heading_slices", f).map(|n| n as usize);
+        let budget = budget(doc, f);
         Self {
             name,
             landmarks,
@@ -85,8 +93,12 @@ impl Settings {
             sonar,
             search_area,
             area_crs,
+            complete_inside,
+            nothing_seen,
             scatter_m,
             scoring,
+            heading_slices,
+            budget,
         }
     }
 }
@@ -162,6 +174,7 @@ fn sonar(doc: &Document<'_>, f: &mut Findings) -> Option<Sonar> {
     let bearing_error = number("bearing_error_deg", f);
     let altitude_error = number("altitude_error_m", f);
     let chance = number("detection_chance", f);
+    let strays = number("strays_per_km", f);
     let detect_in_turns = doc.flag("sonar", "detect_in_turns", f);
     let word = word?;
     let side = word == "side-looking";
@@ -194,6 +207,7 @@ fn sonar(doc: &Document<'_>, f: &mut Findings) -> Option<Sonar> {
         bearing_error_rad: bearing_error?.to_radians(),
         altitude_error_m: altitude_error?,
         detection_chance: chance?,
+        strays_per_km: strays?,
         detect_in_turns,
     };
     consistent_sonar(doc, &sonar, f).then_some(sonar)
@@ -258,6 +272,48 @@ fn consistent_sonar(doc: &Document<'_>, sonar: &Sonar, f: &mut Findings) -> bool
     f.problems.len() == before
 }
 
+/// Whether "nothing seen" counts as evidence: only with side-looking sonar, certain detection and a complete map.
+fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> bool {
+    let wanted = doc.flag("budget", "nothing_seen", f);
+    let has_map = doc.has("map", "complete_inside");
+    if has_map && !wanted {
+        f.problem(
+            doc.problem("map", "complete_inside", "has no effect without budget.nothing_seen = true")
+                .advice("remove it, or set budget.nothing_seen"),
+        );
+    }
+    if !wanted {
+        return false;
+    }
+    let mut refuse = |what: &str, advice: &str| {
+        f.problem(doc.problem("budget", "nothing_seen", what.to_owned()).advice(advice));
+    };
+    if !has_map {
+        refuse(
+            "needs map.complete_inside",
+            "name the polygon inside which every mapped landmark is certain to exist",
+        );
+    }
+    if let Some(sonar) = sonar {
+        if sonar.detection_chance < 1.0 {
+            refuse(
+                "needs a detection that is certain, but sonar.detection_chance is below 1",
+                "leave nothing_seen out",
+            );
+        }
+        if matches!(sonar.kind, SonarKind::ForwardLooking { .. }) {
+            refuse("is available for side-looking sonar only", "leave nothing_seen out");
+        }
+    }
+    true
+}
+
+fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {
+    let strays = doc.number("budget", "strays", f);
+    let misses = doc.number("budget", "misses", f);
+    Some(Budget { strays: strays? as u8, misses: misses? as u8 })
+}
+
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
     let number = |name: &str, f: &mut Findings| doc.number("scoring", name, f);
     let fix_size = number("fix_size_m", f);
@@ -281,10 +337,11 @@ fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
         })
         .collect();
     let rank_by = match rank_by?.as_str() {
+        "share" => RankBy::Share,
         "p95" => RankBy::P95,
         "median" => RankBy::Median,
         "no-fix" => RankBy::NoFix,
-        _ => RankBy::Share,
+        _ => RankBy::Guaranteed,
     };
     // Whole numbers in range are exact in f64: the ranges end at 2^53.
     Some(Scoring {

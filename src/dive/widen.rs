@@ -113,7 +113,8 @@ impl Grid {
         DeadReckoning {
             scale_error: up(up(d.scale_error + e) + up(d.scale_error * e)),
             heading_noise_rad: up(d.heading_noise_rad + self.turn_rad),
-            drift_mps: up(d.drift_mps * larger(1.0, self.k_max)),
+            // No drift stays no drift.
+            drift_mps: if d.drift_mps > 0.0 { up(d.drift_mps * larger(1.0, self.k_max)) } else { 0.0 },
             ..d
         }
     }

@@ -11,7 +11,7 @@
 use geo::{Destination, Geodesic, Point};
 
 use super::{Frame, FrameError, LocalPoint};
-use crate::interval::{larger, smaller};
+use crate::order::{larger, smaller};
 
 /// How the grid distorts true lengths and directions over an area.
 #[derive(Clone, Copy, Debug, PartialEq)]

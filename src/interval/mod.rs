@@ -11,9 +11,16 @@
 //! [`crate::bibliography::JAULIN_2001`].
 
 mod box2;
+mod exp;
+pub mod paving;
+mod relaxed;
 mod trig;
+mod union;
 
+pub use crate::order::{larger, smaller};
 pub use box2::Box2;
+pub use relaxed::relaxed_intersection;
+pub use union::IntervalUnion;
 
 use serde::Serialize;
 
@@ -29,19 +36,11 @@ pub fn up(x: f64) -> f64 {
     x.next_up()
 }
 
-/// The larger of two numbers by IEEE total order (not-a-number is never dropped silently).
-#[inline]
-pub fn larger(a: f64, b: f64) -> f64 {
-    if a.total_cmp(&b).is_lt() { b } else { a }
-}
-
-/// The smaller of two numbers by IEEE total order.
-#[inline]
-pub fn smaller(a: f64, b: f64) -> f64 {
-    if b.total_cmp(&a).is_lt() { b } else { a }
-}
-
-/// A closed interval [lo, hi]; empty when lo > hi.
+/// A closed interval [lo, hi] of reals; empty when lo > hi.
+///
+/// *Invariant.* No end is ever "not a number". An interval made by hand has lo < +∞ and hi > −∞ and holds a real
+/// number. Rounding outward keeps that: a lower end that overflows upward steps back to the largest number, an upper
+/// end likewise downward. So a sum never meets ∞ − ∞, and products and quotients give their limits to 0 · ∞ and ∞ / ∞.
 #[derive(Clone, Copy, Debug, PartialEq, Serialize)]
 pub struct Interval {
     lo: f64,
@@ -56,21 +55,25 @@ impl Interval {
     /// The interval that holds 0 only.
     pub const ZERO: Self = Self { lo: 0.0, hi: 0.0 };
 
-    /// The interval [lo, hi].
+    /// The interval [lo, hi]; −∞ and +∞ leave it open at that end.
     ///
     /// # Panics
-    /// When `lo > hi` or either is not a number: an interval made by hand must not be empty by accident.
+    /// When `lo > hi`, when either is not a number, or when no real number lies between: an interval made by hand
+    /// must not be empty by accident.
     pub fn new(lo: f64, hi: f64) -> Self {
-        assert!(lo <= hi, "an interval needs lo <= hi, got [{lo}, {hi}]");
+        assert!(
+            lo <= hi && lo < f64::INFINITY && f64::NEG_INFINITY < hi,
+            "an interval needs lo <= hi and a number between, got [{lo}, {hi}]"
+        );
         Self { lo, hi }
     }
 
     /// The interval that holds exactly `x`.
     ///
     /// # Panics
-    /// When `x` is not a number: it would read as the empty set, and the truth would be lost without a sound.
+    /// When `x` is infinite or not a number: the truth would be lost without a sound.
     pub const fn point(x: f64) -> Self {
-        assert!(!x.is_nan(), "an interval holds numbers, got not a number");
+        assert!(x.is_finite(), "an interval holds finite numbers");
         Self { lo: x, hi: x }
     }
 
@@ -98,7 +101,7 @@ impl Interval {
     /// Whether no number is inside.
     #[inline]
     pub fn is_empty(self) -> bool {
-        !(self.lo <= self.hi)
+        self.lo > self.hi
     }
 
     /// Width, rounded up; 0 when empty.

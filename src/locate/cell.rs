@@ -69,12 +69,12 @@ struct Combination {
 static COMBINATIONS: LazyLock<Vec<Combination>> = LazyLock::new(|| {
     let cross = |a: [f64; 2], b: [f64; 2]| a[0] * b[1] - a[1] * b[0];
     let mut all = Vec::new();
-    for target in 0..DIRECTION_COUNT {
+    for (target, &d) in DIRECTIONS.iter().enumerate() {
         for before in 1..HALF {
             for after in 1..(HALF - before) {
                 let first = (target + DIRECTION_COUNT - before) % DIRECTION_COUNT;
                 let second = (target + after) % DIRECTION_COUNT;
-                let (d, a, b) = (DIRECTIONS[target], DIRECTIONS[first], DIRECTIONS[second]);
+                let (a, b) = (DIRECTIONS[first], DIRECTIONS[second]);
                 // Cramer's rule on small integers: numerators and determinant are exact, the quotient is enclosed.
                 let det = cross(a, b);
                 let share = |numerator: f64| {
@@ -167,11 +167,11 @@ impl Cell {
         let mut least = self.reach;
         let mut is_unchanged = true;
         let mut is_other = true;
-        for i in 0..DIRECTION_COUNT {
-            if other[i] < least[i] {
-                least[i] = other[i];
+        for (mine, theirs) in least.iter_mut().zip(other) {
+            if theirs < mine {
+                *mine = *theirs;
                 is_unchanged = false;
-            } else if least[i] < other[i] {
+            } else if *mine < *theirs {
                 is_other = false;
             }
         }

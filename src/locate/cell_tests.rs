@@ -9,10 +9,10 @@ fn box_of(e0: f64, e1: f64, n0: f64, n1: f64) -> Box2 {
 #[test]
 fn combinations_reproduce_their_direction() {
     for c in COMBINATIONS.iter() {
-        for axis in 0..2 {
-            let sum = c.alpha * Interval::point(DIRECTIONS[c.first][axis])
-                + c.gamma * Interval::point(DIRECTIONS[c.second][axis]);
-            assert!(sum.contains(DIRECTIONS[c.target][axis]));
+        let (first, second) = (DIRECTIONS[c.first], DIRECTIONS[c.second]);
+        for (axis, component) in DIRECTIONS[c.target].into_iter().enumerate() {
+            let sum = c.alpha * Interval::point(first[axis]) + c.gamma * Interval::point(second[axis]);
+            assert!(sum.contains(component));
         }
     }
     assert_eq!(COMBINATIONS.len(), 16 * 21);

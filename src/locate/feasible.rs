@@ -1,6 +1,7 @@
 //! The feasible set: a union of cells, its spread, and its places.
 
 use super::cell::Cell;
+use crate::frame::LocalPoint;
 use crate::interval::Interval;
 
 /// One cell of the feasible set and the history that it stands for.
@@ -25,6 +26,11 @@ impl Feasible {
     /// The smallest cell that holds the whole set; none when the set is empty.
     pub fn hull(&self) -> Option<Cell> {
         self.states.iter().map(|state| state.cell).reduce(|a, b| a.hull(&b))
+    }
+
+    /// Whether a position is in the set.
+    pub fn contains(&self, p: LocalPoint) -> bool {
+        self.states.iter().any(|state| state.cell.contains(p))
     }
 
     /// Upper bound of the widest extent of the whole set, metres; none when the set is empty.
@@ -108,7 +114,6 @@ fn root(group: &mut [usize], mut i: usize) -> usize {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::frame::LocalPoint;
     use crate::interval::Box2;
 
     fn state(east_m: f64, north_m: f64, half_m: f64, strays: u8) -> State {

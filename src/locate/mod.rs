@@ -23,8 +23,10 @@ mod composed;
 mod feasible;
 mod forward;
 mod steps;
+mod watch;
 
 pub use composed::{ComposedOutcome, ComposedRun};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use watch::{FixHistory, FixWatch};

@@ -149,3 +149,43 @@ fn encoding(error: png::EncodingError) -> RenderError {
 
 /// Paper is white: the buffer starts as 255 everywhere.
 const _: () = assert!(WHITE.0 == 255 && WHITE.1 == 255 && WHITE.2 == 255);
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::render::text::{Font, width};
+
+    /// What is measured is what is drawn: no ink of a text lies outside the rectangle the layout reserves for it.
+    #[test]
+    fn ink_stays_inside_the_measured_rectangle() {
+        let size = ChartSize { width_px: 900, height_px: 80 };
+        for bold in [false, true] {
+            for em_px in [15.0, 19.0, 34.0] {
+                let font = Font { em_px, bold };
+                for text in [
+                    "Ågjpqy ÉÑŮ (fjord) 0123 …",
+                    "Линия Йй Ёё щ",
+                    "Γραμμή ΐ ΰ",
+                    "ấ ệ ặ ņ ç",
+                    "WWW AVA To. |lij|",
+                ] {
+                    let mut scene = Scene::default();
+                    let rect = scene.text((20.0, 20.0), text, font, (0, 0, 0));
+                    assert!((rect.width() - width(text, font)).abs() < 1e-9);
+                    let bytes = paint(&scene, &size).unwrap();
+                    let mut reader = png::Decoder::new(std::io::Cursor::new(bytes)).read_info().unwrap();
+                    let mut pixels = vec![0; reader.output_buffer_size().unwrap()];
+                    reader.next_frame(&mut pixels).unwrap();
+                    let inked = pixels.chunks(3).enumerate().filter(|(_, pixel)| pixel[0] < 200);
+                    let mut count = 0;
+                    for (index, _) in inked {
+                        let (x, y) = ((index % 900) as f64, (index / 900) as f64);
+                        assert!(rect.grown(0.5).holds((x + 0.5, y + 0.5)), "{text} {em_px}: ink at {x}, {y}");
+                        count += 1;
+                    }
+                    assert!(count > 100, "{text} is drawn");
+                }
+            }
+        }
+    }
+}

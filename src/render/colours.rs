@@ -27,9 +27,9 @@ pub(super) const FEASIBLE: Rgb = (150, 200, 235);
 /// Classes of the ramp.
 pub const CLASSES: usize = 5;
 
-/// Where the classes sample the ramp, soonest first. The bright end is left out so that the first class still shows
-/// on white; the steps are even, so grey print keeps the order and the distances.
-const SAMPLES: [f64; CLASSES] = [0.92, 0.72, 0.52, 0.31, 0.08];
+/// Where the classes sample the ramp, soonest first: spaced evenly in grey (about 40 steps of 256 apart by ITU-R
+/// BT.601), which even steps of the ramp are not. The brightest end is left out so that the first class shows on white.
+const SAMPLES: [f64; CLASSES] = [0.96, 0.77, 0.575, 0.24, 0.05];
 
 /// Colours of the classes, soonest (light) to latest (dark): the viridis ramp of the `colorous` crate, sequential in
 /// lightness and readable with the common kinds of colour blindness.

@@ -11,6 +11,9 @@ use crate::report::{Parameters, Provenance};
 /// The canvas all sizes refer to: A4 landscape at 150 dots per inch.
 const REFERENCE_PX: (f64, f64) = (1754.0, 1240.0);
 
+/// How far a label of the lower edge may stick out beside the frame, pixels of the reference canvas.
+const OVERHANG_PX: f64 = 34.0;
+
 /// The three sizes of type. At print size they are 16, 9 and 7.7 points.
 #[derive(Clone, Copy, Debug)]
 pub(super) struct Sizes {
@@ -138,8 +141,12 @@ pub(super) fn bounds_in_words(parameters: &Parameters) -> String {
     if parameters.drift_mps > 0.0 {
         reckoning.push(format!("{} m/s drift", nice::short(parameters.drift_mps, 3)));
     }
+    let budget = match (parameters.stray_budget, parameters.miss_budget) {
+        (0, 0) => "no stray or miss allowed".to_owned(),
+        (strays, misses) => format!("{strays} strays and {misses} misses allowed"),
+    };
     format!(
-        "{} sonar {}–{} m, dead reckoning {}",
+        "{} sonar {}–{} m, dead reckoning {}; {budget}",
         parameters.sonar_kind,
         nice::short(parameters.range_min_m, 1),
         nice::short(parameters.range_max_m, 1),
@@ -184,6 +191,9 @@ impl Extent {
         self.north - self.south
     }
 }
+
+/// A grid line: its position on the canvas along one axis, pixels, and its label.
+type Tick = (f64, String);
 
 /// A map frame: a rectangle of canvas that shows a rectangle of ground, north up, same scale both ways.
 #[derive(Clone, Copy, Debug)]
@@ -242,8 +252,8 @@ impl MapFrame {
         step
     }
 
-    /// Eastings and northings of the grid lines, as (position on the canvas, label).
-    fn ticks(&self, font: Font) -> (Vec<(f64, String)>, Vec<(f64, String)>) {
+    /// Grid lines of the eastings (by x) and of the northings (by y).
+    fn ticks(&self, font: Font) -> (Vec<Tick>, Vec<Tick>) {
         let step = self.step_m(font);
         let east = nice::multiples(step, self.west, self.west + self.width_m());
         let south = self.north - self.rect.height() / self.px_per_m;
@@ -289,8 +299,8 @@ impl MapFrame {
         for (x, label) in east {
             let half = text::width(&label, font) / 2.0;
             sheet.scene.fill(Rect::new(x, bottom, x + line, bottom + 6.0 * k), INK);
-            // A label that would stick out of the frame's corner belongs to nobody.
-            if x - half >= left - 4.0 * k && x + half <= right + 4.0 * k {
+            // A label at a corner may stick out as far as the space beside the frame goes.
+            if x - half >= left - OVERHANG_PX * k && x + half <= right + OVERHANG_PX * k {
                 sheet.scene.text((x - half, labels_top), &label, font, INK);
             }
         }

@@ -41,10 +41,10 @@ pub(super) fn draw(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale, fin
             y = required_mark(sheet, column, y, scale);
         }
     }
-    let mut others = vec![
-        (Finding::NoFix, no_fix_label(scale.quantity)),
-        (Finding::Undecided, "undecided: cell budget reached"),
-    ];
+    let mut others = vec![(Finding::NoFix, no_fix_label(scale.quantity))];
+    if scale.quantity == Quantity::Estimated {
+        others.push((Finding::Undecided, "undecided: cell budget reached"));
+    }
     if findings.contains(&Finding::NotScored) {
         others.push((Finding::NotScored, "not scored"));
     }

@@ -14,12 +14,13 @@ const FAMILY: &str = "fixability-sans";
 /// Height of the font's line (ascent and descent) over its em, from the font's own tables: (1901 + 483) / 2048.
 /// The drawing library takes the former as the size, people speak of the latter.
 const LINE_PER_EM: f64 = 2384.0 / 2048.0;
-/// Highest ink of the Latin, Greek and Cyrillic letters with accents above the baseline, in em.
-const ASCENT_EM: f64 = 0.94;
+/// Highest ink of Latin, Greek and Cyrillic letters with one accent above the baseline, in em. (A capital with two
+/// accents, one on the other, reaches 0.06 em further.)
+const ASCENT_EM: f64 = 1.02;
 /// Lowest ink of the same letters under the baseline, in em.
-const DESCENT_EM: f64 = 0.24;
+const DESCENT_EM: f64 = 0.3;
 /// Distance of baselines in a block, in em.
-const LEADING_EM: f64 = 1.3;
+const LEADING_EM: f64 = 1.34;
 /// A space at which no line is broken.
 const NO_BREAK: char = '\u{a0}';
 /// Units that stay with their number.

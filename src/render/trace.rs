@@ -17,6 +17,8 @@ const CLOSE_SHARE: f64 = 0.25;
 const CELL_LEAST_PX: f64 = 5.0;
 /// Side of the mark for a cell too small to see, pixels.
 const MARK_PX: f64 = 7.0;
+/// Gap between frames, northing labels included, at least; pixels.
+const NOTE_MARGIN_PX: f64 = 110.0;
 /// Least size of landmarks in the small frames, pixels.
 const LANDMARK_PX: f64 = 3.0;
 
@@ -42,19 +44,22 @@ pub(super) fn scene(report: &TraceReport, size: &ChartSize) -> Result<Scene, Ren
     let area = Rect::new(sheet.inner.left, top + 14.0 * k, sheet.inner.right, bottom - scale_row);
     let (columns, rows) = raster(panels.len(), area);
     let (pitch_x, pitch_y) = (area.width() / columns as f64, area.height() / rows as f64);
-    let captions = sheet.sizes.heading().line_px() + font.line_px() + 6.0 * k;
+    // Notes are set narrower than any frame, so that the height they need is known before the frames are.
+    let notes: Vec<Vec<String>> =
+        panels.iter().map(|panel| text::wrap(&panel.note, font, pitch_x - NOTE_MARGIN_PX * k, 2)).collect();
+    let note_lines = notes.iter().map(Vec::len).max().unwrap_or(1);
+    let captions = sheet.sizes.heading().line_px() + note_lines as f64 * font.line_px() + 6.0 * k;
     let mut wide: Option<MapFrame> = None;
-    for (index, panel) in panels.iter().enumerate() {
+    for (index, (panel, note)) in panels.iter().zip(&notes).enumerate() {
         let (left, top) =
             (area.left + (index % columns) as f64 * pitch_x, area.top + (index / columns) as f64 * pitch_y);
         let cell = Rect::new(left, top, left + pitch_x - 16.0 * k, top + pitch_y - font.line_px() - 22.0 * k);
         let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell });
         let room = frame.rect.width();
         let title = text::fit(&panel.title, sheet.sizes.heading(), room);
-        let note = text::fit(&panel.note, font, room);
         sheet.scene.text((frame.rect.left, cell.top), &title, sheet.sizes.heading(), INK);
         let note_top = cell.top + sheet.sizes.heading().line_px();
-        sheet.scene.text((frame.rect.left, note_top), &note, font, INK);
+        sheet.scene.lines((frame.rect.left, note_top), note, font, INK);
         draw_panel(&mut sheet, &frame, report, panel);
         wide.get_or_insert(frame);
     }
@@ -137,21 +142,22 @@ fn found(event: &TraceEvent) -> String {
         1 => "1 place".to_owned(),
         count => format!("{count} places"),
     };
-    let mut words = match event.spread_m {
+    let words = match event.spread_m {
         Some(spread) => format!("{places}, spread {} m", nice::metres(spread)),
         None => "empty set: bounds violated".to_owned(),
     };
+    let mut words = vec![words];
     if event.is_fix {
-        words.push_str(": fix");
+        words.push("fix".to_owned());
     }
     if !event.truth_inside {
-        words.push_str("; TRUTH OUTSIDE");
+        words.insert(0, "TRUTH OUTSIDE".to_owned());
     }
     let drawn = event.cell_corners.len();
     if drawn < event.cells {
-        words.push_str(&format!("; {drawn} of {} cells drawn", event.cells));
+        words.push(format!("{drawn} of {} cells drawn", event.cells));
     }
-    words
+    words.join("; ")
 }
 
 /// First and last event, the fix, and those at which the number of places changes by the largest factor.
@@ -203,7 +209,7 @@ fn draw_panel(sheet: &mut Sheet, frame: &MapFrame, report: &TraceReport, panel: 
     area.extend(area.first().copied());
     clipped_stroke(scene, frame, &area, thin, GREY);
     draw_landmarks(scene, frame, &report.landmarks, LANDMARK_PX * larger(1.0, k));
-    clipped_stroke(scene, frame, &frame.path(&report.path), thin, SOFT_INK);
+    clipped_stroke(scene, frame, &frame.path(&report.path), thin, INK);
     if let Some(event) = panel.event {
         for cell in &event.cell_corners {
             draw_cell(scene, frame, &frame.path(cell), k);
@@ -294,7 +300,7 @@ fn legend(sheet: &mut Sheet, top: f64) -> f64 {
                 scene.outline(rect, larger(1.0, 1.4 * k), INK);
             }
             1 => cross(scene, centre, k),
-            2 => scene.stroke(line, larger(1.0, 1.2 * k), SOFT_INK),
+            2 => scene.stroke(line, larger(1.0, 1.2 * k), INK),
             3 => scene.fill(Rect::centred(centre, 5.0 * k, 5.0 * k), GREY),
             _ => scene.stroke(line, larger(1.0, 1.2 * k), GREY),
         }

@@ -48,6 +48,8 @@ pub struct Parameters {
     pub heading_noise_deg: f64,
     /// Unknown drift, m/s.
     pub drift_mps: f64,
+    /// Slices of the heading bias.
+    pub heading_slices: usize,
     /// `side-looking` or `forward-looking`.
     pub sonar_kind: &'static str,
     /// Shortest slant range, m.
@@ -74,6 +76,8 @@ pub struct Parameters {
     pub altitude_error_m: f64,
     /// Detection chance, 0 to 1.
     pub detection_chance: f64,
+    /// Simulated strays, per km of line.
+    pub strays_per_km: f64,
     /// Whether landmarks are detected in turns.
     pub detect_in_turns: bool,
     /// Landmarks on the map.
@@ -84,6 +88,10 @@ pub struct Parameters {
     pub half_width_min_m: Option<f64>,
     /// Largest half-width of a landmark's box, m; none without landmarks.
     pub half_width_max_m: Option<f64>,
+    /// Most detections per run that may be strays.
+    pub stray_budget: u8,
+    /// Most landmarks per run that may be missed.
+    pub miss_budget: u8,
     /// Area of the search area, km².
     pub search_area_km2: f64,
     /// Descent scatter radius, m.
@@ -126,18 +134,87 @@ pub struct EstimatedFix {
     pub within_required_share: Estimate,
     /// Share of dives with no fix before the line ends (0 to 1), undecided dives included.
     pub no_fix_share: Estimate,
+    /// Median distance to a fix that lasts to the end of the line, m.
+    pub lasting_median_m: Estimate,
+    /// 95th percentile of the distance to a fix that lasts to the end of the line, m.
+    pub lasting_p95_m: Estimate,
+    /// Share of dives in which a fix was lost again before the line ended (0 to 1).
+    pub relapse_share: f64,
+    /// Share of dives whose first fix does not hold the true position (0 to 1). Above 0 only where more strays were
+    /// drawn than the stray budget covers.
+    pub wrong_fix_share: f64,
     /// Share of dives in which the solver ran out of its cell budget (0 to 1).
     pub undecided_share: f64,
 }
 
-/// True for every error within the bounds: *guaranteed*. Absent until computed.
+/// Why there is no guaranteed fix.
+#[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize)]
+#[serde(rename_all = "kebab-case")]
+pub enum Cause {
+    /// Too few landmarks are certain to be detected before the line ends.
+    TooFewLandmarks,
+    /// Several places still fit: the ground looks like other ground within the bounds.
+    LookAlikes,
+    /// One place is left, but it is wider than the fix size.
+    TooWide,
+    /// The solver ran out of its cell budget.
+    Undecided,
+    /// Detection is not certain and no miss is budgeted.
+    DetectionNotCertain,
+}
+
+impl Cause {
+    /// The word used in files.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::TooFewLandmarks => "too-few-landmarks",
+            Self::LookAlikes => "look-alikes",
+            Self::TooWide => "too-wide",
+            Self::Undecided => "undecided",
+            Self::DetectionNotCertain => "detection-not-certain",
+        }
+    }
+}
+
+/// True for every error within the bounds: *guaranteed*.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct GuaranteedFix {
-    /// Guaranteed fix distance, m; none when there is no guaranteed fix before the line ends.
+    /// Guaranteed fix distance, m: the worst over the offset tracks; none when some track has none before the line ends.
     pub distance_m: Option<f64>,
-    /// Why there is none.
+    /// Guaranteed distance to a fix that lasts to the end of the line, m.
+    pub lasting_m: Option<f64>,
+    /// Landmarks that are certain to be detected from here to the end of the line, on the worst track.
+    pub certain_detections: usize,
+    /// Why there is no guaranteed fix; none when there is one.
+    pub cause: Option<Cause>,
+    /// The same in words.
     pub reason: Option<String>,
 }
+
+/// What the guaranteed figures of a line say together.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+pub struct GuaranteedLine {
+    /// Share of the line's length whose segments have a guaranteed fix within the required distance (0 to 1).
+    pub within_required_share: f64,
+    /// Share of the line's length whose segments have no guaranteed fix (0 to 1).
+    pub no_fix_share: f64,
+    /// Longest guaranteed fix distance of those segments that have one, m.
+    pub longest_m: Option<f64>,
+}
+
+/// What the guaranteed figures are true for.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct GuaranteeTerms {
+    /// Tracks for which each figure was computed; the worst is reported.
+    pub offset_tracks: usize,
+    /// How they lie.
+    pub offset_pattern: String,
+    /// In words.
+    pub statement: &'static str,
+}
+
+/// The terms of every guaranteed figure.
+pub const GUARANTEE_STATEMENT: &str = "On each of the offset tracks, every dive whose errors, strays and misses lie within the stated bounds and budgets has a fix within this distance. Tracks between the offset tracks are not covered by proof.";
 
 /// One scored segment of a line: the vehicle is lost at its start.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -197,6 +274,9 @@ pub struct LineReport {
     pub estimated: EstimatedFix,
     /// Share of segment starts whose estimated 95th percentile is within the required distance (0 to 1).
     pub segments_p95_within_share: f64,
+    /// Guaranteed figures over the whole line.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub guaranteed: Option<GuaranteedLine>,
     /// By segment.
     pub segments: Vec<SegmentReport>,
     /// Against distance run.
@@ -224,6 +304,9 @@ pub struct LinesReport {
     pub parameters: Parameters,
     /// Key that orders the ranking.
     pub rank_by: RankBy,
+    /// What the guaranteed figures are true for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub guarantee: Option<GuaranteeTerms>,
     /// Lines in the order of the file; `rank` gives the ranking.
     pub lines: Vec<LineReport>,
     /// For the chart.
@@ -285,7 +368,7 @@ pub struct TraceEvent {
     pub spread_m: Option<f64>,
     /// Whether the spread is at most the fix size.
     pub is_fix: bool,
-    /// Identifier of the landmark that was really seen (known to the simulator only).
+    /// Identifier of the landmark that was really seen, or `stray` (known to the simulator only).
     pub true_landmark: String,
     /// True position (known to the simulator only).
     pub true_position: LocalPoint,

@@ -119,9 +119,20 @@ impl Plan {
         Self { length_m: builder.along_m, pieces: builder.pieces, notes }
     }
 
+    /// The same track moved by `east_m` and `north_m`.
+    #[must_use]
+    pub fn moved(&self, east_m: f64, north_m: f64) -> Self {
+        let mut moved = self.clone();
+        for piece in &mut moved.pieces {
+            piece.start = LocalPoint::new(piece.start.east_m + east_m, piece.start.north_m + north_m);
+        }
+        moved
+    }
+
     /// Length of the track that lies in turns, metres.
     pub fn turn_length_m(&self) -> f64 {
-        self.pieces.iter().filter(|p| p.in_turn).map(|p| p.length_m).sum()
+        // The empty sum of floats is −0; the 0 in front makes it 0.
+        self.pieces.iter().filter(|p| p.in_turn).fold(0.0, |sum, p| sum + p.length_m)
     }
 
     /// The point at a distance along the track, clamped to its ends.

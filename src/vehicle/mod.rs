@@ -64,6 +64,8 @@ pub struct Sonar {
     pub altitude_error_m: f64,
     /// Chance that a landmark inside the swath is detected, in (0, 1].
     pub detection_chance: f64,
+    /// Simulated detections of things that are not on the map, per kilometre of line, at least 0.
+    pub strays_per_km: f64,
     /// Whether landmarks are detected while the vehicle turns. Off for most sonars.
     pub detect_in_turns: bool,
 }

@@ -9,10 +9,11 @@ fn ranks() -> BTreeMap<&'static str, u32> {
     BTreeMap::from([
         ("bibliography", 0),
         ("bounds", 0),
+        ("order", 0),
         ("problem", 0),
         ("units", 0),
-        ("interval", 1),
-        ("frame", 2),
+        ("frame", 1),
+        ("interval", 2),
         ("input", 3),
         ("map", 4),
         ("vehicle", 4),

@@ -1,6 +1,11 @@
 //! All integration tests in one binary.
+#![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
+#![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
+mod cli;
+mod craters;
 mod demo;
+mod determinism;
 mod export;
 mod guarantee;
 mod intervals;
@@ -9,11 +14,13 @@ mod load;
 mod one_dimension;
 mod oracle;
 mod projection;
+mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
 #[path = "support/scanline.rs"]
 mod scanline;
+mod sets;
 mod soundness;
 mod support;
 #[path = "support/template.rs"]

@@ -1,8 +1,299 @@
-//! Charts: the picture is decoded and its pixels are looked at.
+//! Charts: the picture is decoded and its pixels are looked at; the layout's rectangles are tested on seeded scenes.
 
-use fixability::render::{self, ChartSize};
+#![allow(clippy::unwrap_used, reason = "helpers of tests may panic as tests do")]
+
+use std::io::Cursor;
+
+use fixability::render::{self, CLASSES, ChartSize, PlacedText, Rect, RenderError, ramp};
+use fixability::report::{CAUTION, LinesReport};
 
 use crate::reports;
+
+struct Picture {
+    width: usize,
+    height: usize,
+    pixels: Vec<[u8; 3]>,
+}
+
+impl Picture {
+    fn decode(bytes: &[u8]) -> Self {
+        let mut reader = png::Decoder::new(Cursor::new(bytes)).read_info().unwrap();
+        let mut buffer = vec![0; reader.output_buffer_size().unwrap()];
+        let info = reader.next_frame(&mut buffer).unwrap();
+        assert_eq!((info.color_type, info.bit_depth), (png::ColorType::Rgb, png::BitDepth::Eight));
+        let pixels = buffer.chunks_exact(3).map(|p| [p[0], p[1], p[2]]).collect();
+        Self { width: info.width as usize, height: info.height as usize, pixels }
+    }
+
+    fn lines(report: &LinesReport) -> Self {
+        Self::decode(&render::lines_png(report, &ChartSize::default()).unwrap())
+    }
+
+    fn row(&self, y: usize) -> &[[u8; 3]] {
+        &self.pixels[y * self.width..(y + 1) * self.width]
+    }
+
+    fn count(&self, (r, g, b): (u8, u8, u8)) -> usize {
+        self.pixels.iter().filter(|&&pixel| pixel == [r, g, b]).count()
+    }
+
+    /// The middle one of the rows with most pixels of one colour, and the columns between which it has them in the left three quarters.
+    fn longest_run(&self, (r, g, b): (u8, u8, u8)) -> (usize, std::ops::Range<usize>) {
+        let map = self.width * 3 / 4;
+        let hits = |y: usize| {
+            let row = &self.row(y)[..map];
+            row.iter()
+                .enumerate()
+                .filter(|&(_, &pixel)| pixel == [r, g, b])
+                .map(|(x, _)| x)
+                .collect::<Vec<_>>()
+        };
+        let most = (0..self.height).map(|y| hits(y).len()).max().unwrap();
+        let rows: Vec<usize> = (0..self.height).filter(|&y| hits(y).len() == most).collect();
+        let y = rows[rows.len() / 2];
+        let columns = hits(y);
+        (y, columns[0]..columns[columns.len() - 1])
+    }
+}
+
+fn luma([r, g, b]: [u8; 3]) -> f64 {
+    // ITU-R BT.601: how a colour is turned into grey by most printers and viewers.
+    0.299 * f64::from(r) + 0.587 * f64::from(g) + 0.114 * f64::from(b)
+}
+
+/// One line due east, all of it with the same finding.
+fn uniform(p95_m: Option<f64>, undecided_share: f64) -> LinesReport {
+    let corners = [reports::at(0.0, 0.0), reports::at(2000.0, 0.0)];
+    let line = reports::line("A", 1, &corners, |_, _| reports::estimated(p95_m, undecided_share));
+    reports::report(vec![line], Vec::new())
+}
+
+/// Panics unless all texts lie on the canvas and none overlaps another.
+fn assert_clear(texts: &[PlacedText], size: &ChartSize, what: &str) {
+    let canvas = Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));
+    assert!(texts.len() > 20, "{what}: the layout has its texts");
+    for (index, text) in texts.iter().enumerate() {
+        assert!(canvas.contains(&text.rect), "{what}: clipped: {text:?}");
+        assert!(!text.text.is_empty());
+        for other in &texts[..index] {
+            assert!(!text.rect.overlaps(&other.rect), "{what}: {text:?} lies on {other:?}");
+        }
+    }
+}
+
+fn all_text(texts: &[PlacedText]) -> String {
+    texts.iter().map(|placed| placed.text.replace('\u{a0}', " ")).collect::<Vec<_>>().join(" ")
+}
+
+#[test]
+fn canvas_has_the_size_asked_for() {
+    for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754), (2400, 900)] {
+        let size = ChartSize { width_px, height_px };
+        let picture = Picture::decode(&render::lines_png(&reports::four_lines(), &size).unwrap());
+        assert_eq!((picture.width, picture.height), (width_px as usize, height_px as usize));
+        let picture = Picture::decode(&render::trace_png(&reports::trace(5), &size).unwrap());
+        assert_eq!((picture.width, picture.height), (width_px as usize, height_px as usize));
+    }
+}
+
+#[test]
+fn sizes_that_cannot_be_drawn_are_refused_with_the_reason() {
+    let refusal = |width_px, height_px| {
+        let size = ChartSize { width_px, height_px };
+        render::lines_png(&reports::four_lines(), &size).unwrap_err().to_string()
+    };
+    assert!(refusal(100_000, 100_000).contains("10000000000 pixels, and at most 16000000"));
+    assert!(refusal(799, 560).contains("at least 800 × 560"));
+    assert!(refusal(6000, 1000).contains("3 times its short side"));
+    assert!(refusal(0, 0).contains("0 × 0"));
+}
+
+#[test]
+fn reports_without_ground_are_refused() {
+    let empty = reports::report(Vec::new(), Vec::new());
+    assert!(matches!(render::lines_png(&empty, &ChartSize::default()), Err(RenderError::Nothing(_))));
+    let mut trace = reports::trace(0);
+    trace.path.clear();
+    trace.search_area.clear();
+    assert!(matches!(render::trace_png(&trace, &ChartSize::default()), Err(RenderError::Nothing(_))));
+}
+
+#[test]
+fn every_class_of_the_legend_has_its_colour() {
+    let picture = Picture::lines(&uniform(None, 0.0));
+    for colour in ramp() {
+        // A swatch is some 50 by 20 pixels; nothing but the legend shows the ramp here.
+        let count = picture.count(colour);
+        assert!((600..1400).contains(&count), "{colour:?}: {count} pixels");
+    }
+    assert!(picture.count((190, 30, 45)) > 100, "the requirement is marked");
+}
+
+#[test]
+fn segments_take_the_colour_of_their_class() {
+    // Required is 450 m, so the limits are 150, 300, 450 and two above.
+    let values = [100.0, 250.0, 400.0, 480.0, 590.0];
+    let corners = [reports::at(0.0, 0.0), reports::at(250.0, 0.0)];
+    let line = reports::line("A", 1, &corners, |n, _| reports::estimated(Some(values[n]), 0.0));
+    let picture = Picture::lines(&reports::report(vec![line], Vec::new()));
+    let (y, columns) = picture.longest_run(ramp()[2]);
+    let (first, length) = (columns.start, columns.len());
+    for (class, &(r, g, b)) in ramp().iter().enumerate() {
+        let x = (first + length / 2 + class * length) - 2 * length;
+        assert_eq!(picture.row(y)[x], [r, g, b], "class {class}");
+    }
+}
+
+#[test]
+fn segments_without_a_fix_are_hatched_and_undecided_ones_dotted() {
+    let (y, columns) = Picture::lines(&uniform(Some(100.0), 0.0)).longest_run(ramp()[4]);
+    assert!(columns.len() > 500, "the line spans the map");
+    let changes = |picture: &Picture| {
+        let dark: Vec<bool> = picture.row(y)[columns.clone()].iter().map(|&p| luma(p) < 128.0).collect();
+        dark.windows(2).filter(|pair| pair[0] != pair[1]).count()
+    };
+    let plain = Picture::lines(&uniform(Some(100.0), 0.0));
+    assert_eq!(changes(&plain), 0);
+
+    let hatched = Picture::lines(&uniform(None, 0.0));
+    assert!(changes(&hatched) > 100, "{}", changes(&hatched));
+    let light = hatched.row(y)[columns.clone()].iter().filter(|&&p| p == [255, 255, 255]).count();
+    assert!(light > columns.len() / 3, "hatch stands on white");
+
+    let dotted = Picture::lines(&uniform(None, 0.2));
+    assert!(changes(&dotted) > 100);
+    let grey = dotted.row(y)[columns.clone()].iter().filter(|&&p| p == [190, 195, 200]).count();
+    assert!(grey > columns.len() / 4, "dots stand on grey");
+}
+
+#[test]
+fn ramp_keeps_its_order_in_grey_and_shows_on_white() {
+    let grey: Vec<f64> = ramp().iter().map(|&(r, g, b)| luma([r, g, b])).collect();
+    assert!(grey.windows(2).all(|pair| pair[0] - pair[1] >= 30.0), "{grey:?}");
+    assert!(grey[0] <= 210.0, "the lightest class shows on white: {grey:?}");
+    assert_eq!(grey.len(), CLASSES);
+}
+
+#[test]
+fn texts_never_overlap_nor_leave_the_canvas() {
+    let sizes = [(1754, 1240), (900, 640), (1240, 1754)]
+        .map(|(width_px, height_px)| ChartSize { width_px, height_px });
+    for seed in 0..10 {
+        let report = reports::random_scene(seed);
+        for size in &sizes {
+            let texts = render::lines_layout(&report, size).unwrap();
+            assert_clear(&texts, size, &format!("seed {seed}, {size:?}"));
+            let texts = render::lines_layout(&reports::guaranteed(report.clone()), size).unwrap();
+            assert_clear(&texts, size, &format!("guaranteed, seed {seed}, {size:?}"));
+        }
+    }
+    for size in &sizes {
+        for count in [0, 1, 2, 3, 5, 9, 30] {
+            let texts = render::trace_layout(&reports::trace(count), size).unwrap();
+            assert_clear(&texts, size, &format!("trace of {count} events, {size:?}"));
+        }
+    }
+}
+
+#[test]
+fn awkward_provenance_is_cut_visibly() {
+    let mut report = reports::four_lines();
+    report.provenance.dive = "Ein sehr langer Name ".repeat(30);
+    report.provenance.inputs = vec![report.provenance.inputs[0].clone(); 40];
+    report.parameters.required_fix_m = 123.456;
+    let texts = render::lines_layout(&report, &ChartSize::default()).unwrap();
+    assert_clear(&texts, &ChartSize::default(), "long provenance");
+    assert!(texts.iter().any(|placed| placed.text.ends_with('…')));
+}
+
+#[test]
+fn many_lines_end_in_a_count_of_the_rest() {
+    let corners = |n: usize| [reports::at(0.0, n as f64 * 30.0), reports::at(1000.0, n as f64 * 30.0)];
+    let lines = (0..60)
+        .map(|n| {
+            reports::line(&format!("line {n}"), n + 1, &corners(n), |_, _| {
+                reports::estimated(Some(90.0), 0.0)
+            })
+        })
+        .collect();
+    let size = ChartSize::default();
+    let texts = render::lines_layout(&reports::report(lines, Vec::new()), &size).unwrap();
+    assert_clear(&texts, &size, "60 lines");
+    assert!(all_text(&texts).contains("more, in lines.csv and lines.json"));
+}
+
+#[test]
+fn no_text_is_under_seven_points_on_a4_and_there_are_three_sizes() {
+    let mut texts = render::lines_layout(&reports::random_scene(3), &ChartSize::default()).unwrap();
+    texts.extend(render::trace_layout(&reports::trace(9), &ChartSize::default()).unwrap());
+    let mut sizes: Vec<f64> = texts.iter().map(|placed| placed.em_px).collect();
+    sizes.sort_by(f64::total_cmp);
+    sizes.dedup();
+    assert_eq!(sizes.len(), 3, "{sizes:?}");
+    // 1754 pixels across 297 mm; a point is 1/72 inch.
+    let points = sizes[0] / 1754.0 * 297.0 / 25.4 * 72.0;
+    assert!(points >= 7.0, "{points}");
+}
+
+#[test]
+fn chart_says_what_it_shows() {
+    let report = reports::four_lines();
+    let words = all_text(&render::lines_layout(&report, &ChartSize::default()).unwrap());
+    for wanted in [
+        "Which line fixes the vehicle soonest?",
+        "Estimated fix distance, 95th percentile of simulated dives",
+        CAUTION,
+        "seed 20261201",
+        "WGS 84 / UTM zone 31N (EPSG:32631)",
+        "dive.toml 4f4f4f4f",
+        "400 landmarks, half-width 1–3 m",
+        "required fix distance 450 m",
+        "800 simulated dives scored",
+        "6231500",
+        "512500",
+    ] {
+        assert!(words.contains(wanted), "{wanted:?} in {words:?}");
+    }
+    assert!(!words.contains("Guaranteed"));
+    let words = all_text(&render::lines_layout(&reports::guaranteed(report), &ChartSize::default()).unwrap());
+    assert!(words.contains("Guaranteed fix distance"));
+    assert!(!words.contains("95th percentile of simulated dives"));
+}
+
+#[test]
+fn every_line_is_named_on_the_map_and_in_the_ranking() {
+    let texts = render::lines_layout(&reports::four_lines(), &ChartSize::default()).unwrap();
+    for name in ["A", "B", "C", "D"] {
+        assert_eq!(texts.iter().filter(|placed| placed.text == name).count(), 2, "{name}");
+    }
+}
+
+#[test]
+fn trace_shows_first_fix_and_last_event() {
+    let words = all_text(&render::trace_layout(&reports::trace(14), &ChartSize::default()).unwrap());
+    let report = reports::trace(14);
+    let fix = report.events.iter().find(|event| event.is_fix).unwrap();
+    for number in [1, fix.number, 14] {
+        assert!(words.contains(&format!("Event {number},")), "{number} in {words:?}");
+    }
+    assert!(words.contains("Close-up of event 14"));
+    assert!(words.contains(CAUTION));
+    assert!(!words.contains("TRUTH OUTSIDE"));
+    let mut report = reports::trace(3);
+    report.events[1].truth_inside = false;
+    report.events[2].cells = 5000;
+    let words = all_text(&render::trace_layout(&report, &ChartSize::default()).unwrap());
+    assert!(words.contains("TRUTH OUTSIDE"));
+    assert!(words.contains("of 5000 cells drawn"));
+}
+
+#[test]
+fn same_report_same_bytes() {
+    let size = ChartSize::default();
+    let report = reports::random_scene(5);
+    assert_eq!(render::lines_png(&report, &size), render::lines_png(&report, &size));
+    assert_eq!(render::trace_png(&reports::trace(4), &size), render::trace_png(&reports::trace(4), &size));
+}
 
 /// Writes the pictures of the test scenes for a person to look at: `FIXABILITY_PICTURES=DIR cargo test --release
 /// -- --ignored write_pictures`.

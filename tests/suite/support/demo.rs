@@ -11,8 +11,8 @@ use rand_chacha::rand_core::{Rng, SeedableRng};
 /// Seed of the generator (ChaCha with 20 rounds; the number fills the first eight bytes of the key).
 pub const DEMO_SEED: u64 = 37;
 
-/// South-west corner of the site, metres east and north.
-const CORNER_M: [f64; 2] = [512_000.0, 6_231_000.0];
+/// South-west corner of the site, metres east and north. South of 56° N, where the zones are regular.
+const CORNER_M: [f64; 2] = [512_000.0, 6_171_000.0];
 
 /// Size of the site east and north, metres.
 const SITE_M: [f64; 2] = [2600.0, 2000.0];
@@ -236,7 +236,7 @@ byte, with what the generator makes; to write them anew, run
 * `dive.toml`: names the files, the vehicle, the sonar, the error bounds and what is asked.
 
 Coordinates are WGS 84 latitude and longitude (EPSG:4326) with 8 decimals. The site was laid out in UTM zone 31N
-(EPSG:32631), 512 000 to 514 600 m east and 6 231 000 to 6 233 000 m north.
+(EPSG:32631), 512 000 to 514 600 m east and 6 171 000 to 6 173 000 m north.
 
 Licence: that of the project.
 "

@@ -78,7 +78,7 @@ impl RandomScene {
         Solver {
             map: &self.map,
             search_area: Cell::around_points(&self.search_area),
-            cell_budget: 20_000,
+            cell_budget: 200_000,
             stray_budget: 0,
             fix_size_m: self.fix_size_m,
         }
@@ -154,6 +154,7 @@ fn random_bounds(rng: &mut ChaCha8Rng) -> Bounds {
             bearing_error_rad: sometimes(rng, 0.05),
             altitude_error_m: sometimes(rng, 2.0),
             detection_chance: if rng.random_bool(0.5) { 1.0 } else { 0.8 },
+            strays_per_km: 0.0,
             detect_in_turns: rng.random_bool(0.5),
         },
         heading_slices: rng.random_range(1..4),
@@ -162,6 +163,7 @@ fn random_bounds(rng: &mut ChaCha8Rng) -> Bounds {
 
 /// A random field of `count` landmarks at 100 per km² with a straight line through its middle: the scene of the
 /// benchmarks. Side-looking sonar to 75 m, 0.3 % and 1° dead reckoning, boxes of ± 2 m.
+#[allow(dead_code, reason = "the benchmarks use it")]
 pub fn open_field(count: usize) -> RandomScene {
     let mut rng = ChaCha8Rng::seed_from_u64(count as u64);
     let side_m = 100.0 * (count as f64).sqrt();
@@ -205,6 +207,7 @@ pub fn open_field(count: usize) -> RandomScene {
                 bearing_error_rad: degree,
                 altitude_error_m: 0.5,
                 detection_chance: 1.0,
+                strays_per_km: 0.0,
                 detect_in_turns: false,
             },
             heading_slices: 1,
