@@ -2,7 +2,7 @@
 
 use fixability::detect::{DrawnErrors, Errors, LegErrors, SightingErrors, StrayDraw, simulate};
 use fixability::dive::{Budget, ErrorShape};
-use fixability::locate::cell::{Cell, add_reaches};
+use fixability::locate::cell::{Cell, DIRECTION_COUNT, add_reaches};
 use fixability::locate::{Bounds, ComposedRun, Feasible, Solver, Step, steps};
 use nalgebra::Vector2;
 use rand::{RngExt, SeedableRng};
@@ -51,7 +51,7 @@ fn set_at(sets: &[(usize, Feasible)], steps: &[Step], start: usize, at: usize, a
     states
         .into_iter()
         .map(|(cell, slice)| {
-            let mut travel = [0.0; 16];
+            let mut travel = [0.0; DIRECTION_COUNT];
             for step in &steps[from..=at] {
                 add_reaches(&mut travel, &step.travel[slice]);
             }

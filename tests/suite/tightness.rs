@@ -61,8 +61,7 @@ fn straight_scene(number: u64) -> RandomScene {
     random.bounds.sonar.detection_chance = 1.0;
     // So large that it excludes nothing: the exact model knows no search area.
     let corner = |e: f64, n: f64| LocalPoint::new(origin.east_m + e, origin.north_m + n);
-    random.search_area =
-        vec![corner(-3e3, -3e3), corner(5e3, -3e3), corner(5e3, 5e3), corner(-3e3, 5e3)];
+    random.search_area = vec![corner(-3e3, -3e3), corner(5e3, -3e3), corner(5e3, 5e3), corner(-3e3, 5e3)];
     random
 }
 
@@ -235,13 +234,18 @@ fn every_nth_direction(n: usize) -> Template {
 #[test]
 fn reported_areas_are_close_to_exact_ones() {
     let cases = collect(60, 3);
-    let ratios = Summary::of(cases.iter().map(|case| solver_ratio(case, slices_of(case, SLICE_WIDTH_DEG)).0).collect());
+    let ratios = Summary::of(
+        cases.iter().map(|case| solver_ratio(case, slices_of(case, SLICE_WIDTH_DEG)).0).collect(),
+    );
     println!("sixteen directions: {ratios}");
     // The exact area is approached from inside: a ratio clearly below 1 would be a lost set.
     assert!(cases.iter().all(|case| solver_ratio(case, slices_of(case, SLICE_WIDTH_DEG)).0 > 0.99));
     assert!(ratios.median <= 1.15 && ratios.p95 <= 1.4, "{ratios}");
     let boxes = Summary::of(
-        cases.iter().map(|case| template_ratio(case, slices_of(case, SLICE_WIDTH_DEG), &every_nth_direction(4))).collect(),
+        cases
+            .iter()
+            .map(|case| template_ratio(case, slices_of(case, SLICE_WIDTH_DEG), &every_nth_direction(4)))
+            .collect(),
     );
     println!("boxes: {boxes}");
     assert!(boxes.p95 > 1.4, "the measure must tell boxes apart: {boxes}");

@@ -207,9 +207,8 @@ impl ExactModel {
         };
         for l in landmarks {
             let (e, n) = (l.half_width_east_m, l.half_width_north_m);
-            let corners = [[-e, -n], [e, -n], [e, n], [-e, n]].map(|[x, y]| {
-                model.to_frame(LocalPoint::new(l.position.east_m + x, l.position.north_m + y))
-            });
+            let corners = [[-e, -n], [e, -n], [e, n], [-e, n]]
+                .map(|[x, y]| model.to_frame(LocalPoint::new(l.position.east_m + x, l.position.north_m + y)));
             model.boxes.push(convex_hull(&corners));
         }
         for event in log {
@@ -218,7 +217,8 @@ impl ExactModel {
                 look: minus_relative(event, bounds, heading_rad),
             });
         }
-        model.lever_m += log[1..].iter().flat_map(|event| &event.travel).map(|piece| piece.length_m).sum::<f64>();
+        model.lever_m +=
+            log[1..].iter().flat_map(|event| &event.travel).map(|piece| piece.length_m).sum::<f64>();
         model
     }
 
@@ -343,11 +343,8 @@ struct Run<'a> {
 impl<'a> Run<'a> {
     fn new(model: &'a ExactModel, bias: f64, spacing: f64, union: &'a mut Union) -> Self {
         let travel: Vec<Vec<P>> = model.events.iter().map(|e| all_turned(&e.travel, bias)).collect();
-        let look: Vec<Vec<Vec<P>>> = model
-            .events
-            .iter()
-            .map(|e| e.look.iter().map(|part| all_turned(part, bias)).collect())
-            .collect();
+        let look: Vec<Vec<Vec<P>>> =
+            model.events.iter().map(|e| e.look.iter().map(|part| all_turned(part, bias)).collect()).collect();
         Self {
             model,
             spacing,
@@ -387,7 +384,9 @@ impl<'a> Run<'a> {
         let (lo, hi) = height_range(&parts);
         let (first, count) = rows_within(lo, hi, self.spacing);
         let spans = (0..count)
-            .map(|i| united(parts.iter().filter_map(|p| section(p, first + i as f64 * self.spacing)).collect()))
+            .map(|i| {
+                united(parts.iter().filter_map(|p| section(p, first + i as f64 * self.spacing)).collect())
+            })
             .collect();
         self.used.push(j);
         self.go_on(0, &Rows { first, spans });

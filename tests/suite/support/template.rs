@@ -121,7 +121,9 @@ impl Template {
                                 moved[i] < -v.reach[opposite]
                             });
                             if !is_apart {
-                                after.extend(self.cell(moved.iter().zip(&v.reach).map(|(a, b)| a.min(*b)).collect()));
+                                after.extend(
+                                    self.cell(moved.iter().zip(&v.reach).map(|(a, b)| a.min(*b)).collect()),
+                                );
                             }
                         }
                     }
