@@ -28,5 +28,5 @@ mod watch;
 pub use composed::{ComposedOutcome, ComposedRun};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
-pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use steps::{Bounds, Look, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
 pub use watch::{FixHistory, FixWatch};

@@ -126,7 +126,6 @@ fn cases(number: u64, finest: u32, left_out: &mut LeftOut) -> Vec<Case> {
                 left_out.tiny += 1;
                 return None;
             }
-            let clock = Instant::now();
             let (mut exact_m2, is_repeated) = model.area_m2(spacing_m);
             for _ in 0..finest {
                 spacing_m *= 0.5;
@@ -134,11 +133,18 @@ fn cases(number: u64, finest: u32, left_out: &mut LeftOut) -> Vec<Case> {
                 let growth = (finer_m2 - exact_m2) / finer_m2;
                 exact_m2 = finer_m2;
                 if growth.abs() < GROWTH_MAX {
-                    eprintln!("{number} {last}: {:?} tallest {tallest:.2} spacing {spacing_m:.3} area {exact_m2:.2}", clock.elapsed());
-                    return Some(Case { random, log, truth, heading_rad, exact_m2, growth, spacing_m, is_repeated });
+                    return Some(Case {
+                        random,
+                        log,
+                        truth,
+                        heading_rad,
+                        exact_m2,
+                        growth,
+                        spacing_m,
+                        is_repeated,
+                    });
                 }
             }
-            eprintln!("NC {number} {last}: {:?} tallest {tallest:.2} spacing {spacing_m:.3} area {exact_m2:.2}", clock.elapsed());
             left_out.not_converged += 1;
             None
         })
@@ -237,14 +243,14 @@ fn reported_areas_are_close_to_exact_ones() {
     let ratios = Summary::of(
         cases.iter().map(|case| solver_ratio(case, slices_of(case, SLICE_WIDTH_DEG)).0).collect(),
     );
-    println!("sixteen directions: {ratios}");
+    println!("thirty-two directions: {ratios}");
     // The exact area is approached from inside: a ratio clearly below 1 would be a lost set.
     assert!(cases.iter().all(|case| solver_ratio(case, slices_of(case, SLICE_WIDTH_DEG)).0 > 0.99));
     assert!(ratios.median <= 1.15 && ratios.p95 <= 1.4, "{ratios}");
     let boxes = Summary::of(
         cases
             .iter()
-            .map(|case| template_ratio(case, slices_of(case, SLICE_WIDTH_DEG), &every_nth_direction(4)))
+            .map(|case| template_ratio(case, slices_of(case, SLICE_WIDTH_DEG), &every_nth_direction(8)))
             .collect(),
     );
     println!("boxes: {boxes}");
@@ -270,7 +276,10 @@ fn table_of_cell_shapes_and_slices() {
         }
         let share = time.as_secs_f64() / single.as_secs_f64();
         let mean = total as f64 / cases.len() as f64;
-        println!("solver, {name}: {}; mean {mean:.1} slices, time {share:.2}", Summary::of(ratios));
+        println!(
+            "solver, {name}: {}; mean {mean:.1} slices, time {share:.2} ({time:.2?})",
+            Summary::of(ratios)
+        );
     };
     for count in [1, 2, 3, 4, 6, 8] {
         row(format!("{count} slices"), &|_| count);
@@ -279,9 +288,11 @@ fn table_of_cell_shapes_and_slices() {
         row(format!("slices of at most {width_deg} deg"), &|case| slices_of(case, width_deg));
     }
     let shapes = [
-        ("4 directions", every_nth_direction(4)),
-        ("8 directions", every_nth_direction(2)),
-        ("16 directions", every_nth_direction(1)),
+        ("4 directions", every_nth_direction(8)),
+        ("8 directions", every_nth_direction(4)),
+        ("16 directions", every_nth_direction(2)),
+        ("32 directions", every_nth_direction(1)),
+        ("16 at equal angles", Template::turned_to(0.0, 16)),
         ("24 at equal angles", Template::turned_to(0.0, 24)),
         ("32 at equal angles", Template::turned_to(0.0, 32)),
     ];
@@ -291,7 +302,7 @@ fn table_of_cell_shapes_and_slices() {
                 cases.iter().map(|case| template_ratio(case, slices_of(case, width_deg), template)).collect();
             println!("{name}, slices of at most {width_deg} deg: {}", Summary::of(ratios));
         }
-        for count in [4, 8, 16] {
+        for count in [4, 8, 16, 32] {
             let ratio = |case: &Case| {
                 let template = Template::turned_to(case.heading_rad, count);
                 template_ratio(case, slices_of(case, width_deg), &template)
