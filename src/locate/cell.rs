@@ -8,9 +8,9 @@
 //! - the smallest cell that holds two cells has reaches max(hᵢ, gᵢ).
 //!
 //! *Why thirty-two.* Measured against exact feasible areas (`tests/suite/tightness.rs`), with heading slices of at most
-//! 1°: boxes report 1.41 times the exact area in the median and 3.1 times at the 95th percentile, eight directions 1.23
-//! and 1.91, sixteen 1.14 and 1.51, thirty-two 1.09 and 1.35. Axes turned to the track gain little, because the edges of
-//! a set also come from the landmarks' boxes and from tracks run earlier.
+//! 1°: boxes report 1.42 times the exact area in the median and 3.4 times at the 95th percentile, eight directions 1.23
+//! and 2.0, sixteen 1.14 and 1.6, thirty-two 1.09 and 1.35, at the time of sixteen. Axes turned to the track gain
+//! little, because the edges of a set also come from the landmarks' boxes.
 //!
 //! *Guarantee.* Reaches are only ever rounded up, so a cell holds the exact set it stands for. All operations are
 //! monotone, up to the rounding of a tightened reach (below 10⁻⁶ m at coordinates of 10⁷ m): larger operands give
