@@ -1,6 +1,6 @@
 //! Scores: what is guaranteed of a line, what simulated dives say about it, and one dive in detail.
 //!
-//! What comes from [`guarantee`] is true for every error within the bounds. Everything else is *estimated* from
+//! What comes from `guarantee.rs` is true for every error within the bounds. Everything else is *estimated* from
 //! simulated dives and carries a confidence interval. The two stand in fields of their own.
 
 mod check;
@@ -82,7 +82,8 @@ impl<'a> Setup<'a> {
 
     /// Distances along a track of `length_m` at which segments start.
     fn segment_starts(&self, length_m: f64) -> Vec<f64> {
-        let count = (length_m / self.dive.scoring.segment_m).ceil();
+        // A rest of less than half a segment joins the segment before it.
+        let count = (length_m / self.dive.scoring.segment_m).round().clamp(1.0, f64::INFINITY);
         (0..count as usize).map(|k| k as f64 * self.dive.scoring.segment_m).collect()
     }
 

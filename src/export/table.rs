@@ -14,7 +14,7 @@ pub fn lines_table(report: &LinesReport) -> String {
         "rank".to_owned(),
         "line".to_owned(),
         "length m".to_owned(),
-        format!("within {required} m, % of dives (95 % interval)"),
+        format!("within {required} m, % of runs (95 % interval)"),
         "median fix m".to_owned(),
         "p95 fix m".to_owned(),
         "no fix %".to_owned(),
@@ -51,7 +51,7 @@ pub fn lines_table(report: &LinesReport) -> String {
         )
     });
     format!(
-        "{}\n{terms}Estimated from {dives} simulated dives, lost at the start of any segment; p95 = 95th percentile; seed {}.\n",
+        "{}\n{terms}Estimated from {dives} simulated dives, each run from every segment start; p95 = 95th percentile; seed {}.\n",
         table.trim_fmt(),
         report.provenance.seed,
     )
@@ -126,9 +126,10 @@ pub fn check_text(report: &CheckReport) -> String {
     };
     text.push_str(&format!(
         "\nVehicle         {} m/s, turn radius {} m\n\
-         Dead reckoning  scale {:.3} % of distance, heading bias {:.3} deg, noise {:.3} deg, drift {} m/s (all plus or minus)\n\
+         Dead reckoning  scale {:.3} % of distance, heading bias {:.3} deg, noise {:.3} deg, drift {} m/s (all plus or minus); {} heading slices\n\
          Sonar           {}, slant range {} to {} m, {swath}, altitude {} m: horizontal {:.1} to {:.1} m\n\
-         Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}\n\
+         Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}, {} strays per km\n\
+         Budget          {} strays, {} misses per run\n\
          Landmarks       {}; {}\n\
          Start           search area {:.3} km2, descent scatter {} m\n\
          Scoring         fix size {} m, required fix distance {} m, a start every {} m, {} dives per line, seed {}\n\n",
@@ -138,6 +139,7 @@ pub fn check_text(report: &CheckReport) -> String {
         p.heading_bias_deg,
         p.heading_noise_deg,
         short(p.drift_mps),
+        p.heading_slices,
         p.sonar_kind,
         short(p.range_min_m),
         short(p.range_max_m),
@@ -149,6 +151,9 @@ pub fn check_text(report: &CheckReport) -> String {
         p.bearing_error_deg,
         short(p.altitude_error_m),
         short(p.detection_chance),
+        short(p.strays_per_km),
+        p.stray_budget,
+        p.miss_budget,
         p.landmarks,
         p.landmark_uncertainty,
         p.search_area_km2,

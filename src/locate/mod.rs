@@ -1,7 +1,7 @@
 //! The position solver: every position that some admissible history explains.
 //!
 //! Bounded-error (set-membership) localisation from an unknown start with anonymous detections. With D the set of
-//! displacements that the reported travel allows, [M_j] the box of landmark j, and S(y) the set of relative positions
+//! displacements that the reported travel allows, `[M_j]` the box of landmark j, and S(y) the set of relative positions
 //! that a sighting y allows,
 //!
 //! ```text

@@ -140,6 +140,9 @@ pub struct EstimatedFix {
     pub lasting_p95_m: Estimate,
     /// Share of dives in which a fix was lost again before the line ended (0 to 1).
     pub relapse_share: f64,
+    /// Share of runs in which no position explained the detections (0 to 1): the bounds were violated. Such runs count as
+    /// runs without a fix.
+    pub contradiction_share: f64,
     /// Share of dives whose first fix does not hold the true position (0 to 1). Above 0 only where more strays were
     /// drawn than the stray budget covers.
     pub wrong_fix_share: f64,

@@ -93,6 +93,7 @@ pub fn estimated(p95_m: Option<f64>, undecided_share: f64) -> EstimatedFix {
         lasting_median_m: p95_m.map_or(NONE, around),
         lasting_p95_m: p95_m.map_or(NONE, around),
         relapse_share: 0.0,
+        contradiction_share: 0.0,
         wrong_fix_share: 0.0,
         undecided_share,
     }
