@@ -67,38 +67,47 @@ impl Feasible {
 
     /// Drops every cell that lies inside another one with the same slice and no more strays. The union is unchanged,
     /// and so is all that can follow from it, because moving and matching are monotone.
-    pub(super) fn drop_covered(&mut self) {
+    ///
+    /// Returns, for every state before, the number of the state that stands for it now: itself, or one that holds it.
+    /// Empty when nothing changed.
+    pub(super) fn drop_covered(&mut self) -> Vec<u32> {
         if self.states.len() < 2 {
-            return;
+            return Vec::new();
         }
         // Larger cells first among those that start at the same place; ties by position in the list.
-        let mut keyed: Vec<(f64, f64, State)> = self
-            .states
-            .iter()
-            .map(|&state| {
+        let mut keyed: Vec<(f64, f64, u32, State)> = (0..)
+            .zip(&self.states)
+            .map(|(number, &state)| {
                 let east: Interval = state.cell.bounding_box().east;
-                (east.lo(), east.hi(), state)
+                (east.lo(), east.hi(), number, state)
             })
             .collect();
         keyed.sort_by(|a, b| a.0.total_cmp(&b.0).then(b.1.total_cmp(&a.1)));
         // A cell that covers another starts no farther east, so it stands before it in this order (or beside it with
         // the same extent, in which case one of the two is kept).
         let mut kept: Vec<State> = Vec::with_capacity(keyed.len());
-        let mut open: Vec<(f64, State)> = Vec::new();
-        for (lo, hi, state) in keyed {
-            open.retain(|(end, _)| *end >= lo);
-            let is_covered = open.iter().any(|(end, other)| {
+        let mut open: Vec<(f64, u32, State)> = Vec::new();
+        let mut stands_for = vec![0; keyed.len()];
+        for (lo, hi, number, state) in keyed {
+            open.retain(|(end, ..)| *end >= lo);
+            let cover = open.iter().find(|(end, _, other)| {
                 *end >= hi
                     && other.slice == state.slice
                     && other.strays <= state.strays
                     && other.cell.contains_cell(&state.cell)
             });
-            if !is_covered {
-                kept.push(state);
-                open.push((hi, state));
-            }
+            stands_for[number as usize] = match cover {
+                Some((_, standing, _)) => *standing,
+                None => {
+                    let standing = u32::try_from(kept.len()).expect("the cell budget is below 2³²");
+                    kept.push(state);
+                    open.push((hi, standing, state));
+                    standing
+                }
+            };
         }
         self.states = kept;
+        stands_for
     }
 }
 
@@ -150,7 +159,12 @@ mod tests {
                 state(2.0, 0.0, 1.0, 0),
             ],
         };
-        set.drop_covered();
+        let before = set.states.clone();
+        let stands_for = set.drop_covered();
+        for (state, &standing) in before.iter().zip(&stands_for) {
+            let standing = set.states[standing as usize];
+            assert!(standing.cell.contains_cell(&state.cell) && standing.strays <= state.strays);
+        }
         // The 1 m cell and the 2 m cell with a stray are covered by the 2 m cell without; the 3 m cell and the one
         // that sticks out are not.
         assert_eq!(set.states.len(), 3);
