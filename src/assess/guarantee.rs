@@ -10,7 +10,9 @@ use rayon::prelude::*;
 use super::Setup;
 use crate::interval::larger;
 use crate::locate::{ComposedOutcome, ComposedRun, Solver};
-use crate::report::{Cause, GUARANTEE_STATEMENT, GuaranteeTerms, GuaranteedFix, GuaranteedLine, SegmentReport};
+use crate::report::{
+    Cause, GUARANTEE_STATEMENT, GuaranteeTerms, GuaranteedFix, GuaranteedLine, SegmentReport,
+};
 use crate::track::plan::Plan;
 
 /// Tracks at the rim of the descent scatter, beside the planned one.
@@ -58,8 +60,7 @@ pub(super) fn guaranteed_fixes(setup: &Setup<'_>, plan: &Plan, starts_m: &[f64])
         return vec![without(Cause::DetectionNotCertain, reason, 0); starts_m.len()];
     }
     let (scene, bounds) = (setup.scene(), setup.bounds());
-    let solver =
-        Solver { stray_budget: budget.strays.saturating_add(budget.misses), ..setup.solver() };
+    let solver = Solver { stray_budget: budget.strays.saturating_add(budget.misses), ..setup.solver() };
     let runs: Vec<ComposedRun> = offset_tracks(setup, plan)
         .par_iter()
         .map(|track| ComposedRun::new(&scene, track, starts_m, &bounds))
@@ -117,12 +118,13 @@ fn why_not(outcome: &ComposedOutcome, fix_size_m: f64) -> (Cause, String) {
         }
         (Some(_), Some(spread_m)) => (
             Cause::TooWide,
-            format!("one place fits, but it is {spread_m:.1} m wide, more than the fix size of {fix_size_m} m"),
+            format!(
+                "one place fits, but it is {spread_m:.1} m wide, more than the fix size of {fix_size_m} m"
+            ),
         ),
-        _ => (
-            Cause::TooFewLandmarks,
-            "no landmark is certain to be detected before the line ends".to_owned(),
-        ),
+        _ => {
+            (Cause::TooFewLandmarks, "no landmark is certain to be detected before the line ends".to_owned())
+        }
     }
 }
 

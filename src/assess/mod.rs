@@ -174,4 +174,3 @@ fn degrees(radians: f64) -> f64 {
 fn per_cent(fraction: f64) -> f64 {
     (fraction * 100.0 * 1e9).round() / 1e9
 }
-

@@ -34,5 +34,5 @@ pub use corridor::CorridorInterval;
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
-pub use watch::{FixHistory, FixWatch};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use watch::{FixHistory, FixWatch};
