@@ -27,13 +27,15 @@ fn demo_files_equal_the_generator_output() {
 /// Name or identifier, then easting and northing in UTM zone 31N, then the fields that follow.
 fn projected_rows(file: &str) -> Vec<(String, [f64; 2], Vec<String>)> {
     let (_, text) = demo::files().into_iter().find(|(name, _)| *name == file).expect("the file is generated");
-    let (geographic, grid) = (Proj::from_epsg_code(4326).unwrap(), Proj::from_epsg_code(32631).unwrap());
+    let system = |code| Proj::from_epsg_code(code).expect("the system is in the table");
+    let (geographic, grid) = (system(4326), system(32631));
     text.lines()
         .skip(1)
         .map(|row| {
             let fields: Vec<String> = row.split(',').map(str::to_owned).collect();
-            let radians = |i: usize| fields[i].parse::<f64>().unwrap().to_radians();
-            let (east, north) = transform_xy(&geographic, &grid, radians(2), radians(1)).unwrap();
+            let radians = |i: usize| fields[i].parse::<f64>().expect("a number").to_radians();
+            let (east, north) =
+                transform_xy(&geographic, &grid, radians(2), radians(1)).expect("inside the zone");
             (fields[0].clone(), [east, north], fields[3..].to_vec())
         })
         .collect()
