@@ -9,16 +9,20 @@
 //! ```
 //!
 //! where ⊔ is the smallest cell that holds all of them. A link whose set is empty is cut; a state without links on the
-//! side looked at is dropped. The two directions take turns until nothing moves.
+//! side looked at is dropped. Going backward, a state whose sets fall into groups that lie apart is split into one
+//! state per group, so that the search area does not stay one cell when only two distant parts of it are left. The two
+//! directions take turns until nothing moves.
 //!
 //! *Guarantee.* No admissible history is lost. Before any sweep the graph holds a chain of links for each (proof in
 //! [`super::history`]). Let all its positions lie in the cells of its chain before a step of a sweep. Its position at
 //! either end of each link lies in the set that the step computes for that link (the two guarantees of
 //! [`History::landing`] and [`History::origin`]), hence the set is not empty, the link stays, and the position lies in
-//! the state's new cell, which holds the sets of all its links. So it does after the step. At the last detection
+//! the state's new cell, which holds the sets of all its links. So it does after the step. When a state is split, the
+//! history's link to the next detection goes with one of the parts, whose cell holds the link's set; the links from
+//! the detection before are given to every part, so the chain goes on through that part. At the last detection
 //! nothing is asked of later links, at the start nothing of earlier ones. Hence stopping after any sweep is sound too.
 //!
-//! *Shrinking.* Every set of a link lies inside the state's cell by an intersection whose reaches are never above
+//! *Shrinking.* The set of a link lies inside the state's cell by an intersection whose reaches are never above
 //! either operand's, and the join's reaches are the largest of these: a sweep never makes a reach larger.
 //!
 //! *Rest.* Without thinning out, one solve and one backward sweep would be exact up to the shape of cells, because
@@ -26,7 +30,7 @@
 //! cells had made too wide.
 
 use super::cell::{Cell, DIRECTION_COUNT};
-use super::feasible::State;
+use super::feasible::{State, groups};
 use super::forward::SolverMap;
 use super::history::{History, Link};
 
@@ -45,6 +49,9 @@ pub struct Sweeps {
     /// Whether the last sweep changed nothing worth another; otherwise the limit was reached.
     pub is_at_rest: bool,
 }
+
+/// A state is not split when that would copy more links than this: memory stays in proportion. (Not splitting is sound.)
+const LINKS_PER_SPLIT_MAX: usize = 100_000;
 
 /// Direction of a sweep.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -79,10 +86,16 @@ impl History {
     fn sweep_backward(&mut self, map: &SolverMap) -> bool {
         let mut has_moved = false;
         for level in (1..self.levels.len()).rev() {
-            let joined = self.join(level, level - 1, &mut has_moved, |history, link| {
+            let (links, origins) = self.alive(level, &mut has_moved, |history, link| {
                 let landing = history.landing(level, link, map)?;
-                Some((link.from, history.origin(level, link, &landing)?))
+                history.origin(level, link, &landing)
             });
+            self.levels[level].links = links;
+            has_moved |= self.split(level, &origins);
+            let joined = joined(
+                self.levels[level - 1].states.len(),
+                self.levels[level].links.iter().map(|link| link.from).zip(origins),
+            );
             narrow(&mut self.levels[level - 1].states, &joined, &mut has_moved);
         }
         has_moved
@@ -92,38 +105,88 @@ impl History {
     fn sweep_forward(&mut self, map: &SolverMap) -> bool {
         let mut has_moved = false;
         for level in 1..self.levels.len() {
-            let joined = self.join(level, level, &mut has_moved, |history, link| {
-                Some((link.to, history.landing(level, link, map)?))
-            });
-            narrow(&mut self.levels[level].states, &joined, &mut has_moved);
+            let (links, landings) =
+                self.alive(level, &mut has_moved, |history, link| history.landing(level, link, map));
+            let here = &mut self.levels[level];
+            let joined = joined(here.states.len(), links.iter().map(|link| link.to).zip(landings));
+            here.links = links;
+            narrow(&mut here.states, &joined, &mut has_moved);
         }
         has_moved
     }
 
-    /// Cuts the links of `level` for which `set` is empty, and joins the sets of the others by the state of level
-    /// `target` that they belong to.
-    fn join(
-        &mut self,
+    /// The links of `level` for which `set` is not empty, and their sets.
+    fn alive(
+        &self,
         level: usize,
-        target: usize,
         has_moved: &mut bool,
-        set: impl Fn(&Self, &Link) -> Option<(u32, Cell)>,
-    ) -> Vec<Option<Cell>> {
-        let mut joined: Vec<Option<Cell>> = vec![None; self.levels[target].states.len()];
-        let mut links = std::mem::take(&mut self.levels[level].links);
-        let before = links.len();
-        links.retain(|link| match set(self, link) {
-            None => false,
-            Some((state, cell)) => {
-                let all = &mut joined[state as usize];
-                *all = Some(all.map_or(cell, |all| all.hull(&cell)));
-                true
-            }
-        });
-        *has_moved |= links.len() < before;
-        self.levels[level].links = links;
-        joined
+        set: impl Fn(&Self, &Link) -> Option<Cell>,
+    ) -> (Vec<Link>, Vec<Cell>) {
+        let links = &self.levels[level].links;
+        let alive: (Vec<Link>, Vec<Cell>) =
+            links.iter().filter_map(|link| Some((*link, set(self, link)?))).unzip();
+        *has_moved |= alive.0.len() < links.len();
+        alive
     }
+
+    /// Splits the states before `level` whose `origins` (by link of `level`) fall into groups that lie apart. The first
+    /// group keeps the number of its state. Returns whether anything was split.
+    fn split(&mut self, level: usize, origins: &[Cell]) -> bool {
+        let (before, after) = self.levels.split_at_mut(level);
+        let (before, links) = (&mut before[level - 1], &mut after[0].links);
+        // Number of the link and of the state it leaves.
+        let mut by_state: Vec<(usize, u32)> = links.iter().map(|link| link.from).enumerate().collect();
+        by_state.sort_by_key(|&(_, from)| from);
+        // New states by the state that they are parts of.
+        let mut parts: Vec<(u32, u32)> = Vec::new();
+        let mut coming_in = vec![0u32; before.states.len()];
+        for link in &before.links {
+            coming_in[link.to as usize] += 1;
+        }
+        for chunk in by_state.chunk_by(|a, b| a.1 == b.1) {
+            if chunk.len() < 2 {
+                continue;
+            }
+            let from = chunk[0].1;
+            let boxes = chunk.iter().map(|&(link, _)| origins[link].bounding_box()).collect();
+            let group = groups(boxes, 0.0);
+            let apart = (1..group.len()).filter(|&i| group[i] == i && i != group[0]).count();
+            // A copy of every incoming link per part: more of them than outgoing links would be out of proportion.
+            if apart == 0 || apart * coming_in[from as usize] as usize > LINKS_PER_SPLIT_MAX {
+                continue;
+            }
+            let mut number_of: Vec<u32> = vec![from; group.len()];
+            for i in 0..group.len() {
+                if group[i] == i && i != group[0] {
+                    number_of[i] = u32::try_from(before.states.len()).expect("fewer than 2³² states");
+                    before.states.push(before.states[from as usize]);
+                    parts.push((from, number_of[i]));
+                }
+            }
+            for (&(link, _), &representative) in chunk.iter().zip(&group) {
+                links[link].from = number_of[representative];
+            }
+        }
+        let mut copies: Vec<Link> = Vec::new();
+        for link in &before.links {
+            // `parts` is in the order of the states.
+            let first = parts.partition_point(|(of, _)| *of < link.to);
+            let own = parts[first..].iter().take_while(|(of, _)| *of == link.to);
+            copies.extend(own.map(|&(_, to)| Link { to, ..*link }));
+        }
+        before.links.extend(copies);
+        !parts.is_empty()
+    }
+}
+
+/// For each of `count` states the smallest cell that holds all of its sets.
+fn joined(count: usize, sets: impl Iterator<Item = (u32, Cell)>) -> Vec<Option<Cell>> {
+    let mut joined: Vec<Option<Cell>> = vec![None; count];
+    for (state, cell) in sets {
+        let all = &mut joined[state as usize];
+        *all = Some(all.map_or(cell, |all| all.hull(&cell)));
+    }
+    joined
 }
 
 /// Gives every state its new cell and drops those without one.

@@ -2,7 +2,7 @@
 
 use super::cell::Cell;
 use crate::frame::LocalPoint;
-use crate::interval::Interval;
+use crate::interval::{Box2, Interval};
 
 /// One cell of the feasible set and the history that it stands for.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -41,28 +41,9 @@ impl Feasible {
     /// Number of places: groups of cells in which each is within `fix_size_m` of another (by their bounding boxes,
     /// which can only join groups that a finer distance would keep apart).
     pub fn places(&self, fix_size_m: f64) -> usize {
-        let mut boxes: Vec<_> = self.states.iter().map(|state| state.cell.bounding_box()).collect();
-        boxes.sort_by(|a, b| a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo())));
-        let mut group: Vec<usize> = (0..boxes.len()).collect();
-        // Cells that may still be met by one farther east, westernmost reach first out.
-        let mut open: Vec<usize> = Vec::new();
-        let mut places = boxes.len();
-        for i in 0..boxes.len() {
-            open.retain(|&j| boxes[j].east.hi() + fix_size_m >= boxes[i].east.lo());
-            for &j in &open {
-                let is_near = boxes[j].north.lo() - fix_size_m <= boxes[i].north.hi()
-                    && boxes[i].north.lo() <= boxes[j].north.hi() + fix_size_m;
-                if is_near {
-                    let (a, b) = (root(&mut group, i), root(&mut group, j));
-                    if a != b {
-                        group[a] = b;
-                        places -= 1;
-                    }
-                }
-            }
-            open.push(i);
-        }
-        places
+        let boxes = self.states.iter().map(|state| state.cell.bounding_box()).collect();
+        let group = groups(boxes, fix_size_m);
+        (0..group.len()).filter(|&i| group[i] == i).count()
     }
 
     /// Drops every cell that lies inside another one with the same slice and no more strays. The union is unchanged,
@@ -111,6 +92,33 @@ impl Feasible {
     }
 }
 
+/// For each box the number of the box that represents its group. Each box of a group is within `gap_m` of another one.
+pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
+    let mut group: Vec<usize> = (0..boxes.len()).collect();
+    let mut ordered: Vec<(Box2, usize)> = boxes.into_iter().zip(0..).collect();
+    ordered.sort_by(|(a, _), (b, _)| {
+        a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo()))
+    });
+    // Boxes that may still be met by one farther east.
+    let mut open: Vec<(Box2, usize)> = Vec::new();
+    for (b, i) in ordered {
+        open.retain(|(other, _)| other.east.hi() + gap_m >= b.east.lo());
+        for &(other, j) in &open {
+            let is_near =
+                other.north.lo() - gap_m <= b.north.hi() && b.north.lo() <= other.north.hi() + gap_m;
+            if is_near {
+                let (mine, theirs) = (root(&mut group, i), root(&mut group, j));
+                group[mine] = theirs;
+            }
+        }
+        open.push((b, i));
+    }
+    for i in 0..group.len() {
+        group[i] = root(&mut group, i);
+    }
+    group
+}
+
 /// Representative of a group, with path halving.
 fn root(group: &mut [usize], mut i: usize) -> usize {
     while group[i] != i {
@@ -123,7 +131,6 @@ fn root(group: &mut [usize], mut i: usize) -> usize {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::interval::Box2;
 
     fn state(east_m: f64, north_m: f64, half_m: f64, strays: u8) -> State {
         State {

@@ -81,7 +81,8 @@ impl Level {
 
 /// The recorded history of a solve.
 ///
-/// Detections are numbered from 1, in the order of [`super::Outcome::events`]; number 0 is the start.
+/// Detections are numbered from 1, in the order of [`super::Outcome::events`]; number 0 is the start. A solve without a
+/// single step records nothing, not even the start.
 #[derive(Clone, Debug, Default)]
 pub struct History {
     pub(super) levels: Vec<Level>,
@@ -137,8 +138,13 @@ pub struct Candidates {
 impl Candidates {
     /// The landmark, when nothing else is possible.
     pub fn identified(&self) -> Option<usize> {
+        self.sole_landmark().filter(|_| !self.may_be_stray)
+    }
+
+    /// The landmark, if it is not a stray.
+    pub fn sole_landmark(&self) -> Option<usize> {
         match self.landmarks[..] {
-            [one] if !self.may_be_stray => Some(one),
+            [one] => Some(one),
             _ => None,
         }
     }
@@ -167,7 +173,7 @@ impl History {
     }
 
     /// The states at detection number `detection`, or at the start (0). A state keeps its number through all sweeps;
-    /// none stands where it was dropped.
+    /// none stands where it was dropped; parts of a state that was split are added at the end.
     ///
     /// # Panics
     /// When there is no such detection.

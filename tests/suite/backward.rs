@@ -14,12 +14,14 @@ struct Tally {
     /// Positions checked: every detection and the start, after every sweep.
     positions: usize,
     lost: usize,
-    /// Cells that stick out of the same state's cell before the sweep.
+    /// Cells that stick out of the same state's cell before the sweep, or that stem from nothing.
     grown: usize,
     detections: usize,
     /// Detections whose true landmark (or stray) is not among the candidates.
     misnamed: usize,
     identified: usize,
+    /// Detections explained by one landmark or as a stray.
+    sole: usize,
     possibly_stray: usize,
     certainly_stray: usize,
     /// Sweeps until rest, by number.
@@ -81,12 +83,18 @@ impl Case<'_> {
                 tally.positions += 1;
                 let truth = dive.truth[event].position;
                 tally.lost += usize::from(!new.iter().flatten().any(|state| state.cell.contains(truth)));
-                for (old, new) in old.iter().zip(new) {
-                    tally.grown += match (old, new) {
-                        (Some(old), Some(new)) => usize::from(!old.cell.contains_cell(&new.cell)),
-                        (None, Some(_)) => 1,
-                        _ => 0,
+                for (number, new) in new.iter().enumerate() {
+                    let Some(new) = new else { continue };
+                    let holds = |old: &State| {
+                        (old.slice, old.strays) == (new.slice, new.strays)
+                            && old.cell.contains_cell(&new.cell)
                     };
+                    let is_held = match old.get(number) {
+                        Some(old) => old.as_ref().is_some_and(holds),
+                        // Part of a state that was split.
+                        None => old.iter().flatten().any(holds),
+                    };
+                    tally.grown += usize::from(!is_held);
                 }
             }
             before = now;
@@ -103,6 +111,7 @@ impl Case<'_> {
             tally.detections += 1;
             tally.misnamed += usize::from(!is_named);
             tally.identified += usize::from(candidates.identified().is_some());
+            tally.sole += usize::from(candidates.sole_landmark().is_some());
             tally.possibly_stray += usize::from(candidates.may_be_stray);
             tally.certainly_stray += usize::from(candidates.is_stray());
         }
@@ -140,6 +149,9 @@ fn run_until(dives: usize, stray_budget: u8, with_strays: bool, distort: impl Fn
                 make_stray(&mut dive, start, pick, random.bounds.sonar.range_max_m);
             }
             let steps = steps(&dive.log, &bounds);
+            if start + 1 == steps.len() {
+                continue;
+            }
             Case { solver, steps: &steps, dive: &dive, start }.check(&mut tally);
         }
         number += 1;
@@ -149,14 +161,14 @@ fn run_until(dives: usize, stray_budget: u8, with_strays: bool, distort: impl Fn
 
 #[test]
 fn sweeps_keep_the_truth_shrink_and_name_the_landmark() {
-    let tally = run_until(6000, 0, false, |_| {});
+    let tally = run_until(3000, 0, false, |_| {});
     println!("{tally:?}");
     assert_eq!((tally.lost, tally.grown, tally.misnamed, tally.contradicted), (0, 0, 0, 0), "{tally:?}");
     assert_eq!(tally.possibly_stray, 0, "without a stray budget nothing is left unexplained: {tally:?}");
     assert_eq!(tally.at_limit, 0, "the sweeps come to rest: {tally:?}");
     // The sweeps must be worth having, and the checks must have seen much.
     assert!(tally.places_after * 2 < tally.places_before, "{tally:?}");
-    assert!(tally.identified * 2 > tally.detections && tally.positions > 100_000, "{tally:?}");
+    assert!(tally.identified * 2 > tally.detections && tally.positions > 50_000, "{tally:?}");
 }
 
 #[test]
@@ -164,7 +176,8 @@ fn sweeps_keep_the_truth_with_a_stray_to_spare() {
     let tally = run_until(1000, 1, false, |_| {});
     println!("{tally:?}");
     assert_eq!((tally.lost, tally.grown, tally.misnamed, tally.contradicted), (0, 0, 0, 0), "{tally:?}");
-    assert!(tally.possibly_stray > 0 && tally.identified > 0, "{tally:?}");
+    // A stray that was not used up may be any of the detections.
+    assert!(tally.possibly_stray == tally.detections && tally.sole * 4 > tally.detections, "{tally:?}");
 }
 
 #[test]
@@ -190,11 +203,14 @@ fn broken_bounds_show() {
         }),
         ("scale", |b| b.dead_reckoning.scale_error = 0.0),
     ];
+    let mut misnamed = 0;
     for (what, distort) in broken {
         let tally = run_until(600, 0, false, distort);
         println!("{what}: {tally:?}");
-        assert!(tally.lost > 0 && tally.misnamed > 0, "tighter {what} bounds must show: {tally:?}");
+        assert!(tally.lost > 0, "tighter {what} bounds must show: {tally:?}");
+        misnamed += tally.misnamed;
     }
+    assert!(misnamed > 0, "tighter bounds must rule out the true landmark somewhere");
     let tally = run_until(600, 0, true, |_| {});
     assert!(tally.misnamed > 0 && tally.contradicted > 0, "a stray without a budget must show: {tally:?}");
 }
