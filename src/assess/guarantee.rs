@@ -9,7 +9,7 @@ use rayon::prelude::*;
 
 use super::Setup;
 use crate::interval::larger;
-use crate::locate::{ComposedOutcome, ComposedRun, Solver};
+use crate::locate::{ComposedOutcome, ComposedRun};
 use crate::report::{
     Cause, GUARANTEE_STATEMENT, GuaranteeTerms, GuaranteedFix, GuaranteedLine, SegmentReport,
 };
@@ -60,7 +60,7 @@ pub(super) fn guaranteed_fixes(setup: &Setup<'_>, plan: &Plan, starts_m: &[f64])
         return vec![without(Cause::DetectionNotCertain, reason, 0); starts_m.len()];
     }
     let (scene, bounds) = (setup.scene(), setup.bounds());
-    let solver = Solver { stray_budget: budget.strays.saturating_add(budget.misses), ..setup.solver() };
+    let solver = setup.solver();
     let runs: Vec<ComposedRun> = offset_tracks(setup, plan)
         .par_iter()
         .map(|track| ComposedRun::new(&scene, track, starts_m, &bounds))
@@ -69,7 +69,7 @@ pub(super) fn guaranteed_fixes(setup: &Setup<'_>, plan: &Plan, starts_m: &[f64])
         .par_iter()
         .map(|&start_m| {
             let outcomes: Vec<ComposedOutcome> =
-                runs.iter().map(|run| run.solve(&solver, start_m, |_, _| {})).collect();
+                runs.iter().map(|run| run.solve(&solver, budget.misses, start_m, |_, _| {})).collect();
             worst(&outcomes, setup.dive.scoring.fix_size_m)
         })
         .collect()

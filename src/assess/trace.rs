@@ -75,7 +75,6 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
         let at = mark + 1 + summary.step;
         let (event, truth) = (&simulated.log.events[at], simulated.truth[at]);
         let sighting = event.sighting.expect("the solver reports sightings only");
-        let landmark = truth.landmark.expect("a sighting stems from a landmark");
         events.push(TraceEvent {
             number: events.len() + 1,
             run_m: summary.along_m - request.from_m,
@@ -88,7 +87,9 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
             places: summary.places,
             spread_m: summary.spread_m,
             is_fix: summary.spread_m.is_some_and(|spread| spread <= fix_size_m),
-            true_landmark: dive.landmarks[landmark].id.clone(),
+            true_landmark: truth
+                .landmark
+                .map_or_else(|| "stray".to_owned(), |landmark| dive.landmarks[landmark].id.clone()),
             true_position: truth.position,
             truth_inside: set.states.iter().any(|state| state.cell.contains(truth.position)),
             cell_corners: set.states.iter().take(TRACE_CELLS_MAX).map(|state| state.cell.corners()).collect(),

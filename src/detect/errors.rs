@@ -38,6 +38,17 @@ pub struct SightingErrors {
     pub chance: f64,
 }
 
+/// A detection of something that is not on the map.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct StrayDraw {
+    /// Distance along the track, metres.
+    pub along_m: f64,
+    /// Where in the swath, in [−1, 1]: port or starboard side, or the bearing as a fraction of the half-sector.
+    pub across: f64,
+    /// Horizontal range, in [0, 1] from the nearest to the farthest.
+    pub range: f64,
+}
+
 /// A source of errors for one dive.
 pub trait Errors {
     /// Offset of the start, in the unit disc, as a fraction of the descent scatter.
@@ -51,6 +62,11 @@ pub trait Errors {
     /// Errors of a sighting. `way` tells the two ways to see one landmark apart (port or starboard, entering or
     /// leaving).
     fn sighting(&self, landmark: usize, way: usize) -> SightingErrors;
+    /// Strays along a track of `length_m`, `per_km` of them per kilometre on average, in order.
+    fn strays(&self, per_km: f64, length_m: f64) -> Vec<StrayDraw>;
+    /// Two landmarks out of `count`: strays are then placed where the second one's surroundings would be seen if the
+    /// vehicle were there instead of at the first. None places strays at random.
+    fn decoy(&self, count: usize) -> Option<[usize; 2]>;
 }
 
 /// No errors at all: the planned track and the charted map.
@@ -73,6 +89,12 @@ impl Errors for NoErrors {
     fn sighting(&self, _: usize, _: usize) -> SightingErrors {
         SightingErrors::default()
     }
+    fn strays(&self, _: f64, _: f64) -> Vec<StrayDraw> {
+        Vec::new()
+    }
+    fn decoy(&self, _: usize) -> Option<[usize; 2]> {
+        None
+    }
 }
 
 /// What a stream of random numbers is for. The number is part of the seed; never renumber.
@@ -83,6 +105,8 @@ enum Purpose {
     Landmark = 2,
     Leg = 3,
     Sighting = 4,
+    Stray = 5,
+    Decoy = 6,
 }
 
 /// Errors drawn from a seeded generator, in one of the shapes of [`ErrorShape`].
@@ -198,6 +222,35 @@ impl Errors for DrawnErrors {
             ErrorShape::Steady => SightingErrors { chance: drawn.chance, ..self.steady_sighting },
             _ => drawn,
         }
+    }
+
+    fn strays(&self, per_km: f64, length_m: f64) -> Vec<StrayDraw> {
+        let mut strays = Vec::new();
+        if per_km <= 0.0 {
+            return strays;
+        }
+        let mut rng = self.stream(Purpose::Stray, 0);
+        let mut along_m = 0.0;
+        loop {
+            // A Poisson process: exponential gaps of mean 1000 / per_km metres.
+            let u: f64 = rng.random_range(0.0..1.0);
+            along_m -= (1.0 - u).ln() * 1000.0 / per_km;
+            if along_m >= length_m {
+                return strays;
+            }
+            let (across, range) = (rng.random_range(-1.0..=1.0), rng.random_range(0.0..=1.0));
+            strays.push(StrayDraw { along_m, across, range });
+        }
+    }
+
+    fn decoy(&self, count: usize) -> Option<[usize; 2]> {
+        // Strays at random flatter the solver as uniform noise does; the other shapes place them as decoys.
+        if self.shape == ErrorShape::Uniform || count < 2 {
+            return None;
+        }
+        let mut rng = self.stream(Purpose::Decoy, 0);
+        let first = rng.random_range(0..count);
+        Some([first, (first + rng.random_range(1..count)) % count])
     }
 }
 

@@ -9,10 +9,11 @@
 mod errors;
 mod motion;
 mod sonar;
+mod strays;
 
 use nalgebra::Vector2;
 
-pub use errors::{DrawnErrors, Errors, GENERATOR, LegErrors, SightingErrors};
+pub use errors::{DrawnErrors, Errors, GENERATOR, LegErrors, SightingErrors, StrayDraw};
 pub use motion::ERROR_HOLD_M;
 
 use crate::frame::LocalPoint;
@@ -68,7 +69,7 @@ pub struct Log {
 pub struct Truth {
     /// True position of the vehicle.
     pub position: LocalPoint,
-    /// Number of the landmark detected; none at a mark.
+    /// Number of the landmark detected; none at a mark and for a stray.
     pub landmark: Option<usize>,
 }
 
@@ -104,6 +105,7 @@ pub struct Scene<'a> {
 pub fn simulate(scene: &Scene<'_>, plan: &Plan, marks_m: &[f64], errors: &impl Errors) -> SimulatedDive {
     let legs = motion::true_legs(scene, plan, errors);
     let mut stops = sonar::sightings(scene, &legs, errors);
+    stops.extend(strays::strays(scene, plan, &legs, errors));
     stops.extend(marks_m.iter().map(|&along_m| motion::stop_at_mark(&legs, along_m)));
     // By leg first: the end of a leg and the start of the next are the same place, in this order of time. Marks come
     // before detections at the same place, so that a start there does not lose the detection.

@@ -35,8 +35,10 @@
 //!    within one straight piece, and range, nadir gap and sector are met over the whole box, altitude interval and crab
 //!    angle. Bow direction and position change continuously, so the beam cannot skip the landmark. Sightings of other
 //!    landmarks can only shrink X further.
-//! 8. *Strays and misses.* At most g certain sightings are missing from a dive, and the history may leave at most f
-//!    sightings unexplained: W may leave f + g of its sightings unexplained.
+//! 8. *Strays and misses.* At most g landmarks are missed in a dive, each of them perhaps at every pass (and both on
+//!    entering and on leaving a sector), and the history may leave at most f sightings unexplained. W may leave
+//!    unexplained f sightings and as many more as the g most often certain landmarks have. (f + g alone would be too
+//!    little for a landmark that is met twice.)
 //!
 //! *Fix distance.* At s₂ of a sighting every dive has had that sighting. X at its last event before s₂ has a spread no
 //! larger than that of ⋃ over the windows of bias of (W ⊕ E), where E = conv{0, s·u − κ·s·Rot·u} accounts for slices
@@ -45,6 +47,8 @@
 //! with the fix size.
 //!
 //! *References.* Method of [`crate::bibliography::BERTSEKAS_RHODES_1971`]; the composition is derived above.
+
+use std::collections::BTreeMap;
 
 use super::Bounds;
 use super::cell::{Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
@@ -90,6 +94,8 @@ pub struct ComposedRun {
     steps: Vec<Step>,
     /// Earliest instant of the sighting of each step, along the track; at a mark its own place.
     earliest_m: Vec<f64>,
+    /// Landmark of each step; none at a mark.
+    landmarks: Vec<Option<usize>>,
     /// By step and window of bias: what slices may drift apart between the event and the step (the set E).
     drift_apart: Vec<Vec<Reaches>>,
 }
@@ -140,7 +146,12 @@ impl ComposedRun {
                 .then(a.1.is_some().cmp(&b.1.is_some()))
                 .then(a.1.map(|x| x.landmark).cmp(&b.1.map(|x| x.landmark)))
         });
-        let mut run = Self { steps: Vec::new(), earliest_m: Vec::new(), drift_apart: Vec::new() };
+        let mut run = Self {
+            steps: Vec::new(),
+            earliest_m: Vec::new(),
+            landmarks: Vec::new(),
+            drift_apart: Vec::new(),
+        };
         let mut at_m = 0.0;
         for (along_m, sighting) in stops {
             let pieces = pieces_between(plan, at_m, along_m, scene.vehicle.speed_mps);
@@ -158,6 +169,7 @@ impl ComposedRun {
                 }),
             });
             run.earliest_m.push(sighting.map_or(along_m, |x| x.window.lo()));
+            run.landmarks.push(sighting.map(|x| x.landmark));
             run.drift_apart.push(match sighting {
                 None => Vec::new(),
                 Some(x) => windows.iter().map(|&gamma| x.drift_apart(&travel_error(gamma))).collect(),
@@ -166,14 +178,15 @@ impl ComposedRun {
         run
     }
 
-    /// Solves from `start_m`, one of the starts given to [`ComposedRun::new`]. `solver` must have the stray budget
-    /// f + g. `visit` gets every set W at its distance along the track.
+    /// Solves from `start_m`, one of the starts given to [`ComposedRun::new`], for dives of `solver`'s stray budget with at
+    /// most `misses` landmarks missed. `visit` gets every set W at its distance along the track.
     ///
     /// # Panics
     /// When `start_m` is not one of the starts.
     pub fn solve(
         &self,
         solver: &Solver<'_>,
+        misses: u8,
         start_m: f64,
         mut visit: impl FnMut(f64, &Feasible),
     ) -> ComposedOutcome {
@@ -190,12 +203,16 @@ impl ComposedRun {
             spread_m: None,
             is_undecided: false,
         };
+        let solver = Solver {
+            stray_budget: solver.stray_budget.saturating_add(self.most_missed(first, start_m, misses)),
+            ..*solver
+        };
         let steps = &self.steps[first..];
         let mut watch = FixWatch::new(steps, solver.fix_size_m);
         let solved = solver.run_where(
             steps,
             // A sighting that may have happened before the start is not certain from here.
-            |number| self.earliest_m[first + number] >= start_m,
+            |number| self.is_certain_from(first + number, start_m),
             |summary, set| {
                 let spread_m = spread_over_window(set, &self.drift_apart[first + summary.step]);
                 watch.see(summary.step, set, spread_m);
@@ -210,6 +227,27 @@ impl ComposedRun {
         outcome.fix_m = history.first_along_m.map(|along_m| along_m - start_m);
         outcome.lasting_m = history.lasting_along_m.map(|along_m| along_m - start_m);
         outcome
+    }
+}
+
+impl ComposedRun {
+    /// Whether the sighting of a step is certain from `start_m`: it cannot have happened before.
+    fn is_certain_from(&self, step: usize, start_m: f64) -> bool {
+        self.landmarks[step].is_some() && self.earliest_m[step] >= start_m
+    }
+
+    /// Most certain sightings that `misses` landmarks can take away from step number `first` on.
+    fn most_missed(&self, first: usize, start_m: f64, misses: u8) -> u8 {
+        let mut counts: BTreeMap<usize, u8> = BTreeMap::new();
+        for step in (first..self.steps.len()).filter(|&step| self.is_certain_from(step, start_m)) {
+            if let Some(landmark) = self.landmarks[step] {
+                let count = counts.entry(landmark).or_insert(0);
+                *count = count.saturating_add(1);
+            }
+        }
+        let mut counts: Vec<u8> = counts.into_values().collect();
+        counts.sort_unstable_by(|a, b| b.cmp(a));
+        counts.iter().take(usize::from(misses)).fold(0, |sum, count| sum.saturating_add(*count))
     }
 }
 

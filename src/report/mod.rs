@@ -355,7 +355,7 @@ pub struct TraceEvent {
     pub spread_m: Option<f64>,
     /// Whether the spread is at most the fix size.
     pub is_fix: bool,
-    /// Identifier of the landmark that was really seen (known to the simulator only).
+    /// Identifier of the landmark that was really seen, or `stray` (known to the simulator only).
     pub true_landmark: String,
     /// True position (known to the simulator only).
     pub true_position: LocalPoint,

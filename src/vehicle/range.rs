@@ -89,6 +89,7 @@ mod tests {
             bearing_error_rad: 0.0,
             altitude_error_m: 0.0,
             detection_chance: 1.0,
+            strays_per_km: 0.0,
             detect_in_turns: false,
         };
         assert!((sonar.reach_m() - 73.485).abs() < 5e-4);

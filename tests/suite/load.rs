@@ -40,6 +40,9 @@ range_max_m = 100
 altitude_m = 10
 range_error_m = 0.5
 bearing_error_deg = 1
+[budget]
+strays = 0
+
 [start]
 scatter_m = 20
 [scoring]

@@ -22,7 +22,7 @@ fn a_sound_dive_is_read_whole() {
     assert_eq!(dive.sonar.kind, SonarKind::SideLooking { nadir_gap_rad: 0.0 });
     assert_eq!(dive.scoring.draws, 60);
     assert_eq!(dive.scoring.seed, 1);
-    assert_eq!(dive.scoring.rank_by, RankBy::Share);
+    assert_eq!(dive.scoring.rank_by, RankBy::Guaranteed);
     assert_eq!(dive.scoring.error_shapes, [ErrorShape::Uniform, ErrorShape::Corners, ErrorShape::Steady]);
     assert_eq!(dive.start.search_area.len(), 4);
     let names: Vec<&str> = dive.inputs.iter().map(|i| i.name.as_str()).collect();

@@ -43,6 +43,10 @@ pub fn parameters() -> Parameters {
         heading_bias_deg: 0.7,
         heading_noise_deg: 0.2,
         drift_mps: 0.0,
+        heading_slices: 4,
+        strays_per_km: 0.0,
+        stray_budget: 0,
+        miss_budget: 0,
         sonar_kind: "side-looking",
         range_min_m: 10.0,
         range_max_m: 75.0,
@@ -86,6 +90,10 @@ pub fn estimated(p95_m: Option<f64>, undecided_share: f64) -> EstimatedFix {
         p95_m: p95_m.map_or(NONE, around),
         within_required_share: around(p95_m.map_or(0.3, |p95| (1.2 - p95 / 1500.0).clamp(0.0, 1.0))),
         no_fix_share: around(if p95_m.is_some() { 0.01 } else { 0.2 }),
+        lasting_median_m: p95_m.map_or(NONE, around),
+        lasting_p95_m: p95_m.map_or(NONE, around),
+        relapse_share: 0.0,
+        wrong_fix_share: 0.0,
         undecided_share,
     }
 }
@@ -126,6 +134,7 @@ pub fn line(
         }
     }
     LineReport {
+        guaranteed: None,
         name: name.to_owned(),
         rank,
         length_m: along,
@@ -192,6 +201,7 @@ pub fn report(lines: Vec<LineReport>, landmarks: Vec<ChartLandmark>) -> LinesRep
     let mut parameters = parameters();
     parameters.landmarks = landmarks.len();
     LinesReport {
+        guarantee: None,
         provenance: provenance("fixability.lines"),
         parameters,
         rank_by: RankBy::Share,
@@ -205,7 +215,8 @@ pub fn guaranteed(mut report: LinesReport) -> LinesReport {
     for segment in report.lines.iter_mut().flat_map(|line| &mut line.segments) {
         let distance_m = segment.estimated.p95_m.value.map(|p95| p95 * 1.15);
         let reason = distance_m.is_none().then(|| "look-alike ground, evenly spaced".to_owned());
-        segment.guaranteed = Some(GuaranteedFix { distance_m, reason });
+        segment.guaranteed =
+            Some(GuaranteedFix { distance_m, lasting_m: None, certain_detections: 5, cause: None, reason });
     }
     report
 }
