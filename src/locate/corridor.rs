@@ -31,8 +31,14 @@ use super::steps::TravelError;
 use crate::detect::{LogEvent, ReportedPiece};
 use crate::interval::larger;
 
-/// Most cells kept per interval; more are joined group by group, which only enlarges.
-const CELLS_MAX: usize = 500;
+/// How finely the corridor is described.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct CorridorGrain {
+    /// Longest interval, metres of reported travel; positive.
+    pub spacing_m: f64,
+    /// Most cells per interval, at least 1; more are joined group by group, which only enlarges.
+    pub cells_max: usize,
+}
 
 /// The corridor over one interval of the reported travel.
 #[derive(Clone, Debug, PartialEq)]
@@ -58,27 +64,27 @@ struct Span {
 
 impl History {
     /// The corridor along `events`, the log that the recorded steps were made from, under the same `bounds` and `map`.
-    /// Intervals are at most `spacing_m` of reported travel long; joints of reported pieces and events cut them too.
+    /// Joints of reported pieces and events cut intervals too. The last interval ends where the log ends.
     ///
     /// *Guarantee.* While the bounds hold, the true position lies in the cells of the interval at every instant.
     ///
     /// # Panics
-    /// When `spacing_m` is not positive.
+    /// When the spacing is not positive.
     pub fn corridor(
         &self,
         events: &[LogEvent],
         bounds: &Bounds,
         map: &SolverMap,
-        spacing_m: f64,
+        grain: CorridorGrain,
     ) -> Vec<CorridorInterval> {
-        assert!(spacing_m > 0.0, "the spacing of a corridor is positive");
+        assert!(grain.spacing_m > 0.0, "the spacing of a corridor is positive");
         let errors: Vec<TravelError> = TravelError::by_slice(bounds);
         let mut corridor = Vec::new();
         let (mut from_m, mut from_s) = (0.0, 0.0);
         let mut spans_of = |events: &[LogEvent]| {
             let mut spans = Vec::new();
             for piece in events.iter().flat_map(|event| &event.travel) {
-                for part in cut(piece, spacing_m) {
+                for part in cut(piece, grain.spacing_m) {
                     spans.push(Span { piece: part, from_m, from_s });
                     from_m += part.length_m;
                     from_s += part.duration_s;
@@ -88,7 +94,7 @@ impl History {
         };
         for level in 1..self.levels.len() {
             let spans = spans_of(&events[self.steps_to(level)]);
-            corridor.extend(self.between(level, &spans, &errors, map));
+            corridor.extend(self.between(level, &spans, &errors, map, grain.cells_max));
         }
         if let Some(last) = self.levels.last() {
             let after = if self.levels.len() == 1 { 0 } else { last.step + 1 };
@@ -100,7 +106,7 @@ impl History {
                     .iter()
                     .flatten()
                     .map(|state| state.cell.minkowski_sum(&reach[usize::from(state.slice)][number]));
-                corridor.push(span.with(cells.collect()));
+                corridor.push(span.with(cells.collect(), grain.cells_max));
             }
         }
         corridor
@@ -113,6 +119,7 @@ impl History {
         spans: &[Span],
         errors: &[TravelError],
         map: &SolverMap,
+        cells_max: usize,
     ) -> Vec<CorridorInterval> {
         let reach: Vec<(Vec<Reaches>, Vec<Reaches>)> =
             errors.iter().map(|error| (ahead(error, spans), behind(error, spans))).collect();
@@ -136,7 +143,7 @@ impl History {
                     let behind = landing.minkowski_sum(&behind[number]);
                     origin.minkowski_sum(&ahead[number]).intersection(behind.reaches())
                 });
-                span.with(cells.collect())
+                span.with(cells.collect(), cells_max)
             })
             .collect()
     }
@@ -144,13 +151,13 @@ impl History {
 
 impl Span {
     /// The finished interval.
-    fn with(&self, cells: Vec<Cell>) -> CorridorInterval {
+    fn with(&self, cells: Vec<Cell>, cells_max: usize) -> CorridorInterval {
         CorridorInterval {
             from_m: self.from_m,
             to_m: self.from_m + self.piece.length_m,
             from_s: self.from_s,
             to_s: self.from_s + self.piece.duration_s,
-            cells: thinned(cells),
+            cells: thinned(cells, cells_max),
         }
     }
 }
@@ -202,13 +209,13 @@ fn accumulated<'a>(error: &TravelError, travels: impl Iterator<Item = &'a Reache
 }
 
 /// Drops cells inside others and joins near ones while there are too many.
-fn thinned(cells: Vec<Cell>) -> Vec<Cell> {
+fn thinned(cells: Vec<Cell>, cells_max: usize) -> Vec<Cell> {
     let mut set =
         Feasible { states: cells.into_iter().map(|cell| State { cell, slice: 0, strays: 0 }).collect() };
     set.drop_covered();
     let mut cells: Vec<Cell> = set.states.into_iter().map(|state| state.cell).collect();
-    let mut joined = Vec::with_capacity(cells.len().min(CELLS_MAX));
-    join_groups(&mut cells, CELLS_MAX, &mut joined);
+    let mut joined = Vec::with_capacity(cells.len().min(cells_max));
+    join_groups(&mut cells, cells_max, &mut joined);
     joined
 }
 

@@ -30,7 +30,7 @@ mod watch;
 
 pub use backward::{SHRINK_M, SWEEPS_MAX, Sweeps};
 pub use composed::{ComposedOutcome, ComposedRun};
-pub use corridor::CorridorInterval;
+pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
