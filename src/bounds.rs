@@ -180,6 +180,13 @@ pub const KEYS: &[Key] = &[
     ),
     key(
         "map",
+        "complete_inside",
+        Kind::File,
+        Without("no area"),
+        "Polygon (GeoJSON, WGS 84 or local metres like the map) inside which every mapped landmark exists; needed for budget.nothing_seen.",
+    ),
+    key(
+        "map",
         "decimal_comma",
         Kind::Flag,
         Default("false"),
@@ -354,6 +361,13 @@ pub const KEYS: &[Key] = &[
         Kind::Whole(Range::closed(0.0, 20.0, "")),
         Default("0"),
         "Most landmarks per run that may be missed although they are certainly inside the swath.",
+    ),
+    key(
+        "budget",
+        "nothing_seen",
+        Kind::Flag,
+        Default("false"),
+        "A landmark certainly passed and not detected speaks against a position (side-looking sonar, detection_chance 1).",
     ),
     key(
         "start",

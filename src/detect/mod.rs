@@ -31,6 +31,8 @@ pub struct ReportedPiece {
     pub heading_rad: f64,
     /// Duration, seconds.
     pub duration_s: f64,
+    /// Whether the sonar detects nothing here, because the vehicle turns.
+    pub is_blind: bool,
 }
 
 /// One anonymous detection.

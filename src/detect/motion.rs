@@ -130,6 +130,7 @@ impl<'a> Travel<'a> {
                 length_m: ground_m * leg.reported_per_metre,
                 heading_rad: leg.reported_heading_rad,
                 duration_s: ground_m / self.speed_mps,
+                is_blind: !leg.sees,
             });
         }
     }

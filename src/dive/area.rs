@@ -40,13 +40,13 @@ pub(super) fn around(
     ])
 }
 
-/// Reads the polygon and refuses lines that leave it.
-pub(super) fn read(
+/// Reads a polygon: the corners of the outer ring in the working frame, in order, not repeated. `role` names it in
+/// messages ("search area").
+pub(super) fn polygon(
     input: &InputText,
+    role: &str,
     declared: Option<&Crs>,
     frame: &Frame,
-    lines: &[Line],
-    scatter_m: f64,
     findings: &mut Findings,
 ) -> Option<Vec<LocalPoint>> {
     let problem = |what: &str| {
@@ -72,7 +72,7 @@ pub(super) fn read(
         return None;
     };
     if coordinates.len() > 1 {
-        findings.inform(Some(&input.name), "holes of the search area are searched too");
+        findings.inform(Some(&input.name), format!("holes of the {role} are ignored"));
     }
     let mut problems = Vec::new();
     let mut check = PositionCheck::new(&input.name, &crs);
@@ -96,11 +96,24 @@ pub(super) fn read(
     if corners.len() > 1 && corners.first() == corners.last() {
         corners.pop();
     }
-    let hull = convex_hull(&corners);
-    if hull.len() < 3 {
+    if convex_hull(&corners).len() < 3 {
         findings.problem(problem("the polygon encloses no area"));
         return None;
     }
+    Some(corners)
+}
+
+/// Reads the search area and refuses lines that leave it.
+pub(super) fn read(
+    input: &InputText,
+    declared: Option<&Crs>,
+    frame: &Frame,
+    lines: &[Line],
+    scatter_m: f64,
+    findings: &mut Findings,
+) -> Option<Vec<LocalPoint>> {
+    let corners = polygon(input, "search area", declared, frame, findings)?;
+    let hull = convex_hull(&corners);
     if !is_convex(&corners) {
         findings.inform(
             Some(&input.name),

@@ -122,6 +122,8 @@ pub struct Dive {
     pub heading_slices: usize,
     /// Detections that may be strays and landmarks that may be missed.
     pub budget: Budget,
+    /// Corners of the polygon inside which "nothing seen" is evidence; none when it is not used.
+    pub nothing_seen_inside: Option<Vec<LocalPoint>>,
     /// What was read, with fingerprints: dive file first, then in the order named.
     pub inputs: Vec<InputFile>,
     /// What was understood and what to watch, for `check` and for standard error.

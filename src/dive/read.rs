@@ -38,6 +38,7 @@ struct Read {
     inputs: Vec<InputFile>,
     sources: Sources,
     area: Option<(PathBuf, InputText)>,
+    complete: Option<InputText>,
 }
 
 fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
@@ -45,7 +46,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
     if !findings.problems.is_empty() {
         return None;
     }
-    let Read { settings, inputs, sources, area } = read;
+    let Read { settings, inputs, sources, area, complete } = read;
     let (vehicle, sonar) = (settings.vehicle?, settings.sonar?);
     let scatter_m = settings.scatter_m?;
     let site = Site::place(&sources, settings.working.clone(), sonar.reach_m(), findings)?;
@@ -65,6 +66,14 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         return None;
     }
 
+    let local = Crs::Local;
+    let declared = (settings.map_crs == Some(Crs::Local)).then_some(&local);
+    let nothing_seen_inside = match &complete {
+        Some(input) if settings.nothing_seen => {
+            Some(area::polygon(input, "completely mapped area", declared, &site.frame, findings)?)
+        }
+        _ => None,
+    };
     let grid = widen::Grid::over(&site, &search_area, settings.seabed_depth_m, findings)?;
     let half_widths = checks::half_widths(&sources, &settings, findings)?;
     let landmarks: Vec<Landmark> = sources
@@ -112,6 +121,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         scoring: settings.scoring?,
         heading_slices: settings.heading_slices?,
         budget: settings.budget?,
+        nothing_seen_inside,
         inputs,
         notices: std::mem::take(&mut findings.notices),
     })
@@ -136,6 +146,7 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
         line_inputs.extend(open(file, findings));
     }
     let area = settings.search_area.as_ref().and_then(|n| open(n, findings).map(|input| (n.clone(), input)));
+    let complete = settings.complete_inside.as_ref().and_then(|n| open(n, findings));
 
     let map_options = map::read::ReadOptions {
         decimal_comma: settings.map_decimal_comma,
@@ -169,7 +180,7 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
             findings.problem(problem);
         }
     }
-    Some(Read { settings, inputs, sources, area })
+    Some(Read { settings, inputs, sources, area, complete })
 }
 
 /// Refuses keys that say something about a format that none of the files has.

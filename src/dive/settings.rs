@@ -30,6 +30,8 @@ pub(super) struct Settings {
     pub sonar: Option<Sonar>,
     pub search_area: Option<PathBuf>,
     pub area_crs: Option<Crs>,
+    pub complete_inside: Option<PathBuf>,
+    pub nothing_seen: bool,
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
     pub heading_slices: Option<usize>,
@@ -67,6 +69,8 @@ impl Settings {
             );
         }
         let scatter_m = doc.number("start", "scatter_m", f);
+        let complete_inside = doc.file("map", "complete_inside", f);
+        let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
         let scoring = scoring(doc, f);
         let heading_slices = doc.number("dead_reckoning", "heading_slices", f).map(|n| n as usize);
         let budget = budget(doc, f);
@@ -89,6 +93,8 @@ impl Settings {
             sonar,
             search_area,
             area_crs,
+            complete_inside,
+            nothing_seen,
             scatter_m,
             scoring,
             heading_slices,
@@ -264,6 +270,42 @@ fn consistent_sonar(doc: &Document<'_>, sonar: &Sonar, f: &mut Findings) -> bool
         );
     }
     f.problems.len() == before
+}
+
+/// Whether "nothing seen" counts as evidence: only with side-looking sonar, certain detection and a complete map.
+fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> bool {
+    let wanted = doc.flag("budget", "nothing_seen", f);
+    let has_map = doc.has("map", "complete_inside");
+    if has_map && !wanted {
+        f.problem(
+            doc.problem("map", "complete_inside", "has no effect without budget.nothing_seen = true")
+                .advice("remove it, or set budget.nothing_seen"),
+        );
+    }
+    if !wanted {
+        return false;
+    }
+    let mut refuse = |what: &str, advice: &str| {
+        f.problem(doc.problem("budget", "nothing_seen", what.to_owned()).advice(advice));
+    };
+    if !has_map {
+        refuse(
+            "needs map.complete_inside",
+            "name the polygon inside which every mapped landmark is certain to exist",
+        );
+    }
+    if let Some(sonar) = sonar {
+        if sonar.detection_chance < 1.0 {
+            refuse(
+                "needs a detection that is certain, but sonar.detection_chance is below 1",
+                "leave nothing_seen out",
+            );
+        }
+        if matches!(sonar.kind, SonarKind::ForwardLooking { .. }) {
+            refuse("is available for side-looking sonar only", "leave nothing_seen out");
+        }
+    }
+    true
 }
 
 fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {

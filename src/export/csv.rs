@@ -4,7 +4,7 @@ use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
 /// Columns every row has.
-const COLUMNS: [&str; 27] = [
+const COLUMNS: [&str; 35] = [
     "line",
     "line_rank",
     "segment",
@@ -28,6 +28,14 @@ const COLUMNS: [&str; 27] = [
     "estimated_no_fix_share",
     "estimated_no_fix_share_low",
     "estimated_no_fix_share_high",
+    "estimated_lasting_median_fix_m",
+    "estimated_lasting_median_fix_low_m",
+    "estimated_lasting_median_fix_high_m",
+    "estimated_lasting_p95_fix_m",
+    "estimated_lasting_p95_fix_low_m",
+    "estimated_lasting_p95_fix_high_m",
+    "estimated_relapse_share",
+    "estimated_wrong_fix_share",
     "undecided_share",
     "required_fix_m",
     "fix_size_m",
@@ -35,7 +43,13 @@ const COLUMNS: [&str; 27] = [
 ];
 
 /// Columns that exist only when guaranteed distances were computed.
-const GUARANTEED_COLUMNS: [&str; 2] = ["guaranteed_fix_m", "no_guaranteed_fix_reason"];
+const GUARANTEED_COLUMNS: [&str; 5] = [
+    "guaranteed_fix_m",
+    "guaranteed_lasting_fix_m",
+    "certain_detections",
+    "no_guaranteed_fix_cause",
+    "no_guaranteed_fix_reason",
+];
 
 /// Writes `lines.csv`.
 #[derive(Clone, Copy, Debug, Default)]
@@ -64,6 +78,11 @@ impl Exporter for LinesCsv {
             if with_guaranteed {
                 let fix = segment.guaranteed.as_ref();
                 row.push(number(fix.and_then(|fix| fix.distance_m)));
+                row.push(number(fix.and_then(|fix| fix.lasting_m)));
+                row.push(fix.map(|fix| fix.certain_detections.to_string()).unwrap_or_default());
+                row.push(
+                    fix.and_then(|fix| fix.cause).map(|cause| cause.word().to_owned()).unwrap_or_default(),
+                );
                 row.push(fix.and_then(|fix| fix.reason.clone()).unwrap_or_default());
             }
             writer.write_record(row).map_err(format)?;
@@ -91,11 +110,20 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
         segment.detections_ahead.to_string(),
         fix.dives.to_string(),
     ];
-    let estimates = [fix.median_m, fix.p95_m, fix.within_required_share, fix.no_fix_share];
+    let estimates = [
+        fix.median_m,
+        fix.p95_m,
+        fix.within_required_share,
+        fix.no_fix_share,
+        fix.lasting_median_m,
+        fix.lasting_p95_m,
+    ];
     row.extend(
         estimates.into_iter().flat_map(|Estimate { value, low, high }| [value, low, high].map(number)),
     );
     row.extend([
+        fix.relapse_share.to_string(),
+        fix.wrong_fix_share.to_string(),
         fix.undecided_share.to_string(),
         report.parameters.required_fix_m.to_string(),
         report.parameters.fix_size_m.to_string(),

@@ -14,14 +14,14 @@ pub fn lines_table(report: &LinesReport) -> String {
         "rank".to_owned(),
         "line".to_owned(),
         "length m".to_owned(),
-        format!("fix within {required} m, % of dives (95 % interval)"),
+        format!("within {required} m, % of dives (95 % interval)"),
         "median fix m".to_owned(),
         "p95 fix m".to_owned(),
         "no fix %".to_owned(),
         "undecided %".to_owned(),
     ];
     if with_guaranteed {
-        header.push(format!("guaranteed within {required} m, % of segments"));
+        header.push(format!("guaranteed within {required} m, % of line"));
     }
     let mut table = plain(&header, 1);
     let mut ranked: Vec<&LineReport> = report.lines.iter().collect();
@@ -39,13 +39,19 @@ pub fn lines_table(report: &LinesReport) -> String {
             per_cent(fix.undecided_share),
         ];
         if with_guaranteed {
-            row.push(guaranteed_share(line, report.parameters.required_fix_m));
+            row.push(line.guaranteed.map_or_else(none, |sum| per_cent(sum.within_required_share)));
         }
         add(&mut table, row, 1);
     }
     let dives: usize = report.lines.iter().map(|line| line.estimated.dives).sum();
+    let terms = report.guarantee.as_ref().map_or_else(String::new, |terms| {
+        format!(
+            "Guaranteed: true for every error within the bounds, {} strays and {} misses, on {} tracks ({}).\n",
+            report.parameters.stray_budget, report.parameters.miss_budget, terms.offset_tracks, terms.offset_pattern,
+        )
+    });
     format!(
-        "{}\nEstimated from {dives} simulated dives, lost at the start of any segment; p95 = 95th percentile; seed {}.\n",
+        "{}\n{terms}Estimated from {dives} simulated dives, lost at the start of any segment; p95 = 95th percentile; seed {}.\n",
         table.trim_fmt(),
         report.provenance.seed,
     )
@@ -223,17 +229,6 @@ fn cells(row: Vec<String>, left: usize) -> Vec<Cell> {
         Cell::new(text).set_alignment(alignment)
     };
     row.into_iter().enumerate().map(aligned).collect()
-}
-
-/// Share of segments with a guaranteed distance within the required one, %.
-fn guaranteed_share(line: &LineReport, required_m: f64) -> String {
-    let scored: Vec<Option<f64>> =
-        line.segments.iter().filter_map(|s| s.guaranteed.as_ref()).map(|fix| fix.distance_m).collect();
-    if scored.is_empty() {
-        return none();
-    }
-    let within = scored.iter().flatten().filter(|&&distance| distance <= required_m).count();
-    per_cent(within as f64 / scored.len() as f64)
 }
 
 fn share(estimate: Estimate) -> String {

@@ -263,8 +263,12 @@ impl CertainSighting {
     /// conv{0, travel over the window}.
     fn carried(&self, travel: &TravelError, speed_mps: f64) -> Reaches {
         let length_m = self.window.width();
-        let piece =
-            ReportedPiece { length_m, heading_rad: self.heading_rad, duration_s: length_m / speed_mps };
+        let piece = ReportedPiece {
+            length_m,
+            heading_rad: self.heading_rad,
+            duration_s: length_m / speed_mps,
+            is_blind: false,
+        };
         travel.reaches(&[piece]).map(|reach| larger(reach, 0.0))
     }
 
@@ -310,6 +314,7 @@ fn pieces_between(plan: &Plan, from_m: f64, to_m: f64, speed_mps: f64) -> Vec<Re
                 length_m: end - start,
                 heading_rad: piece.heading_rad,
                 duration_s: (end - start) / speed_mps,
+                is_blind: piece.in_turn,
             })
         })
         .collect()

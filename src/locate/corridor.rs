@@ -169,7 +169,7 @@ fn cut(piece: &ReportedPiece, spacing_m: f64) -> impl Iterator<Item = ReportedPi
     let part = ReportedPiece {
         length_m: piece.length_m / parts,
         duration_s: piece.duration_s / parts,
-        heading_rad: piece.heading_rad,
+        ..*piece
     };
     std::iter::repeat_n(part, parts as usize)
 }

@@ -141,8 +141,12 @@ pub(super) fn bounds_in_words(parameters: &Parameters) -> String {
     if parameters.drift_mps > 0.0 {
         reckoning.push(format!("{} m/s drift", nice::short(parameters.drift_mps, 3)));
     }
+    let budget = match (parameters.stray_budget, parameters.miss_budget) {
+        (0, 0) => "no stray or miss allowed".to_owned(),
+        (strays, misses) => format!("{strays} strays and {misses} misses allowed"),
+    };
     format!(
-        "{} sonar {}–{} m, dead reckoning {}",
+        "{} sonar {}–{} m, dead reckoning {}; {budget}",
         parameters.sonar_kind,
         nice::short(parameters.range_min_m, 1),
         nice::short(parameters.range_max_m, 1),

@@ -14,8 +14,13 @@ pub(super) fn draw(sheet: &mut Sheet, area: Rect, report: &LinesReport) {
     let sizes = sheet.sizes;
     let k = sizes.k;
     let mut y = sheet.scene.text((area.left, area.top), "Ranking", sizes.heading(), INK).bottom + 2.0 * k;
+    let bar = if is_guaranteed(report) {
+        "share of the line with a guaranteed fix"
+    } else {
+        "share of simulated dives with a fix (estimated, all segment starts)"
+    };
     let note = format!(
-        "bar: share of simulated dives with a fix within {} m (estimated, all segment starts); {}",
+        "bar: {bar} within {} m; {}",
         nice::short(report.parameters.required_fix_m, 2),
         order_in_words(report.rank_by),
     );
@@ -53,8 +58,8 @@ pub(super) fn draw(sheet: &mut Sheet, area: Rect, report: &LinesReport) {
 
 fn order_in_words(rank_by: RankBy) -> &'static str {
     match rank_by {
-        RankBy::Guaranteed => "ordered by guaranteed share of the line",
-        RankBy::Share => "ordered by this share",
+        RankBy::Guaranteed => "ordered by guaranteed share",
+        RankBy::Share => "ordered by estimated share of dives",
         RankBy::P95 => "ordered by 95th percentile (p95)",
         RankBy::Median => "ordered by median fix distance",
         RankBy::NoFix => "ordered by share of dives without a fix",
@@ -76,11 +81,8 @@ fn roomy_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
     let name = name(sheet, at, line, font, at.width() - 34.0 * k);
     let bar = Rect::new(name.left, name.bottom + 6.0 * k, name.left + 150.0 * k, name.bottom + 22.0 * k);
     let right = share(sheet, bar, line);
-    let p95 = match line.estimated.p95_m.value {
-        Some(p95) => format!("p95 {} m", nice::metres(p95)),
-        None => "p95 none".to_owned(),
-    };
-    percentile(sheet, bar, larger(right + 12.0 * k, bar.right + 92.0 * k), at.right, &p95);
+    let text = beside(line, ["estimated ", "p95 "]);
+    percentile(sheet, bar, larger(right + 12.0 * k, bar.right + 72.0 * k), at.right, &text);
 }
 
 /// Everything on one line.
@@ -91,18 +93,34 @@ fn tight_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
     let (_, middle) = name.centre();
     let bar = Rect::new(bar_left, middle - 7.0 * k, bar_left + 36.0 * k, middle + 7.0 * k);
     let right = share(sheet, bar, line);
-    let p95 = line
-        .estimated
-        .p95_m
-        .value
-        .map_or_else(|| "none".to_owned(), |p95| format!("{} m", nice::metres(p95)));
-    percentile(sheet, bar, larger(right + 8.0 * k, bar.right + 74.0 * k), at.right, &p95);
+    let text = beside(line, ["est. ", ""]);
+    percentile(sheet, bar, larger(right + 8.0 * k, bar.right + 60.0 * k), at.right, &text);
+}
+
+/// Whether the ranking shows guaranteed shares.
+fn is_guaranteed(report: &LinesReport) -> bool {
+    report.lines.iter().any(|line| line.guaranteed.is_some())
+}
+
+/// What stands beside the bar: beside a guaranteed share the estimated one, else the 95th percentile.
+fn beside(line: &LineReport, prefix: [&str; 2]) -> String {
+    let [estimated, p95] = prefix;
+    if line.guaranteed.is_some() {
+        let share = line.estimated.within_required_share.value.map_or_else(|| "none".to_owned(), per_cent);
+        return format!("{estimated}{share}");
+    }
+    let p95_m =
+        line.estimated.p95_m.value.map_or_else(|| "none".to_owned(), |m| format!("{} m", nice::metres(m)));
+    format!("{p95}{p95_m}")
 }
 
 /// Bar and figure of the share; returns the figure's right edge.
 fn share(sheet: &mut Sheet, bar: Rect, line: &LineReport) -> f64 {
     let sizes = sheet.sizes;
-    let share = line.estimated.within_required_share.value;
+    let share = match line.guaranteed {
+        Some(guaranteed) => Some(guaranteed.within_required_share),
+        None => line.estimated.within_required_share.value,
+    };
     sheet.scene.fill(bar, PALE);
     if let Some(share) = share.filter(|&share| share > 0.0) {
         let right = bar.left + bar.width() * share.clamp(0.0, 1.0);

@@ -163,6 +163,19 @@ pub enum Cause {
     DetectionNotCertain,
 }
 
+impl Cause {
+    /// The word used in files.
+    pub fn word(self) -> &'static str {
+        match self {
+            Self::TooFewLandmarks => "too-few-landmarks",
+            Self::LookAlikes => "look-alikes",
+            Self::TooWide => "too-wide",
+            Self::Undecided => "undecided",
+            Self::DetectionNotCertain => "detection-not-certain",
+        }
+    }
+}
+
 /// True for every error within the bounds: *guaranteed*.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct GuaranteedFix {

@@ -3,8 +3,11 @@
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
 mod backward;
+mod cli;
 mod corridor;
+mod craters;
 mod demo;
+mod determinism;
 mod export;
 mod guarantee;
 mod intervals;
@@ -13,6 +16,7 @@ mod load;
 mod one_dimension;
 mod oracle;
 mod projection;
+mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;

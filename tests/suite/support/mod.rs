@@ -2,4 +2,5 @@
 
 pub mod demo;
 pub mod exact;
+pub mod program;
 pub mod scenes;

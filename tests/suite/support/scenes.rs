@@ -78,7 +78,7 @@ impl RandomScene {
         Solver {
             map: &self.map,
             search_area: Cell::around_points(&self.search_area),
-            cell_budget: 20_000,
+            cell_budget: 200_000,
             stray_budget: 0,
             fix_size_m: self.fix_size_m,
         }

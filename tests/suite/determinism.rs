@@ -1,0 +1,35 @@
+//! Same input, same bytes, whatever the number of threads.
+
+use crate::support::program::{Workplace, project};
+
+fn compare(command: &str, files: &[&str]) {
+    let place = Workplace::new();
+    let dive = project("demo-data/dive.toml");
+    let run = |threads: &str| {
+        let mut arguments =
+            vec![command, dive.to_str().expect("a plain path"), "--threads", threads, "--out"];
+        arguments.push(threads);
+        crate::support::program::Ran::of(place.command(arguments).output().expect("the program starts"))
+            .expect(0)
+    };
+    let (one, two) = (run("1"), run("2"));
+    assert_eq!(one.stdout, two.stdout);
+    assert_eq!(place.names("1"), files);
+    assert_eq!(place.names("2"), files);
+    for file in files {
+        assert!(
+            place.bytes(format!("1/{file}")) == place.bytes(format!("2/{file}")),
+            "{file} differs between one thread and two"
+        );
+    }
+}
+
+#[test]
+fn scores_of_the_demo_do_not_depend_on_threads() {
+    compare("lines", &["lines.csv", "lines.json", "lines.png"]);
+}
+
+#[test]
+fn a_trace_of_the_demo_does_not_depend_on_threads() {
+    compare("trace", &["trace.json", "trace.png"]);
+}
