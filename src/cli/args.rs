@@ -89,7 +89,9 @@ pub enum Command {
     /// Follow one simulated dive of one line, detection by detection
     ///
     /// Shows after each detection how many places are left, how far apart they lie, and whether the true position is
-    /// among them. With --out, writes trace.json and trace.png.
+    /// among them; then what is known of each detection in hindsight, once the whole dive has been seen: the places that
+    /// were possible, and which landmark it must have been. With --out, writes trace.json and trace.png. The JSON also
+    /// has the corridor: where the vehicle may have been at every instant.
     Trace {
         /// The dive file (TOML)
         dive: PathBuf,
@@ -102,6 +104,9 @@ pub enum Command {
         /// Number of the simulated dive, from 0
         #[arg(long, value_name = "NUMBER", default_value_t = 0)]
         draw: usize,
+        /// Longest interval of the corridor in the JSON, metres of reported travel
+        #[arg(long, value_name = "METRES", default_value_t = 10.0, value_parser = spacing)]
+        corridor_m: f64,
         /// Folder for trace.json and trace.png (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
@@ -111,6 +116,14 @@ pub enum Command {
         /// The shell
         shell: Shell,
     },
+}
+
+/// Parses the length of a corridor interval. Below a decimetre the file would only grow.
+fn spacing(text: &str) -> Result<f64, String> {
+    match text.parse::<f64>() {
+        Ok(spacing) if (0.1..=10_000.0).contains(&spacing) => Ok(spacing),
+        _ => Err("accepted: a distance from 0.1 to 10000 m, such as 10".to_owned()),
+    }
 }
 
 /// Parses a share between 0 and 1.

@@ -57,8 +57,13 @@ fn run(arguments: &Arguments) -> Result<Exit> {
                 LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
             lines(dive, &asked, common)
         }
-        Command::Trace { dive, line, from_m, draw, out } => {
-            let request = TraceRequest { line: line.clone(), from_m: *from_m, draw: *draw };
+        Command::Trace { dive, line, from_m, draw, corridor_m, out } => {
+            let request = TraceRequest {
+                line: line.clone(),
+                from_m: *from_m,
+                draw: *draw,
+                corridor_spacing_m: *corridor_m,
+            };
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Completions { shell } => {

@@ -3,7 +3,7 @@
 use comfy_table::presets::ASCII_FULL_CONDENSED;
 use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
-use crate::report::{CheckReport, Estimate, LineReport, LinesReport, TraceReport};
+use crate::report::{CheckReport, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport};
 
 /// The ranking of the lines, best first. Figures are estimates from simulated dives.
 pub fn lines_table(report: &LinesReport) -> String {
@@ -69,8 +69,11 @@ pub fn trace_table(report: &TraceReport) -> String {
         "spread m",
         "fix",
         "truth inside",
+        "hindsight places",
+        "hindsight spread m",
+        "landmark in hindsight",
     ];
-    let mut table = plain(&header.map(str::to_owned), usize::MAX);
+    let mut table = plain(&header.map(str::to_owned), header.len() - 1);
     for event in &report.events {
         let yes = |flag: bool| if flag { "yes" } else { "no" }.to_owned();
         let row = vec![
@@ -83,8 +86,11 @@ pub fn trace_table(report: &TraceReport) -> String {
             event.spread_m.map_or_else(|| "empty".to_owned(), |spread| format!("{spread:.1}")),
             yes(event.is_fix),
             yes(event.truth_inside),
+            event.hindsight.as_ref().map_or_else(none, |then| then.places.to_string()),
+            event.hindsight.as_ref().map_or_else(none, |then| format!("{:.1}", then.spread_m)),
+            event.hindsight.as_ref().map_or_else(none, seen),
         ];
-        add(&mut table, row, usize::MAX);
+        add(&mut table, row, header.len() - 1);
     }
     let verdict = match (report.undecided, report.fix_distance_m) {
         (true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
@@ -92,12 +98,42 @@ pub fn trace_table(report: &TraceReport) -> String {
         (false, None) => "no fix before the line ends".to_owned(),
     };
     let line = printable(&report.line);
-    format!(
+    let mut text = format!(
         "{}\nLine {line} from {:.1} m, draw {}: {verdict}.\n",
         table.trim_fmt(),
         report.from_m,
         report.draw
-    )
+    );
+    match &report.hindsight {
+        Some(hindsight) => text.push_str(&format!(
+            "In hindsight, that is once the whole dive has been seen ({} sweeps): lost at {} place{}, {:.1} m across.\n",
+            hindsight.sweeps,
+            hindsight.start_places,
+            if hindsight.start_places == 1 { "" } else { "s" },
+            hindsight.start_spread_m,
+        )),
+        None => text.push_str("No hindsight: nothing explains all of the detections.\n"),
+    }
+    text
+}
+
+/// Candidates named in the table; with more, only their number is given.
+const CANDIDATES_IN_TABLE: usize = 3;
+
+/// Which landmark a detection was in hindsight: its name, a few names, or how many it may be.
+fn seen(hindsight: &HindsightEvent) -> String {
+    let landmarks = match hindsight.candidate_count {
+        0 => "stray".to_owned(),
+        few if few <= CANDIDATES_IN_TABLE => {
+            hindsight.candidates.iter().map(|name| printable(name)).collect::<Vec<_>>().join(" or ")
+        }
+        many => format!("one of {many}"),
+    };
+    if hindsight.may_be_stray && hindsight.candidate_count > 0 {
+        format!("{landmarks}, or a stray")
+    } else {
+        landmarks
+    }
 }
 
 /// What was understood of a dive: notices, bounds in force, lines. The caution comes last.

@@ -2,6 +2,7 @@
 
 use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches, box_reaches};
 use super::feasible::{Feasible, State};
+use super::history::{History, NoTrail, Trail};
 use super::steps::{Look, Step};
 use crate::interval::Box2;
 use crate::map::Landmark;
@@ -28,13 +29,17 @@ impl SolverMap {
         &self.index
     }
 
-    /// Calls `found` with the positions from which a landmark whose detection is explained by `look` may have been
-    /// seen, for every landmark that `place` allows.
-    fn for_each_vantage(&self, place: Box2, look: &Look, mut found: impl FnMut(Reaches)) {
+    /// The positions from which landmark number `landmark` may have been seen when `look` explains its detection.
+    pub(super) fn vantage(&self, landmark: usize, look: &Look) -> Reaches {
+        let mut vantage = self.reaches[landmark];
+        add_reaches(&mut vantage, &look.from_landmark);
+        vantage
+    }
+
+    /// Calls `found` with the number and the [`SolverMap::vantage`] of every landmark that `place` allows.
+    fn for_each_vantage(&self, place: Box2, look: &Look, mut found: impl FnMut(usize, Reaches)) {
         for j in self.index.meeting(place.minkowski_sum(look.extent)) {
-            let mut vantage = self.reaches[j];
-            add_reaches(&mut vantage, &look.from_landmark);
-            found(vantage);
+            found(j, self.vantage(j, look));
         }
     }
 }
@@ -106,7 +111,28 @@ impl Solver<'_> {
         &self,
         steps: &[Step],
         uses: impl Fn(usize) -> bool,
+        visit: impl FnMut(EventSummary, &Feasible),
+    ) -> Outcome {
+        self.solve(steps, uses, visit, &mut NoTrail)
+    }
+
+    /// As [`Solver::run`], and keeps the history of every event for [`History::sweep`].
+    pub fn run_recorded(
+        &self,
+        steps: &[Step],
+        visit: impl FnMut(EventSummary, &Feasible),
+    ) -> (Outcome, History) {
+        let mut history = History::default();
+        let outcome = self.solve(steps, |_| true, visit, &mut history);
+        (outcome, history)
+    }
+
+    fn solve(
+        &self,
+        steps: &[Step],
+        uses: impl Fn(usize) -> bool,
         mut visit: impl FnMut(EventSummary, &Feasible),
+        trail: &mut impl Trail,
     ) -> Outcome {
         let Some(first) = steps.first() else { return Outcome::default() };
         let slices = first.travel.len();
@@ -119,6 +145,7 @@ impl Solver<'_> {
                 })
                 .collect(),
         };
+        trail.start(&set);
         let mut outcome = Outcome::default();
         let mut travel = vec![[0.0; DIRECTION_COUNT]; slices];
         for (number, step) in steps.iter().enumerate() {
@@ -126,11 +153,12 @@ impl Solver<'_> {
                 add_reaches(total, more);
             }
             let Some(looks) = step.sighting.as_ref().filter(|_| uses(number)) else { continue };
-            let Some(next) = self.advance(&set, &travel, looks) else {
+            let Some(next) = self.advance(&set, &travel, looks, trail) else {
                 outcome.is_undecided = true;
                 break;
             };
             set = next;
+            trail.event(number, &travel, looks, &set);
             travel.fill([0.0; DIRECTION_COUNT]);
             let summary = EventSummary {
                 step: number,
@@ -149,22 +177,30 @@ impl Solver<'_> {
     }
 
     /// Moves the set by `travel` and keeps what the sighting explains; `None` when the cell budget is exhausted.
-    fn advance(&self, set: &Feasible, travel: &[Reaches], looks: &[Option<Look>]) -> Option<Feasible> {
+    fn advance(
+        &self,
+        set: &Feasible,
+        travel: &[Reaches],
+        looks: &[Option<Look>],
+        trail: &mut impl Trail,
+    ) -> Option<Feasible> {
         let mut next = Feasible::default();
         let mut has_branched = false;
-        for state in &set.states {
+        for (number, state) in set.states.iter().enumerate() {
             let slice = usize::from(state.slice);
             let moved = state.cell.minkowski_sum(&travel[slice]);
             let before = next.states.len();
             if let Some(look) = &looks[slice] {
-                self.map.for_each_vantage(moved.bounding_box(), look, |vantage| {
+                self.map.for_each_vantage(moved.bounding_box(), look, |landmark, vantage| {
                     if let Some(cell) = moved.intersection(&vantage) {
                         next.states.push(State { cell, ..*state });
+                        trail.child(number, Some(landmark));
                     }
                 });
             }
             if state.strays < self.stray_budget {
                 next.states.push(State { cell: moved, slice: state.slice, strays: state.strays + 1 });
+                trail.child(number, None);
             }
             has_branched |= next.states.len() > before + 1;
             if next.states.len() > self.cell_budget {
@@ -173,7 +209,7 @@ impl Solver<'_> {
         }
         // From a single start every cell stems from another landmark; covered cells can only arise after a branching.
         if has_branched && set.states.len() > travel.len() {
-            next.drop_covered();
+            trail.replaced(&next.drop_covered());
         }
         Some(next)
     }

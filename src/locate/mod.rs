@@ -18,15 +18,21 @@
 //!
 //! *References.* [`crate::bibliography::BERTSEKAS_RHODES_1971`], [`crate::bibliography::JAULIN_2001`].
 
+mod backward;
 pub mod cell;
 mod composed;
+mod corridor;
 mod feasible;
 mod forward;
+mod history;
 mod steps;
 mod watch;
 
+pub use backward::{SHRINK_M, SWEEPS_MAX, Sweeps};
 pub use composed::{ComposedOutcome, ComposedRun};
+pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
+pub use history::{Candidates, History};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
 pub use watch::{FixHistory, FixWatch};

@@ -119,6 +119,11 @@ pub(super) struct TravelError {
 }
 
 impl TravelError {
+    /// Under `bounds`, one for each slice of the bias.
+    pub fn by_slice(bounds: &Bounds) -> Vec<Self> {
+        bounds.bias_slices().into_iter().map(|bias| Self::new(bias, &bounds.dead_reckoning)).collect()
+    }
+
     /// Under `bounds`, for one slice of the bias.
     fn new(bias: Interval, dead_reckoning: &DeadReckoning) -> Self {
         Self {

@@ -346,7 +346,66 @@ pub struct CheckReport {
     pub notices: Vec<crate::problem::Notice>,
 }
 
-/// One event of a traced dive.
+/// What is known about one detection of a traced dive once all of its detections have been seen.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct HindsightEvent {
+    /// Cells in the feasible set.
+    pub cells: usize,
+    /// Number of places.
+    pub places: usize,
+    /// Spread, m.
+    pub spread_m: f64,
+    /// The landmark that was certainly seen, when there is only one and the detection cannot be a stray.
+    pub identified: Option<String>,
+    /// Number of landmarks that may have been seen.
+    pub candidate_count: usize,
+    /// Identifiers of these landmarks, at most [`TRACE_CANDIDATES_MAX`] of them.
+    pub candidates: Vec<String>,
+    /// Whether the detection may be a stray. (With a stray budget that the dive does not use up, any may be.)
+    pub may_be_stray: bool,
+    /// Whether the true position lies in the feasible set.
+    pub truth_inside: bool,
+    /// Corners of each feasible cell, at most [`TRACE_CELLS_MAX`] of them.
+    pub cell_corners: Vec<Vec<LocalPoint>>,
+}
+
+/// Most candidates that a trace names per detection.
+pub const TRACE_CANDIDATES_MAX: usize = 20;
+
+/// What is known about a traced dive once all of its detections have been seen.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct Hindsight {
+    /// Sweeps made over the dive, backward and forward counted one by one.
+    pub sweeps: usize,
+    /// Whether the last sweep changed nothing worth another.
+    pub at_rest: bool,
+    /// Number of places where the vehicle may have been when it was lost.
+    pub start_places: usize,
+    /// Spread of the positions where the vehicle may have been when it was lost, m.
+    pub start_spread_m: f64,
+    /// Longest interval of the corridor, metres of reported travel.
+    pub corridor_spacing_m: f64,
+    /// Where the vehicle may have been at every instant, interval by interval, in order.
+    pub corridor: Vec<CorridorReport>,
+}
+
+/// Where the vehicle may have been during an interval: at every instant of it, inside one of the polygons.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct CorridorReport {
+    /// Reported distance run since the vehicle was lost at the start of the interval, m.
+    pub reported_from_m: f64,
+    /// Reported distance run since the vehicle was lost at the end of the interval, m.
+    pub reported_to_m: f64,
+    /// Time since the vehicle was lost at the start of the interval, s.
+    pub from_s: f64,
+    /// Time since the vehicle was lost at the end of the interval, s.
+    pub to_s: f64,
+    /// Corners of each polygon, in order. All of them together hold the vehicle.
+    pub polygons: Vec<Vec<LocalPoint>>,
+}
+
+/// One event of a traced dive. Figures outside of `hindsight` use what was seen so far; those inside use all that was
+/// seen on the dive.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct TraceEvent {
     /// Number from 1.
@@ -379,6 +438,8 @@ pub struct TraceEvent {
     pub truth_inside: bool,
     /// Corners of each feasible cell, at most [`TRACE_CELLS_MAX`] of them.
     pub cell_corners: Vec<Vec<LocalPoint>>,
+    /// What is known about this detection once the whole dive has been seen; none when nothing explains the dive.
+    pub hindsight: Option<HindsightEvent>,
 }
 
 /// Most cells whose corners a trace writes per event.
@@ -410,6 +471,9 @@ pub struct TraceReport {
     pub search_area: Vec<LocalPoint>,
     /// The events.
     pub events: Vec<TraceEvent>,
+    /// What is known once the whole dive has been seen; none when nothing explains the dive. When the solver ran out of
+    /// its cell budget, the whole dive means the detections up to there.
+    pub hindsight: Option<Hindsight>,
     /// For the chart.
     #[serde(skip)]
     pub landmarks: Vec<ChartLandmark>,

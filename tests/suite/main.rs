@@ -2,7 +2,9 @@
 #![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
+mod backward;
 mod cli;
+mod corridor;
 mod craters;
 mod demo;
 mod determinism;
