@@ -28,6 +28,7 @@ use super::feasible::{Feasible, State};
 use super::forward::SolverMap;
 use super::history::History;
 use super::steps::TravelError;
+use super::unseen::Missed;
 use crate::detect::{LogEvent, ReportedPiece};
 use crate::interval::larger;
 
@@ -166,11 +167,8 @@ impl Span {
 /// rounding, which the resolution allowance covers.
 fn cut(piece: &ReportedPiece, spacing_m: f64) -> impl Iterator<Item = ReportedPiece> + use<> {
     let parts = larger((piece.length_m / spacing_m).ceil(), 1.0);
-    let part = ReportedPiece {
-        length_m: piece.length_m / parts,
-        duration_s: piece.duration_s / parts,
-        ..*piece
-    };
+    let part =
+        ReportedPiece { length_m: piece.length_m / parts, duration_s: piece.duration_s / parts, ..*piece };
     std::iter::repeat_n(part, parts as usize)
 }
 
@@ -210,8 +208,12 @@ fn accumulated<'a>(error: &TravelError, travels: impl Iterator<Item = &'a Reache
 
 /// Drops cells inside others and joins near ones while there are too many.
 fn thinned(cells: Vec<Cell>, cells_max: usize) -> Vec<Cell> {
-    let mut set =
-        Feasible { states: cells.into_iter().map(|cell| State { cell, slice: 0, strays: 0 }).collect() };
+    let mut set = Feasible {
+        states: cells
+            .into_iter()
+            .map(|cell| State { cell, slice: 0, strays: 0, missed: Missed::NONE })
+            .collect(),
+    };
     set.drop_covered();
     let mut cells: Vec<Cell> = set.states.into_iter().map(|state| state.cell).collect();
     let mut joined = Vec::with_capacity(cells.len().min(cells_max));

@@ -1,6 +1,7 @@
 //! The feasible set: a union of cells, its spread, and its places.
 
 use super::cell::Cell;
+use super::unseen::Missed;
 use crate::frame::LocalPoint;
 use crate::interval::{Box2, Interval};
 
@@ -13,6 +14,8 @@ pub struct State {
     pub slice: u16,
     /// Detections left unexplained so far.
     pub strays: u8,
+    /// Landmarks certainly passed without being detected so far.
+    pub missed: Missed,
 }
 
 /// All positions that some admissible history explains, as a union of cells.
@@ -46,7 +49,8 @@ impl Feasible {
         (0..group.len()).filter(|&i| group[i] == i).count()
     }
 
-    /// Drops every cell that lies inside another one with the same slice and no more strays. The union is unchanged,
+    /// Drops every cell that lies inside another one with the same slice and no more strays, which missed no
+    /// other landmarks. The union is unchanged,
     /// and so is all that can follow from it, because moving and matching are monotone.
     ///
     /// Returns, for every state before, the number of the state that stands for it now: itself, or one that holds it.
@@ -75,6 +79,7 @@ impl Feasible {
                 *end >= hi
                     && other.slice == state.slice
                     && other.strays <= state.strays
+                    && other.missed.is_within(&state.missed)
                     && other.cell.contains_cell(&state.cell)
             });
             stands_for[number as usize] = match cover {
@@ -137,6 +142,7 @@ mod tests {
             cell: Cell::from_box(Box2::around(LocalPoint::new(east_m, north_m), half_m, half_m)),
             slice: 0,
             strays,
+            missed: Missed::NONE,
         }
     }
 

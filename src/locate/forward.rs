@@ -4,6 +4,7 @@ use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches, box_reaches};
 use super::feasible::{Feasible, State};
 use super::history::{History, NoTrail, Trail};
 use super::steps::{Look, Step};
+use super::unseen::{Missed, Passage, Silence};
 use crate::interval::Box2;
 use crate::map::Landmark;
 use crate::map::index::LandmarkIndex;
@@ -12,6 +13,7 @@ use crate::map::index::LandmarkIndex;
 #[derive(Debug)]
 pub struct SolverMap {
     index: LandmarkIndex,
+    boxes: Vec<Box2>,
     reaches: Vec<Reaches>,
 }
 
@@ -20,6 +22,7 @@ impl SolverMap {
     pub fn new(landmarks: &[Landmark]) -> Self {
         Self {
             index: LandmarkIndex::new(landmarks),
+            boxes: landmarks.iter().map(Landmark::bounds).collect(),
             reaches: landmarks.iter().map(|landmark| box_reaches(landmark.bounds())).collect(),
         }
     }
@@ -94,6 +97,10 @@ pub struct Solver<'a> {
     pub cell_budget: usize,
     /// Detections that may be left unexplained.
     pub stray_budget: u8,
+    /// What it means that nothing was seen; none when silence is no evidence.
+    pub silence: Option<&'a Silence>,
+    /// Landmarks that may be certainly passed without being detected (used with `silence` only).
+    pub miss_budget: u8,
     /// Distance within which cells count as one place, metres.
     pub fix_size_m: f64,
 }
@@ -142,24 +149,30 @@ impl Solver<'_> {
                     cell: self.search_area,
                     slice: u16::try_from(slice).expect("fewer than 65 536 slices"),
                     strays: 0,
+                    missed: Missed::NONE,
                 })
                 .collect(),
         };
         trail.start(&set);
         let mut outcome = Outcome::default();
         let mut travel = vec![[0.0; DIRECTION_COUNT]; slices];
+        let mut passages = vec![Some(Passage::NONE); slices];
         for (number, step) in steps.iter().enumerate() {
             for (total, more) in travel.iter_mut().zip(&step.travel) {
                 add_reaches(total, more);
             }
+            for (so_far, more) in passages.iter_mut().zip(&step.passage) {
+                *so_far = so_far.take().zip(more.as_ref()).map(|(passage, more)| passage.then(more));
+            }
             let Some(looks) = step.sighting.as_ref().filter(|_| uses(number)) else { continue };
-            let Some(next) = self.advance(&set, &travel, looks, trail) else {
+            let Some(next) = self.advance(&set, &travel, &passages, looks, trail) else {
                 outcome.is_undecided = true;
                 break;
             };
             set = next;
             trail.event(number, &travel, looks, &set);
             travel.fill([0.0; DIRECTION_COUNT]);
+            passages.fill(Some(Passage::NONE));
             let summary = EventSummary {
                 step: number,
                 along_m: step.along_m,
@@ -181,6 +194,7 @@ impl Solver<'_> {
         &self,
         set: &Feasible,
         travel: &[Reaches],
+        passages: &[Option<Passage>],
         looks: &[Option<Look>],
         trail: &mut impl Trail,
     ) -> Option<Feasible> {
@@ -189,6 +203,8 @@ impl Solver<'_> {
         for (number, state) in set.states.iter().enumerate() {
             let slice = usize::from(state.slice);
             let moved = state.cell.minkowski_sum(&travel[slice]);
+            let Some(missed) = self.missed(state, &moved, passages[slice].as_ref()) else { continue };
+            let state = &State { missed, ..*state };
             let before = next.states.len();
             if let Some(look) = &looks[slice] {
                 self.map.for_each_vantage(moved.bounding_box(), look, |landmark, vantage| {
@@ -199,7 +215,7 @@ impl Solver<'_> {
                 });
             }
             if state.strays < self.stray_budget {
-                next.states.push(State { cell: moved, slice: state.slice, strays: state.strays + 1 });
+                next.states.push(State { cell: moved, strays: state.strays + 1, ..*state });
                 trail.child(number, None);
             }
             has_branched |= next.states.len() > before + 1;
@@ -212,5 +228,13 @@ impl Solver<'_> {
             trail.replaced(&next.drop_covered());
         }
         Some(next)
+    }
+
+    /// The landmarks missed by a state after it has moved; `None` when they are more than the budget.
+    fn missed(&self, state: &State, moved: &Cell, passage: Option<&Passage>) -> Option<Missed> {
+        let (Some(silence), Some(passage)) = (self.silence, passage) else { return Some(state.missed) };
+        let map = self.map;
+        let ends = [&state.cell, moved];
+        silence.pass(&map.boxes, &map.index, ends, passage, state.missed, self.miss_budget)
     }
 }

@@ -26,6 +26,7 @@ mod feasible;
 mod forward;
 mod history;
 mod steps;
+mod unseen;
 mod watch;
 
 pub use backward::{SHRINK_M, SWEEPS_MAX, Sweeps};
@@ -35,4 +36,5 @@ pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use unseen::{MISSES_MAX, Missed, Passage, Silence};
 pub use watch::{FixHistory, FixWatch};

@@ -15,6 +15,7 @@
 use crate::detect::{Log, ReportedPiece, Sighting};
 use crate::interval::{Box2, Interval, larger};
 use crate::locate::cell::{DIRECTION_COUNT, Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
+use crate::locate::unseen::Passage;
 use crate::vehicle::{DeadReckoning, Sonar, horizontal_range};
 
 /// Reported lengths and ranges are taken as exact to this, metres: an allowance for the rounding of reported values,
@@ -80,6 +81,8 @@ pub struct Step {
     pub along_m: f64,
     /// Reaches of the displacement since the event before, by slice.
     pub travel: Vec<Reaches>,
+    /// The travel as a passage by landmarks that were not seen, by slice; none where the sonar was blind on the way.
+    pub passage: Vec<Option<Passage>>,
     /// The sighting, by slice; none at a mark. An inner `None` means that no relative position explains the
     /// measurement.
     pub sighting: Option<Vec<Option<Look>>>,
@@ -95,6 +98,10 @@ pub fn steps(log: &Log, bounds: &Bounds) -> Vec<Step> {
             travel: slices
                 .iter()
                 .map(|&bias| TravelError::new(bias, &bounds.dead_reckoning).reaches(&event.travel))
+                .collect(),
+            passage: slices
+                .iter()
+                .map(|&bias| TravelError::new(bias, &bounds.dead_reckoning).passage(&event.travel))
                 .collect(),
             sighting: event
                 .sighting
@@ -132,6 +139,23 @@ impl TravelError {
             drift_mps: dead_reckoning.drift_mps,
             slack_m: RESOLUTION_M,
         }
+    }
+
+    /// The passage over reported pieces; none when the sonar is blind on one of them.
+    ///
+    /// Every part of the travel is a part of each piece in turn, so the sum of the hulls conv{0, travel of the piece} holds
+    /// its displacement.
+    fn passage(&self, pieces: &[ReportedPiece]) -> Option<Passage> {
+        let mut passage = Passage::NONE;
+        for piece in pieces {
+            if piece.is_blind {
+                return None;
+            }
+            let heading = Interval::point(piece.heading_rad) + self.heading;
+            let within = self.reaches(std::slice::from_ref(piece)).map(|reach| larger(reach, 0.0));
+            passage = passage.then(&Passage { heading, within });
+        }
+        Some(passage)
     }
 
     /// Reaches of the displacements that reported pieces allow.

@@ -92,6 +92,8 @@ pub struct Parameters {
     pub stray_budget: u8,
     /// Most landmarks per run that may be missed.
     pub miss_budget: u8,
+    /// Whether "nothing seen" is used as evidence.
+    pub nothing_seen: bool,
     /// Area of the search area, km².
     pub search_area_km2: f64,
     /// Descent scatter radius, m.

@@ -21,5 +21,6 @@ mod render;
 #[path = "support/reports.rs"]
 mod reports;
 mod sets;
+mod silence;
 mod soundness;
 mod support;

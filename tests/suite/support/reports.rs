@@ -47,6 +47,7 @@ pub fn parameters() -> Parameters {
         strays_per_km: 0.0,
         stray_budget: 0,
         miss_budget: 0,
+        nothing_seen: false,
         sonar_kind: "side-looking",
         range_min_m: 10.0,
         range_max_m: 75.0,

@@ -80,6 +80,8 @@ impl RandomScene {
             search_area: Cell::around_points(&self.search_area),
             cell_budget: 200_000,
             stray_budget: 0,
+            silence: None,
+            miss_budget: 0,
             fix_size_m: self.fix_size_m,
         }
     }
