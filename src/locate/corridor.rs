@@ -166,11 +166,8 @@ impl Span {
 /// rounding, which the resolution allowance covers.
 fn cut(piece: &ReportedPiece, spacing_m: f64) -> impl Iterator<Item = ReportedPiece> + use<> {
     let parts = larger((piece.length_m / spacing_m).ceil(), 1.0);
-    let part = ReportedPiece {
-        length_m: piece.length_m / parts,
-        duration_s: piece.duration_s / parts,
-        ..*piece
-    };
+    let part =
+        ReportedPiece { length_m: piece.length_m / parts, duration_s: piece.duration_s / parts, ..*piece };
     std::iter::repeat_n(part, parts as usize)
 }
 
