@@ -4,9 +4,10 @@ use super::Setup;
 use crate::detect::{DrawnErrors, LogEvent, simulate};
 use crate::frame::LocalPoint;
 use crate::locate::cell::disc_reaches;
-use crate::locate::{CorridorGrain, Feasible, History, Solver, steps};
+use crate::locate::{CorridorGrain, Feasible, FixWatch, History, Outcome, Solver, Step, steps};
 use crate::report::{
-    CorridorReport, Hindsight, HindsightEvent, TRACE_CANDIDATES_MAX, TRACE_CELLS_MAX, TraceEvent, TraceReport,
+    Contradiction, CorridorReport, Hindsight, HindsightEvent, TRACE_CANDIDATES_MAX, TRACE_CELLS_MAX,
+    TraceEvent, TraceReport,
 };
 use crate::track::plan::{Plan, wrap};
 
@@ -87,7 +88,10 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
     let fix_size_m = dive.scoring.fix_size_m;
     let mut events = Vec::new();
     let solver = setup.solver();
-    let (outcome, history) = solver.run_recorded(&steps[mark + 1..], |summary, set| {
+    let ahead = &steps[mark + 1..];
+    let mut watch = FixWatch::new(ahead, fix_size_m);
+    let (outcome, history) = solver.run_recorded(ahead, |summary, set| {
+        watch.see(summary.step, set, summary.spread_m);
         let at = mark + 1 + summary.step;
         let (event, truth) = (&simulated.log.events[at], simulated.truth[at]);
         let sighting = event.sighting.expect("the solver reports sightings only");
@@ -114,6 +118,12 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
     });
     let hindsight =
         look_back(setup, &solver, history, &simulated.log.events[mark + 1..], request, &mut events);
+    let contradiction = outcome
+        .contradiction()
+        .map(|at| contradiction(&solver, ahead, &outcome, at.along_m - request.from_m));
+    let fixes = watch.finish(!outcome.is_undecided && contradiction.is_none());
+    // An empty set is never a fix, and neither is what came before it: the bounds did not hold.
+    let first_along_m = fixes.first_along_m.filter(|_| contradiction.is_none());
     Ok(TraceReport {
         provenance: setup.provenance("fixability.trace"),
         parameters: setup.parameters(),
@@ -121,7 +131,10 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
         from_m: request.from_m,
         draw: request.draw,
         error_shape: shape,
-        fix_distance_m: outcome.first_fix_along_m(fix_size_m).map(|along_m| along_m - request.from_m),
+        fix_distance_m: first_along_m.map(|along_m| along_m - request.from_m),
+        lasting_fix_distance_m: fixes.lasting_along_m.map(|along_m| along_m - request.from_m),
+        relapses: fixes.relapses,
+        contradiction,
         undecided: outcome.is_undecided,
         path: plan.path(request.from_m, plan.length_m),
         search_area: dive.start.search_area.clone(),
@@ -129,6 +142,24 @@ pub fn trace(setup: &Setup<'_>, request: &TraceRequest) -> Result<TraceReport, T
         hindsight,
         landmarks: setup.chart_landmarks(),
     })
+}
+
+/// Largest stray budget beyond the stated one that is tried on a contradiction.
+const EXTRA_STRAYS_MAX: u8 = 6;
+
+/// Finds the smallest stray budget that explains the whole dive.
+fn contradiction(solver: &Solver<'_>, steps: &[Step], outcome: &Outcome, run_m: f64) -> Contradiction {
+    let tried_up_to = solver.stray_budget.saturating_add(EXTRA_STRAYS_MAX);
+    let explains = |&stray_budget: &u8| {
+        let outcome = Solver { stray_budget, ..*solver }.run(steps, |_, _| {});
+        !outcome.is_undecided && outcome.contradiction().is_none()
+    };
+    Contradiction {
+        event: outcome.events.len(),
+        run_m,
+        smallest_stray_budget: (solver.stray_budget + 1..=tried_up_to).find(explains),
+        tried_up_to,
+    }
 }
 
 /// Sweeps over the dive's history and notes what is then known, for each of `events` and in all. None, and nothing

@@ -189,11 +189,11 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     }
     let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
-    if report.events.iter().any(|event| event.spread_m.is_none()) {
-        print_notices(
-            [&warning("no position explains the detections: the bounds contradict the data".to_owned())],
-            common.quiet,
-        );
+    if report.contradiction.is_some() {
+        let text = "no position explains the detections: an error bound, the map or the stray budget does not hold. With \
+                    more strays than the budget a set that is wrong but not empty is possible too"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
         return Ok(Exit::Contradiction);
     }
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })

@@ -3,7 +3,9 @@
 use comfy_table::presets::ASCII_FULL_CONDENSED;
 use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
-use crate::report::{CheckReport, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport};
+use crate::report::{
+    CheckReport, Contradiction, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport,
+};
 
 /// The ranking of the lines, best first. Figures are estimates from simulated dives.
 pub fn lines_table(report: &LinesReport) -> String {
@@ -92,10 +94,18 @@ pub fn trace_table(report: &TraceReport) -> String {
         ];
         add(&mut table, row, header.len() - 1);
     }
-    let verdict = match (report.undecided, report.fix_distance_m) {
-        (true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
-        (false, Some(run)) => format!("fix after {run:.1} m"),
-        (false, None) => "no fix before the line ends".to_owned(),
+    let verdict = match (&report.contradiction, report.undecided, report.fix_distance_m) {
+        (Some(contradiction), ..) => contradicted(contradiction),
+        (None, true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
+        (None, false, Some(run)) => {
+            let lasting = match report.lasting_fix_distance_m {
+                Some(lasting) if lasting == run => "lasting to the end of the line".to_owned(),
+                Some(lasting) => format!("lost again, then lasting from {lasting:.1} m"),
+                None => "lost again before the end of the line".to_owned(),
+            };
+            format!("fix after {run:.1} m, {lasting}")
+        }
+        (None, false, None) => "no fix before the line ends".to_owned(),
     };
     let line = printable(&report.line);
     let mut text = format!(
@@ -214,6 +224,18 @@ pub fn check_text(report: &CheckReport) -> String {
     }
     text.push_str(&format!("{}\n\n{}\n", table.trim_fmt(), report.provenance.caution));
     text
+}
+
+/// A contradiction in words.
+fn contradicted(contradiction: &Contradiction) -> String {
+    let budget = match contradiction.smallest_stray_budget {
+        Some(budget) => format!("a stray budget of {budget} would explain the dive"),
+        None => format!("no stray budget up to {} explains the dive", contradiction.tried_up_to),
+    };
+    format!(
+        "no position explains the detections from event {} ({:.1} m) on: the bounds do not hold; {budget}",
+        contradiction.event, contradiction.run_m
+    )
 }
 
 /// An empty table; all columns but number `left` are set to the right.

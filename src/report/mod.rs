@@ -447,6 +447,19 @@ pub struct TraceEvent {
 /// Most cells whose corners a trace writes per event.
 pub const TRACE_CELLS_MAX: usize = 2000;
 
+/// The bounds contradict the data: no position explains the detections up to an event.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+pub struct Contradiction {
+    /// Number of the first event at which nothing is left.
+    pub event: usize,
+    /// Distance run until then, m.
+    pub run_m: f64,
+    /// Smallest stray budget with which some position explains the whole dive; none when none of those tried does.
+    pub smallest_stray_budget: Option<u8>,
+    /// Largest stray budget tried.
+    pub tried_up_to: u8,
+}
+
 /// The result of `trace`.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct TraceReport {
@@ -465,6 +478,12 @@ pub struct TraceReport {
     pub error_shape: crate::dive::ErrorShape,
     /// Fix distance, m; none without a fix.
     pub fix_distance_m: Option<f64>,
+    /// Distance to a fix that lasts to the end of the line, m; none without one.
+    pub lasting_fix_distance_m: Option<f64>,
+    /// Number of times a fix was lost again.
+    pub relapses: usize,
+    /// Where the bounds contradict the data; none where some position explains every detection.
+    pub contradiction: Option<Contradiction>,
     /// Whether the solver ran out of its cell budget.
     pub undecided: bool,
     /// Planned track from start to end, turns included.

@@ -310,6 +310,9 @@ pub fn trace(count: usize) -> TraceReport {
     let mut parameters = parameters();
     parameters.landmarks = marks.len();
     TraceReport {
+        lasting_fix_distance_m: None,
+        relapses: 0,
+        contradiction: None,
         provenance: provenance("fixability.trace"),
         parameters,
         line: "B".to_owned(),
