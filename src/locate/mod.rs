@@ -20,6 +20,7 @@
 
 mod backward;
 pub mod cell;
+mod certain;
 mod composed;
 mod corridor;
 mod feasible;
