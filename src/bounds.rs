@@ -351,14 +351,14 @@ pub const KEYS: &[Key] = &[
     key(
         "budget",
         "strays",
-        Kind::Whole(Range::closed(0.0, 20.0, "")),
+        Kind::Whole(Range::closed(0.0, 10.0, "")),
         Default("0"),
         "Most detections per run that may be of something that is not on the map.",
     ),
     key(
         "budget",
         "misses",
-        Kind::Whole(Range::closed(0.0, 20.0, "")),
+        Kind::Whole(Range::closed(0.0, 4.0, "")),
         Default("0"),
         "Most landmarks per run that may be missed although they are certainly inside the swath.",
     ),

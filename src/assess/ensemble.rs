@@ -16,6 +16,8 @@ pub(super) struct Run {
     pub lasting_m: Option<f64>,
     /// Whether a fix was lost again.
     pub has_relapse: bool,
+    /// Whether no position explained the log at some event (only beyond the stray budget). Such a run has no fix.
+    pub is_contradictory: bool,
     /// Whether the first fix does not hold the true position (only beyond the stray budget).
     pub is_wrong: bool,
     /// Whether the solver ran out of its cell budget before a fix.
@@ -57,14 +59,17 @@ pub(super) fn run_line(
                         let truth = dive.truth[mark + 1 + event.step].position;
                         is_wrong |= is_first_fix && !set.contains(truth);
                     });
-                    let is_complete = !outcome.is_undecided && outcome.contradiction().is_none();
-                    let history = watch.finish(is_complete);
-                    let fix_m = history.first_along_m.map(|along| along - start_m);
+                    let is_contradictory = outcome.contradiction().is_some();
+                    let history = watch.finish(!outcome.is_undecided && !is_contradictory);
+                    // An empty set is never a fix, and neither is what came before it: the bounds did not hold.
+                    let fix_m =
+                        history.first_along_m.filter(|_| !is_contradictory).map(|along| along - start_m);
                     Run {
                         fix_m,
                         lasting_m: history.lasting_along_m.map(|along| along - start_m),
                         has_relapse: history.relapses > 0,
-                        is_wrong,
+                        is_contradictory,
+                        is_wrong: is_wrong && !is_contradictory,
                         is_undecided: outcome.is_undecided && fix_m.is_none(),
                         curve: outcome
                             .events

@@ -5,7 +5,6 @@ use super::guarantee::{guaranteed_fixes, over_line, terms};
 use super::statistics::{at_rank_of_share, percentile, share, sort_missing_last};
 use super::{Setup, rank};
 use crate::detect::expected_detections;
-use crate::interval::smaller;
 use crate::report::{EstimatedFix, LineReport, LinesReport, ProfilePoint, SegmentReport};
 use crate::track::Line;
 use crate::track::plan::Plan;
@@ -37,7 +36,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
         .iter()
         .enumerate()
         .map(|(k, &start_m)| {
-            let end_m = smaller(start_m + setup.dive.scoring.segment_m, plan.length_m);
+            let end_m = starts_m.get(k + 1).copied().unwrap_or(plan.length_m);
             let runs: Vec<&Run> = draws.iter().map(|runs| &runs[k]).collect();
             SegmentReport {
                 number: k + 1,
@@ -92,6 +91,7 @@ fn estimated(runs: &[&Run], setup: &Setup<'_>) -> EstimatedFix {
         lasting_median_m: percentile(&lasting, 0.5, dives),
         lasting_p95_m: percentile(&lasting, 0.95, dives),
         relapse_share: share_of(|run| run.has_relapse),
+        contradiction_share: share_of(|run| run.is_contradictory),
         wrong_fix_share: share_of(|run| run.is_wrong),
         undecided_share: share_of(|run| run.is_undecided),
     }

@@ -1,6 +1,6 @@
 //! Scores: what is guaranteed of a line, what simulated dives say about it, and one dive in detail.
 //!
-//! What comes from [`guarantee`] is true for every error within the bounds. Everything else is *estimated* from
+//! What comes from `guarantee.rs` is true for every error within the bounds. Everything else is *estimated* from
 //! simulated dives and carries a confidence interval. The two stand in fields of their own.
 
 mod check;
@@ -15,10 +15,14 @@ pub use check::{check, line_notices};
 pub use line::score_lines;
 pub use trace::{TraceError, TraceRequest, trace};
 
+use geo::{Contains, Coord, LineString, Polygon, Rect};
+
 use crate::detect::Scene;
 use crate::dive::{Dive, ErrorShape};
+use crate::frame::LocalPoint;
 use crate::locate::cell::Cell;
-use crate::locate::{Bounds, Solver, SolverMap};
+use crate::locate::{Bounds, Silence, Solver, SolverMap};
+use crate::map::Landmark;
 use crate::report::{ChartLandmark, Parameters, Provenance};
 use crate::track::plan::Plan;
 use crate::vehicle::SonarKind;
@@ -29,12 +33,17 @@ pub struct Setup<'a> {
     /// What was read.
     pub dive: &'a Dive,
     map: SolverMap,
+    silence: Option<Silence>,
 }
 
 impl<'a> Setup<'a> {
     /// Indexes the map of `dive`.
     pub fn new(dive: &'a Dive) -> Self {
-        Self { dive, map: SolverMap::new(&dive.landmarks) }
+        let silence = dive.nothing_seen_inside.as_ref().and_then(|corners| {
+            let is_certain = dive.landmarks.iter().map(|landmark| is_inside(landmark, corners)).collect();
+            Silence::new(is_certain, dive.sonar)
+        });
+        Self { dive, map: SolverMap::new(&dive.landmarks), silence }
     }
 
     /// What a simulated dive needs.
@@ -56,6 +65,8 @@ impl<'a> Setup<'a> {
             search_area: Cell::around_points(&self.dive.start.search_area),
             cell_budget: self.dive.scoring.cell_budget,
             stray_budget: self.dive.budget.strays,
+            silence: self.silence.as_ref(),
+            miss_budget: self.dive.budget.misses,
             fix_size_m: self.dive.scoring.fix_size_m,
         }
     }
@@ -82,7 +93,8 @@ impl<'a> Setup<'a> {
 
     /// Distances along a track of `length_m` at which segments start.
     fn segment_starts(&self, length_m: f64) -> Vec<f64> {
-        let count = (length_m / self.dive.scoring.segment_m).ceil();
+        // A rest of less than half a segment joins the segment before it.
+        let count = (length_m / self.dive.scoring.segment_m).round().clamp(1.0, f64::INFINITY);
         (0..count as usize).map(|k| k as f64 * self.dive.scoring.segment_m).collect()
     }
 
@@ -152,6 +164,7 @@ impl<'a> Setup<'a> {
             half_width_max_m: half_widths().max_by(f64::total_cmp),
             stray_budget: dive.budget.strays,
             miss_budget: dive.budget.misses,
+            nothing_seen: self.silence.is_some(),
             search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
             scatter_m: dive.start.scatter_m,
             fix_size_m: scoring.fix_size_m,
@@ -162,6 +175,16 @@ impl<'a> Setup<'a> {
             cell_budget: scoring.cell_budget,
         }
     }
+}
+
+/// Whether a landmark's whole box lies inside a polygon.
+fn is_inside(landmark: &Landmark, corners: &[LocalPoint]) -> bool {
+    let ring = corners.iter().map(|p| Coord { x: p.east_m, y: p.north_m }).collect();
+    let polygon = Polygon::new(LineString::new(ring), vec![]);
+    let b = landmark.bounds();
+    let low = Coord { x: b.east.lo(), y: b.north.lo() };
+    let high = Coord { x: b.east.hi(), y: b.north.hi() };
+    polygon.contains(&Rect::new(low, high).to_polygon())
 }
 
 /// Radians as the degrees that a user would type: rounded to 10⁻⁹°, so that 30° does not come back as 29.999999999999996.

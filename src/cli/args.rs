@@ -18,9 +18,9 @@ Exit codes:
   5    undecided: the solver ran out of its cell budget in some dives
   130  interrupted
 
-Planning aid, not for navigation. Results hold only while the stated error bounds hold and the map is as
-described; they are no statement that ground is clear of objects. The vehicle's safety case, local
-regulations and qualified personnel decide.";
+Planning aid, not for navigation. Results hold only while the stated error bounds hold and the map is as described; \
+they are no statement that ground is clear of objects. The vehicle's safety case, local regulations and qualified \
+personnel decide.";
 
 /// Before the dive: how soon, on which line, can the vehicle find itself again from look-alike landmarks?
 #[derive(Debug, Parser)]
@@ -47,7 +47,7 @@ pub struct Common {
     #[arg(long, global = true)]
     pub force: bool,
     /// Seed of the simulated dives, in place of the dive file's
-    #[arg(long, global = true, value_name = "NUMBER")]
+    #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u64).range(..=9_007_199_254_740_992))]
     pub seed: Option<u64>,
     /// Threads to use; results do not depend on it [default: all cores]
     #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..))]
@@ -80,16 +80,18 @@ pub enum Command {
         #[arg(long, value_enum, value_name = "KEY")]
         rank_by: Option<RankBy>,
         /// Simulated dives per line, in place of the dive file's
-        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u32).range(1..))]
+        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u32).range(1..=100_000))]
         draws: Option<u32>,
-        /// Exit with code 1 unless the first-ranked line fixes within the required distance in this share of dives
+        /// Exit with code 1 unless this share of the first-ranked line has a guaranteed fix within the required distance
         #[arg(long, value_name = "SHARE", value_parser = share)]
         require: Option<f64>,
     },
     /// Follow one simulated dive of one line, detection by detection
     ///
     /// Shows after each detection how many places are left, how far apart they lie, and whether the true position is
-    /// among them. With --out, writes trace.json and trace.png.
+    /// among them; then what is known of each detection in hindsight, once the whole dive has been seen: the places that
+    /// were possible, and which landmark it must have been. With --out, writes trace.json and trace.png. The JSON also
+    /// has the corridor: where the vehicle may have been at every instant.
     Trace {
         /// The dive file (TOML)
         dive: PathBuf,
@@ -97,11 +99,14 @@ pub enum Command {
         #[arg(long, value_name = "NAME")]
         line: Option<String>,
         /// Distance along the line at which the vehicle is lost, metres
-        #[arg(long, value_name = "METRES", default_value_t = 0.0)]
+        #[arg(long, value_name = "METRES", default_value_t = 0.0, allow_negative_numbers = true)]
         from_m: f64,
         /// Number of the simulated dive, from 0
         #[arg(long, value_name = "NUMBER", default_value_t = 0)]
         draw: usize,
+        /// Longest interval of the corridor in the JSON, metres of reported travel
+        #[arg(long, value_name = "METRES", default_value_t = 10.0, value_parser = spacing)]
+        corridor_m: f64,
         /// Folder for trace.json and trace.png (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
@@ -111,6 +116,14 @@ pub enum Command {
         /// The shell
         shell: Shell,
     },
+}
+
+/// Parses the length of a corridor interval. Below a decimetre the file would only grow.
+fn spacing(text: &str) -> Result<f64, String> {
+    match text.parse::<f64>() {
+        Ok(spacing) if (0.1..=10_000.0).contains(&spacing) => Ok(spacing),
+        _ => Err("accepted: a distance from 0.1 to 10000 m, such as 10".to_owned()),
+    }
 }
 
 /// Parses a share between 0 and 1.

@@ -57,8 +57,13 @@ fn run(arguments: &Arguments) -> Result<Exit> {
                 LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
             lines(dive, &asked, common)
         }
-        Command::Trace { dive, line, from_m, draw, out } => {
-            let request = TraceRequest { line: line.clone(), from_m: *from_m, draw: *draw };
+        Command::Trace { dive, line, from_m, draw, corridor_m, out } => {
+            let request = TraceRequest {
+                line: line.clone(),
+                from_m: *from_m,
+                draw: *draw,
+                corridor_spacing_m: *corridor_m,
+            };
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Completions { shell } => {
@@ -134,18 +139,28 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
 fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
     if let Some(required) = require {
         let best = report.lines.iter().find(|line| line.rank == 1);
-        let reached = best.and_then(|line| line.estimated.within_required_share.value).unwrap_or(0.0);
+        let reached = best.and_then(|line| line.guaranteed).map_or(0.0, |sum| sum.within_required_share);
         if reached < required {
-            print_notices(
-                [&warning(format!(
-                    "the first-ranked line fixes within the required distance in {:.1} % of dives, below the {:.1} % asked for",
-                    100.0 * reached,
-                    100.0 * required
-                ))],
-                common.quiet,
+            let text = format!(
+                "{:.1} % of the first-ranked line has a guaranteed fix within the required distance, below the {:.1} % asked for",
+                100.0 * reached,
+                100.0 * required
             );
+            print_notices([&warning(text)], common.quiet);
             return Exit::RequirementNotMet;
         }
+    }
+    if report.lines.iter().any(|line| line.estimated.contradiction_share > 0.0) {
+        let text = "in some runs no position explained the detections: more strays were drawn than the stray budget \
+                    covers; they count as runs without a fix"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
+    }
+    if report.lines.iter().any(|line| line.estimated.wrong_fix_share > 0.0) {
+        let text = "in some runs the fix did not hold the true position: more strays were drawn than the stray budget \
+                    covers, and they spoke for a wrong place (estimated_wrong_fix_share)"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
     }
     if report.lines.iter().any(|line| line.estimated.undecided_share > 0.0) {
         print_notices([&warning(
@@ -174,11 +189,11 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     }
     let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
-    if report.events.iter().any(|event| event.spread_m.is_none()) {
-        print_notices(
-            [&warning("no position explains the detections: the bounds contradict the data".to_owned())],
-            common.quiet,
-        );
+    if report.contradiction.is_some() {
+        let text = "no position explains the detections: an error bound, the map or the stray budget does not hold. With \
+                    more strays than the budget a set that is wrong but not empty is possible too"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
         return Ok(Exit::Contradiction);
     }
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })

@@ -234,7 +234,7 @@ impl Errors for DrawnErrors {
         loop {
             // A Poisson process: exponential gaps of mean 1000 / per_km metres.
             let u: f64 = rng.random_range(0.0..1.0);
-            along_m -= (1.0 - u).ln() * 1000.0 / per_km;
+            along_m -= libm::log(1.0 - u) * 1000.0 / per_km;
             if along_m >= length_m {
                 return strays;
             }

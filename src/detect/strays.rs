@@ -17,12 +17,13 @@ pub(super) fn strays(scene: &Scene<'_>, plan: &Plan, legs: &[TrueLeg], errors: &
     if drawn.is_empty() {
         return Vec::new();
     }
-    let decoys = errors.decoy(scene.landmarks.len()).map_or_else(Vec::new, |pair| decoys(scene, legs, pair));
+    let mut decoys =
+        errors.decoy(scene.landmarks.len()).map_or_else(Vec::new, |pair| decoys(scene, legs, pair));
     drawn
         .iter()
         .filter_map(|stray| {
             let place = stop_at_mark(legs, stray.along_m);
-            if let Some(decoy) = nearest(&decoys, stray.along_m) {
+            if let Some(decoy) = take_nearest(&mut decoys, stray.along_m) {
                 return Some(decoy);
             }
             let leg = &legs[place.leg];
@@ -57,7 +58,9 @@ fn decoys(scene: &Scene<'_>, legs: &[TrueLeg], [from, to]: [usize; 2]) -> Vec<St
     stops
 }
 
-/// The decoy nearest along the track.
-fn nearest(decoys: &[Stop], along_m: f64) -> Option<Stop> {
-    decoys.iter().min_by(|a, b| (a.along_m - along_m).abs().total_cmp(&(b.along_m - along_m).abs())).copied()
+/// Takes out the decoy nearest along the track: no two strays are the same.
+fn take_nearest(decoys: &mut Vec<Stop>, along_m: f64) -> Option<Stop> {
+    let off = |stop: &Stop| (stop.along_m - along_m).abs();
+    let nearest = (0..decoys.len()).min_by(|&a, &b| off(&decoys[a]).total_cmp(&off(&decoys[b])))?;
+    Some(decoys.swap_remove(nearest))
 }

@@ -176,8 +176,8 @@ impl Site {
         findings.warn(
             None,
             format!(
-                "the site reaches {off:.2}° of longitude from the central meridian of {}, outside its zone: grid lengths \
-                 there are {scale:.5} times true lengths; check the zone",
+                "the site reaches {off:.2}° of longitude from the central meridian of {}, more than half a zone: grid \
+                 lengths there are {scale:.5} times true lengths; check that this zone is meant",
                 self.frame.name()
             ),
         );

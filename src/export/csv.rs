@@ -4,7 +4,7 @@ use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
 /// Columns every row has.
-const COLUMNS: [&str; 35] = [
+const COLUMNS: [&str; 36] = [
     "line",
     "line_rank",
     "segment",
@@ -35,6 +35,7 @@ const COLUMNS: [&str; 35] = [
     "estimated_lasting_p95_fix_low_m",
     "estimated_lasting_p95_fix_high_m",
     "estimated_relapse_share",
+    "estimated_contradiction_share",
     "estimated_wrong_fix_share",
     "undecided_share",
     "required_fix_m",
@@ -123,6 +124,7 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
     );
     row.extend([
         fix.relapse_share.to_string(),
+        fix.contradiction_share.to_string(),
         fix.wrong_fix_share.to_string(),
         fix.undecided_share.to_string(),
         report.parameters.required_fix_m.to_string(),

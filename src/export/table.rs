@@ -3,7 +3,9 @@
 use comfy_table::presets::ASCII_FULL_CONDENSED;
 use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
-use crate::report::{CheckReport, Estimate, LineReport, LinesReport, TraceReport};
+use crate::report::{
+    CheckReport, Contradiction, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport,
+};
 
 /// The ranking of the lines, best first. Figures are estimates from simulated dives.
 pub fn lines_table(report: &LinesReport) -> String {
@@ -14,7 +16,7 @@ pub fn lines_table(report: &LinesReport) -> String {
         "rank".to_owned(),
         "line".to_owned(),
         "length m".to_owned(),
-        format!("within {required} m, % of dives (95 % interval)"),
+        format!("within {required} m, % of runs (95 % interval)"),
         "median fix m".to_owned(),
         "p95 fix m".to_owned(),
         "no fix %".to_owned(),
@@ -51,7 +53,7 @@ pub fn lines_table(report: &LinesReport) -> String {
         )
     });
     format!(
-        "{}\n{terms}Estimated from {dives} simulated dives, lost at the start of any segment; p95 = 95th percentile; seed {}.\n",
+        "{}\n{terms}Estimated from {dives} simulated dives, each run from every segment start; p95 = 95th percentile; seed {}.\n",
         table.trim_fmt(),
         report.provenance.seed,
     )
@@ -69,8 +71,11 @@ pub fn trace_table(report: &TraceReport) -> String {
         "spread m",
         "fix",
         "truth inside",
+        "hindsight places",
+        "hindsight spread m",
+        "landmark in hindsight",
     ];
-    let mut table = plain(&header.map(str::to_owned), usize::MAX);
+    let mut table = plain(&header.map(str::to_owned), header.len() - 1);
     for event in &report.events {
         let yes = |flag: bool| if flag { "yes" } else { "no" }.to_owned();
         let row = vec![
@@ -83,21 +88,62 @@ pub fn trace_table(report: &TraceReport) -> String {
             event.spread_m.map_or_else(|| "empty".to_owned(), |spread| format!("{spread:.1}")),
             yes(event.is_fix),
             yes(event.truth_inside),
+            event.hindsight.as_ref().map_or_else(none, |then| then.places.to_string()),
+            event.hindsight.as_ref().map_or_else(none, |then| format!("{:.1}", then.spread_m)),
+            event.hindsight.as_ref().map_or_else(none, seen),
         ];
-        add(&mut table, row, usize::MAX);
+        add(&mut table, row, header.len() - 1);
     }
-    let verdict = match (report.undecided, report.fix_distance_m) {
-        (true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
-        (false, Some(run)) => format!("fix after {run:.1} m"),
-        (false, None) => "no fix before the line ends".to_owned(),
+    let verdict = match (&report.contradiction, report.undecided, report.fix_distance_m) {
+        (Some(contradiction), ..) => contradicted(contradiction),
+        (None, true, _) => "undecided: the solver ran out of its cell budget".to_owned(),
+        (None, false, Some(run)) => {
+            let lasting = match report.lasting_fix_distance_m {
+                Some(lasting) if lasting == run => "lasting to the end of the line".to_owned(),
+                Some(lasting) => format!("lost again, then lasting from {lasting:.1} m"),
+                None => "lost again before the end of the line".to_owned(),
+            };
+            format!("fix after {run:.1} m, {lasting}")
+        }
+        (None, false, None) => "no fix before the line ends".to_owned(),
     };
     let line = printable(&report.line);
-    format!(
+    let mut text = format!(
         "{}\nLine {line} from {:.1} m, draw {}: {verdict}.\n",
         table.trim_fmt(),
         report.from_m,
         report.draw
-    )
+    );
+    match &report.hindsight {
+        Some(hindsight) => text.push_str(&format!(
+            "In hindsight, that is once the whole dive has been seen ({} sweeps): lost at {} place{}, {:.1} m across.\n",
+            hindsight.sweeps,
+            hindsight.start_places,
+            if hindsight.start_places == 1 { "" } else { "s" },
+            hindsight.start_spread_m,
+        )),
+        None => text.push_str("No hindsight: nothing explains all of the detections.\n"),
+    }
+    text
+}
+
+/// Candidates named in the table; with more, only their number is given.
+const CANDIDATES_IN_TABLE: usize = 3;
+
+/// Which landmark a detection was in hindsight: its name, a few names, or how many it may be.
+fn seen(hindsight: &HindsightEvent) -> String {
+    let landmarks = match hindsight.candidate_count {
+        0 => "stray".to_owned(),
+        few if few <= CANDIDATES_IN_TABLE => {
+            hindsight.candidates.iter().map(|name| printable(name)).collect::<Vec<_>>().join(" or ")
+        }
+        many => format!("one of {many}"),
+    };
+    if hindsight.may_be_stray && hindsight.candidate_count > 0 {
+        format!("{landmarks}, or a stray")
+    } else {
+        landmarks
+    }
 }
 
 /// What was understood of a dive: notices, bounds in force, lines. The caution comes last.
@@ -126,9 +172,10 @@ pub fn check_text(report: &CheckReport) -> String {
     };
     text.push_str(&format!(
         "\nVehicle         {} m/s, turn radius {} m\n\
-         Dead reckoning  scale {:.3} % of distance, heading bias {:.3} deg, noise {:.3} deg, drift {} m/s (all plus or minus)\n\
+         Dead reckoning  scale {:.3} % of distance, heading bias {:.3} deg, noise {:.3} deg, drift {} m/s (all plus or minus); {} heading slices\n\
          Sonar           {}, slant range {} to {} m, {swath}, altitude {} m: horizontal {:.1} to {:.1} m\n\
-         Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}\n\
+         Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}, {} strays per km\n\
+         Budget          {} strays, {} misses per run\n\
          Landmarks       {}; {}\n\
          Start           search area {:.3} km2, descent scatter {} m\n\
          Scoring         fix size {} m, required fix distance {} m, a start every {} m, {} dives per line, seed {}\n\n",
@@ -138,6 +185,7 @@ pub fn check_text(report: &CheckReport) -> String {
         p.heading_bias_deg,
         p.heading_noise_deg,
         short(p.drift_mps),
+        p.heading_slices,
         p.sonar_kind,
         short(p.range_min_m),
         short(p.range_max_m),
@@ -149,6 +197,9 @@ pub fn check_text(report: &CheckReport) -> String {
         p.bearing_error_deg,
         short(p.altitude_error_m),
         short(p.detection_chance),
+        short(p.strays_per_km),
+        p.stray_budget,
+        p.miss_budget,
         p.landmarks,
         p.landmark_uncertainty,
         p.search_area_km2,
@@ -173,6 +224,18 @@ pub fn check_text(report: &CheckReport) -> String {
     }
     text.push_str(&format!("{}\n\n{}\n", table.trim_fmt(), report.provenance.caution));
     text
+}
+
+/// A contradiction in words.
+fn contradicted(contradiction: &Contradiction) -> String {
+    let budget = match contradiction.smallest_stray_budget {
+        Some(budget) => format!("a stray budget of {budget} would explain the dive"),
+        None => format!("no stray budget up to {} explains the dive", contradiction.tried_up_to),
+    };
+    format!(
+        "no position explains the detections from event {} ({:.1} m) on: the bounds do not hold; {budget}",
+        contradiction.event, contradiction.run_m
+    )
 }
 
 /// An empty table; all columns but number `left` are set to the right.

@@ -131,9 +131,7 @@ impl Cell {
         let mut reach = [f64::NEG_INFINITY; DIRECTION_COUNT];
         for p in points {
             let at = box_reaches(Box2::hull_of(&[*p]));
-            for i in 0..DIRECTION_COUNT {
-                reach[i] = larger(reach[i], at[i]);
-            }
+            reach = std::array::from_fn(|i| larger(reach[i], at[i]));
         }
         Self { reach }
     }
@@ -247,10 +245,7 @@ impl Cell {
     /// The smallest cell that holds both.
     #[must_use]
     pub fn hull(&self, other: &Self) -> Self {
-        let mut reach = self.reach;
-        for i in 0..DIRECTION_COUNT {
-            reach[i] = larger(reach[i], other.reach[i]);
-        }
+        let reach = std::array::from_fn(|i| larger(self.reach[i], other.reach[i]));
         Self { reach }
     }
 

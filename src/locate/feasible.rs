@@ -1,8 +1,9 @@
 //! The feasible set: a union of cells, its spread, and its places.
 
 use super::cell::Cell;
+use super::unseen::Missed;
 use crate::frame::LocalPoint;
-use crate::interval::Interval;
+use crate::interval::{Box2, Interval};
 
 /// One cell of the feasible set and the history that it stands for.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -13,6 +14,8 @@ pub struct State {
     pub slice: u16,
     /// Detections left unexplained so far.
     pub strays: u8,
+    /// Landmarks certainly passed without being detected so far.
+    pub missed: Missed,
 }
 
 /// All positions that some admissible history explains, as a union of cells.
@@ -41,65 +44,101 @@ impl Feasible {
     /// Number of places: groups of cells in which each is within `fix_size_m` of another (by their bounding boxes,
     /// which can only join groups that a finer distance would keep apart).
     pub fn places(&self, fix_size_m: f64) -> usize {
-        let mut boxes: Vec<_> = self.states.iter().map(|state| state.cell.bounding_box()).collect();
-        boxes.sort_by(|a, b| a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo())));
-        let mut group: Vec<usize> = (0..boxes.len()).collect();
-        // Cells that may still be met by one farther east, westernmost reach first out.
-        let mut open: Vec<usize> = Vec::new();
-        let mut places = boxes.len();
-        for i in 0..boxes.len() {
-            open.retain(|&j| boxes[j].east.hi() + fix_size_m >= boxes[i].east.lo());
-            for &j in &open {
-                let is_near = boxes[j].north.lo() - fix_size_m <= boxes[i].north.hi()
-                    && boxes[i].north.lo() <= boxes[j].north.hi() + fix_size_m;
-                if is_near {
-                    let (a, b) = (root(&mut group, i), root(&mut group, j));
-                    if a != b {
-                        group[a] = b;
-                        places -= 1;
-                    }
-                }
-            }
-            open.push(i);
-        }
-        places
+        let boxes = self.states.iter().map(|state| state.cell.bounding_box()).collect();
+        let group = groups(boxes, fix_size_m);
+        (0..group.len()).filter(|&i| group[i] == i).count()
     }
 
-    /// Drops every cell that lies inside another one with the same slice and no more strays. The union is unchanged,
+    /// Drops every cell that lies inside another one with the same slice and no more strays, which missed no
+    /// other landmarks. The union is unchanged,
     /// and so is all that can follow from it, because moving and matching are monotone.
-    pub(super) fn drop_covered(&mut self) {
+    ///
+    /// Returns, for every state before, the number of the state that stands for it now: itself, or one that holds it.
+    /// Empty when nothing changed.
+    pub(super) fn drop_covered(&mut self) -> Vec<u32> {
         if self.states.len() < 2 {
-            return;
+            return Vec::new();
         }
         // Larger cells first among those that start at the same place; ties by position in the list.
-        let mut keyed: Vec<(f64, f64, State)> = self
+        let mut keyed: Vec<(f64, f64, usize)> = self
             .states
             .iter()
-            .map(|&state| {
+            .enumerate()
+            .map(|(number, state)| {
                 let east: Interval = state.cell.bounding_box().east;
-                (east.lo(), east.hi(), state)
+                (east.lo(), east.hi(), number)
             })
             .collect();
         keyed.sort_by(|a, b| a.0.total_cmp(&b.0).then(b.1.total_cmp(&a.1)));
         // A cell that covers another starts no farther east, so it stands before it in this order (or beside it with
         // the same extent, in which case one of the two is kept).
         let mut kept: Vec<State> = Vec::with_capacity(keyed.len());
-        let mut open: Vec<(f64, State)> = Vec::new();
-        for (lo, hi, state) in keyed {
-            open.retain(|(end, _)| *end >= lo);
-            let is_covered = open.iter().any(|(end, other)| {
+        let mut open: Vec<(f64, u32)> = Vec::new();
+        let mut swept = 0;
+        let mut stands_for = vec![0; keyed.len()];
+        for (lo, hi, number) in keyed {
+            if open.len() > 2 * swept + SWEEP_SLACK {
+                open.retain(|(end, _)| *end >= lo);
+                swept = open.len();
+            }
+            let state = self.states[number];
+            let cover = open.iter().find(|(end, standing)| {
+                let other = &kept[*standing as usize];
                 *end >= hi
                     && other.slice == state.slice
                     && other.strays <= state.strays
+                    && other.missed.is_within(&state.missed)
                     && other.cell.contains_cell(&state.cell)
             });
-            if !is_covered {
-                kept.push(state);
-                open.push((hi, state));
-            }
+            stands_for[number] = match cover {
+                Some((_, standing)) => *standing,
+                None => {
+                    let standing = u32::try_from(kept.len()).expect("the cell budget is below 2³²");
+                    kept.push(state);
+                    open.push((hi, standing));
+                    standing
+                }
+            };
         }
         self.states = kept;
+        stands_for
     }
+}
+
+/// A sweep's list of open boxes is cleared of those left behind when it has grown to twice its last length plus this:
+/// clearing then costs a constant share per box. What is left behind is told apart where the list is read.
+const SWEEP_SLACK: usize = 16;
+
+/// For each box the number of the box that represents its group. Each box of a group is within `gap_m` of another one.
+pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
+    let mut group: Vec<usize> = (0..boxes.len()).collect();
+    let mut ordered: Vec<(Box2, usize)> = boxes.into_iter().zip(0..).collect();
+    ordered.sort_by(|(a, _), (b, _)| {
+        a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo()))
+    });
+    // Boxes that may still be met by one farther east.
+    let mut open: Vec<(Box2, usize)> = Vec::new();
+    let mut swept = 0;
+    for (b, i) in ordered {
+        if open.len() > 2 * swept + SWEEP_SLACK {
+            open.retain(|(other, _)| other.east.hi() + gap_m >= b.east.lo());
+            swept = open.len();
+        }
+        for &(other, j) in &open {
+            let is_near = other.east.hi() + gap_m >= b.east.lo()
+                && other.north.lo() - gap_m <= b.north.hi()
+                && b.north.lo() <= other.north.hi() + gap_m;
+            if is_near {
+                let (mine, theirs) = (root(&mut group, i), root(&mut group, j));
+                group[mine] = theirs;
+            }
+        }
+        open.push((b, i));
+    }
+    for i in 0..group.len() {
+        group[i] = root(&mut group, i);
+    }
+    group
 }
 
 /// Representative of a group, with path halving.
@@ -114,13 +153,13 @@ fn root(group: &mut [usize], mut i: usize) -> usize {
 #[cfg(test)]
 mod tests {
     use super::*;
-    use crate::interval::Box2;
 
     fn state(east_m: f64, north_m: f64, half_m: f64, strays: u8) -> State {
         State {
             cell: Cell::from_box(Box2::around(LocalPoint::new(east_m, north_m), half_m, half_m)),
             slice: 0,
             strays,
+            missed: Missed::NONE,
         }
     }
 
@@ -150,7 +189,12 @@ mod tests {
                 state(2.0, 0.0, 1.0, 0),
             ],
         };
-        set.drop_covered();
+        let before = set.states.clone();
+        let stands_for = set.drop_covered();
+        for (state, &standing) in before.iter().zip(&stands_for) {
+            let standing = set.states[standing as usize];
+            assert!(standing.cell.contains_cell(&state.cell) && standing.strays <= state.strays);
+        }
         // The 1 m cell and the 2 m cell with a stray are covered by the 2 m cell without; the 3 m cell and the one
         // that sticks out are not.
         assert_eq!(set.states.len(), 3);

@@ -2,7 +2,9 @@
 
 use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches, box_reaches};
 use super::feasible::{Feasible, State};
+use super::history::{History, NoTrail, Trail};
 use super::steps::{Look, Step};
+use super::unseen::{Missed, Passage, Silence};
 use crate::interval::Box2;
 use crate::map::Landmark;
 use crate::map::index::LandmarkIndex;
@@ -11,6 +13,7 @@ use crate::map::index::LandmarkIndex;
 #[derive(Debug)]
 pub struct SolverMap {
     index: LandmarkIndex,
+    boxes: Vec<Box2>,
     reaches: Vec<Reaches>,
 }
 
@@ -19,6 +22,7 @@ impl SolverMap {
     pub fn new(landmarks: &[Landmark]) -> Self {
         Self {
             index: LandmarkIndex::new(landmarks),
+            boxes: landmarks.iter().map(Landmark::bounds).collect(),
             reaches: landmarks.iter().map(|landmark| box_reaches(landmark.bounds())).collect(),
         }
     }
@@ -28,13 +32,17 @@ impl SolverMap {
         &self.index
     }
 
-    /// Calls `found` with the positions from which a landmark whose detection is explained by `look` may have been
-    /// seen, for every landmark that `place` allows.
-    fn for_each_vantage(&self, place: Box2, look: &Look, mut found: impl FnMut(Reaches)) {
+    /// The positions from which landmark number `landmark` may have been seen when `look` explains its detection.
+    pub(super) fn vantage(&self, landmark: usize, look: &Look) -> Reaches {
+        let mut vantage = self.reaches[landmark];
+        add_reaches(&mut vantage, &look.from_landmark);
+        vantage
+    }
+
+    /// Calls `found` with the number and the [`SolverMap::vantage`] of every landmark that `place` allows.
+    fn for_each_vantage(&self, place: Box2, look: &Look, mut found: impl FnMut(usize, Reaches)) {
         for j in self.index.meeting(place.minkowski_sum(look.extent)) {
-            let mut vantage = self.reaches[j];
-            add_reaches(&mut vantage, &look.from_landmark);
-            found(vantage);
+            found(j, self.vantage(j, look));
         }
     }
 }
@@ -89,6 +97,10 @@ pub struct Solver<'a> {
     pub cell_budget: usize,
     /// Detections that may be left unexplained.
     pub stray_budget: u8,
+    /// What it means that nothing was seen; none when silence is no evidence.
+    pub silence: Option<&'a Silence>,
+    /// Landmarks that may be certainly passed without being detected (used with `silence` only).
+    pub miss_budget: u8,
     /// Distance within which cells count as one place, metres.
     pub fix_size_m: f64,
 }
@@ -106,7 +118,28 @@ impl Solver<'_> {
         &self,
         steps: &[Step],
         uses: impl Fn(usize) -> bool,
+        visit: impl FnMut(EventSummary, &Feasible),
+    ) -> Outcome {
+        self.solve(steps, uses, visit, &mut NoTrail)
+    }
+
+    /// As [`Solver::run`], and keeps the history of every event for [`History::sweep`].
+    pub fn run_recorded(
+        &self,
+        steps: &[Step],
+        visit: impl FnMut(EventSummary, &Feasible),
+    ) -> (Outcome, History) {
+        let mut history = History::default();
+        let outcome = self.solve(steps, |_| true, visit, &mut history);
+        (outcome, history)
+    }
+
+    fn solve(
+        &self,
+        steps: &[Step],
+        uses: impl Fn(usize) -> bool,
         mut visit: impl FnMut(EventSummary, &Feasible),
+        trail: &mut impl Trail,
     ) -> Outcome {
         let Some(first) = steps.first() else { return Outcome::default() };
         let slices = first.travel.len();
@@ -116,22 +149,30 @@ impl Solver<'_> {
                     cell: self.search_area,
                     slice: u16::try_from(slice).expect("fewer than 65 536 slices"),
                     strays: 0,
+                    missed: Missed::NONE,
                 })
                 .collect(),
         };
+        trail.start(&set);
         let mut outcome = Outcome::default();
         let mut travel = vec![[0.0; DIRECTION_COUNT]; slices];
+        let mut passages = vec![Some(Passage::NONE); slices];
         for (number, step) in steps.iter().enumerate() {
             for (total, more) in travel.iter_mut().zip(&step.travel) {
                 add_reaches(total, more);
             }
+            for (so_far, more) in passages.iter_mut().zip(&step.passage) {
+                *so_far = so_far.take().zip(more.as_ref()).map(|(passage, more)| passage.then(more));
+            }
             let Some(looks) = step.sighting.as_ref().filter(|_| uses(number)) else { continue };
-            let Some(next) = self.advance(&set, &travel, looks) else {
+            let Some(next) = self.advance(&set, &travel, &passages, looks, trail) else {
                 outcome.is_undecided = true;
                 break;
             };
             set = next;
+            trail.event(number, &travel, looks, &set);
             travel.fill([0.0; DIRECTION_COUNT]);
+            passages.fill(Some(Passage::NONE));
             let summary = EventSummary {
                 step: number,
                 along_m: step.along_m,
@@ -149,22 +190,33 @@ impl Solver<'_> {
     }
 
     /// Moves the set by `travel` and keeps what the sighting explains; `None` when the cell budget is exhausted.
-    fn advance(&self, set: &Feasible, travel: &[Reaches], looks: &[Option<Look>]) -> Option<Feasible> {
+    fn advance(
+        &self,
+        set: &Feasible,
+        travel: &[Reaches],
+        passages: &[Option<Passage>],
+        looks: &[Option<Look>],
+        trail: &mut impl Trail,
+    ) -> Option<Feasible> {
         let mut next = Feasible::default();
         let mut has_branched = false;
-        for state in &set.states {
+        for (number, state) in set.states.iter().enumerate() {
             let slice = usize::from(state.slice);
             let moved = state.cell.minkowski_sum(&travel[slice]);
+            let Some(missed) = self.missed(state, &moved, passages[slice].as_ref()) else { continue };
+            let state = &State { missed, ..*state };
             let before = next.states.len();
             if let Some(look) = &looks[slice] {
-                self.map.for_each_vantage(moved.bounding_box(), look, |vantage| {
+                self.map.for_each_vantage(moved.bounding_box(), look, |landmark, vantage| {
                     if let Some(cell) = moved.intersection(&vantage) {
                         next.states.push(State { cell, ..*state });
+                        trail.child(number, Some(landmark));
                     }
                 });
             }
             if state.strays < self.stray_budget {
-                next.states.push(State { cell: moved, slice: state.slice, strays: state.strays + 1 });
+                next.states.push(State { cell: moved, strays: state.strays + 1, ..*state });
+                trail.child(number, None);
             }
             has_branched |= next.states.len() > before + 1;
             if next.states.len() > self.cell_budget {
@@ -173,8 +225,16 @@ impl Solver<'_> {
         }
         // From a single start every cell stems from another landmark; covered cells can only arise after a branching.
         if has_branched && set.states.len() > travel.len() {
-            next.drop_covered();
+            trail.replaced(&next.drop_covered());
         }
         Some(next)
+    }
+
+    /// The landmarks missed by a state after it has moved; `None` when they are more than the budget.
+    fn missed(&self, state: &State, moved: &Cell, passage: Option<&Passage>) -> Option<Missed> {
+        let (Some(silence), Some(passage)) = (self.silence, passage) else { return Some(state.missed) };
+        let map = self.map;
+        let ends = [&state.cell, moved];
+        silence.pass(&map.boxes, &map.index, ends, passage, state.missed, self.miss_budget)
     }
 }

@@ -1,7 +1,7 @@
 //! The position solver: every position that some admissible history explains.
 //!
 //! Bounded-error (set-membership) localisation from an unknown start with anonymous detections. With D the set of
-//! displacements that the reported travel allows, [M_j] the box of landmark j, and S(y) the set of relative positions
+//! displacements that the reported travel allows, `[M_j]` the box of landmark j, and S(y) the set of relative positions
 //! that a sighting y allows,
 //!
 //! ```text
@@ -18,15 +18,24 @@
 //!
 //! *References.* [`crate::bibliography::BERTSEKAS_RHODES_1971`], [`crate::bibliography::JAULIN_2001`].
 
+mod backward;
 pub mod cell;
+mod certain;
 mod composed;
+mod corridor;
 mod feasible;
 mod forward;
+mod history;
 mod steps;
+mod unseen;
 mod watch;
 
+pub use backward::{SHRINK_M, SWEEPS_MAX, Sweeps};
 pub use composed::{ComposedOutcome, ComposedRun};
+pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
+pub use history::{Candidates, History};
 pub use steps::{Bounds, Look, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use unseen::{MISSES_MAX, Missed, Passage, Silence};
 pub use watch::{FixHistory, FixWatch};

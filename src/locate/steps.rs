@@ -17,6 +17,7 @@ use crate::interval::{Box2, Interval, larger};
 use crate::locate::cell::{
     DIRECTION_COUNT, EAST, HALF, NORTH, Reaches, add_reaches, disc_reaches, mirrored, polar_reaches,
 };
+use crate::locate::unseen::Passage;
 use crate::vehicle::{DeadReckoning, Sonar, horizontal_range};
 
 /// Reported lengths and ranges are taken as exact to this, metres: an allowance for the rounding of reported values,
@@ -82,6 +83,8 @@ pub struct Step {
     pub along_m: f64,
     /// Reaches of the displacement since the event before, by slice.
     pub travel: Vec<Reaches>,
+    /// The travel as a passage by landmarks that were not seen, by slice; none where the sonar was blind on the way.
+    pub passage: Vec<Option<Passage>>,
     /// The sighting, by slice; none at a mark. An inner `None` means that no relative position explains the
     /// measurement.
     pub sighting: Option<Vec<Option<Look>>>,
@@ -97,6 +100,10 @@ pub fn steps(log: &Log, bounds: &Bounds) -> Vec<Step> {
             travel: slices
                 .iter()
                 .map(|&bias| TravelError::new(bias, &bounds.dead_reckoning).reaches(&event.travel))
+                .collect(),
+            passage: slices
+                .iter()
+                .map(|&bias| TravelError::new(bias, &bounds.dead_reckoning).passage(&event.travel))
                 .collect(),
             sighting: event
                 .sighting
@@ -121,6 +128,11 @@ pub(super) struct TravelError {
 }
 
 impl TravelError {
+    /// Under `bounds`, one for each slice of the bias.
+    pub fn by_slice(bounds: &Bounds) -> Vec<Self> {
+        bounds.bias_slices().into_iter().map(|bias| Self::new(bias, &bounds.dead_reckoning)).collect()
+    }
+
     /// Under `bounds`, for one slice of the bias.
     fn new(bias: Interval, dead_reckoning: &DeadReckoning) -> Self {
         Self {
@@ -129,6 +141,23 @@ impl TravelError {
             drift_mps: dead_reckoning.drift_mps,
             slack_m: RESOLUTION_M,
         }
+    }
+
+    /// The passage over reported pieces; none when the sonar is blind on one of them.
+    ///
+    /// Every part of the travel is a part of each piece in turn, so the sum of the hulls conv{0, travel of the piece} holds
+    /// its displacement.
+    fn passage(&self, pieces: &[ReportedPiece]) -> Option<Passage> {
+        let mut passage = Passage::NONE;
+        for piece in pieces {
+            if piece.is_blind {
+                return None;
+            }
+            let heading = Interval::point(piece.heading_rad) + self.heading;
+            let within = self.reaches(std::slice::from_ref(piece)).map(|reach| larger(reach, 0.0));
+            passage = passage.then(&Passage { heading, within });
+        }
+        Some(passage)
     }
 
     /// Reaches of the displacements that reported pieces allow.

@@ -19,10 +19,9 @@
 //! cell. Where one of the conditions cannot be shown, nothing is concluded. While the bounds hold and at most g
 //! landmarks are missed, the true history is never dropped.
 
-use super::cell::{Cell, Reaches, add_reaches};
+use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches};
 use super::steps::RESOLUTION_M;
 use crate::interval::{Box2, Interval, larger};
-use crate::map::Landmark;
 use crate::map::index::LandmarkIndex;
 use crate::vehicle::{Sonar, SonarKind};
 
@@ -40,12 +39,47 @@ pub struct Passage {
 }
 
 impl Passage {
+    /// A travel of nothing.
+    pub const NONE: Self = Self { heading: Interval::EMPTY, within: [0.0; DIRECTION_COUNT] };
+
     /// The passage over this travel and then over `next`.
     #[must_use]
     pub fn then(mut self, next: &Self) -> Self {
         self.heading = self.heading.hull(next.heading);
         add_reaches(&mut self.within, &next.within);
         self
+    }
+}
+
+/// Largest miss budget: a state remembers which landmarks it missed, so that one that is passed twice counts once.
+pub const MISSES_MAX: usize = 4;
+
+/// The landmarks that a history certainly passed without detecting them, ascending; unused places hold `u32::MAX`.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub struct Missed([u32; MISSES_MAX]);
+
+impl Missed {
+    /// None so far.
+    pub const NONE: Self = Self([u32::MAX; MISSES_MAX]);
+
+    /// With landmark `j` as well; `None` when that makes more than `budget`.
+    fn with(mut self, j: usize, budget: u8) -> Option<Self> {
+        let j = u32::try_from(j).expect("fewer than 2^32 landmarks");
+        if self.0.contains(&j) {
+            return Some(self);
+        }
+        let count = self.0.iter().filter(|&&m| m != u32::MAX).count();
+        if count >= usize::from(budget).clamp(0, MISSES_MAX) {
+            return None;
+        }
+        self.0[count] = j;
+        self.0.sort_unstable();
+        Some(self)
+    }
+
+    /// Whether every landmark missed here is missed in `other` too: then all that `other` may still do, this may.
+    pub(super) fn is_within(&self, other: &Self) -> bool {
+        self.0.iter().all(|m| *m == u32::MAX || other.0.contains(m))
     }
 }
 
@@ -67,18 +101,19 @@ impl Silence {
         }
     }
 
-    /// Number of landmarks certainly passed on the way from every position of `from` to `to` (= `from` moved by the
-    /// whole travel), counted up to `most`.
-    pub(super) fn passed(
+    /// Adds to `missed` the landmarks certainly passed on the way from every position of `from` to `to` (= `from` moved by
+    /// the whole travel), up to `budget`; `None` when there are more than that.
+    pub(super) fn pass(
         &self,
-        landmarks: &[Landmark],
+        boxes: &[Box2],
         index: &LandmarkIndex,
         [from, to]: [&Cell; 2],
         passage: &Passage,
-        most: usize,
-    ) -> usize {
-        if passage.heading.width() > HEADING_RANGE_MAX_RAD {
-            return 0;
+        missed: Missed,
+        budget: u8,
+    ) -> Option<Missed> {
+        if passage.heading.is_empty() || passage.heading.width() > HEADING_RANGE_MAX_RAD {
+            return Some(missed);
         }
         let reach = Interval::around(0.0, self.sonar.range_max_m);
         let near = from
@@ -87,9 +122,8 @@ impl Silence {
             .minkowski_sum(Box2 { east: reach, north: reach });
         index
             .meeting(near)
-            .filter(|&j| self.is_certain[j] && self.is_passed(landmarks[j].bounds(), [from, to], passage))
-            .take(most)
-            .count()
+            .filter(|&j| self.is_certain[j] && self.is_passed(boxes[j], [from, to], passage))
+            .try_fold(missed, |missed, j| missed.with(j, budget))
     }
 
     fn is_passed(&self, landmark: Box2, [from, to]: [&Cell; 2], passage: &Passage) -> bool {

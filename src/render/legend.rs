@@ -64,7 +64,7 @@ pub(super) fn draw(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale, fin
 
 fn no_fix_label(quantity: Quantity) -> &'static str {
     match quantity {
-        Quantity::Estimated => "no fix before line end in ≥ 5 % of dives",
+        Quantity::Estimated => "no fix before line end in over 5 % of dives",
         Quantity::Guaranteed => "no guaranteed fix before the line ends",
     }
 }

@@ -92,6 +92,8 @@ pub struct Parameters {
     pub stray_budget: u8,
     /// Most landmarks per run that may be missed.
     pub miss_budget: u8,
+    /// Whether "nothing seen" is used as evidence.
+    pub nothing_seen: bool,
     /// Area of the search area, km².
     pub search_area_km2: f64,
     /// Descent scatter radius, m.
@@ -140,6 +142,9 @@ pub struct EstimatedFix {
     pub lasting_p95_m: Estimate,
     /// Share of dives in which a fix was lost again before the line ended (0 to 1).
     pub relapse_share: f64,
+    /// Share of runs in which no position explained the detections (0 to 1): the bounds were violated. Such runs count as
+    /// runs without a fix.
+    pub contradiction_share: f64,
     /// Share of dives whose first fix does not hold the true position (0 to 1). Above 0 only where more strays were
     /// drawn than the stray budget covers.
     pub wrong_fix_share: f64,
@@ -343,7 +348,66 @@ pub struct CheckReport {
     pub notices: Vec<crate::problem::Notice>,
 }
 
-/// One event of a traced dive.
+/// What is known about one detection of a traced dive once all of its detections have been seen.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct HindsightEvent {
+    /// Cells in the feasible set.
+    pub cells: usize,
+    /// Number of places.
+    pub places: usize,
+    /// Spread, m.
+    pub spread_m: f64,
+    /// The landmark that was certainly seen, when there is only one and the detection cannot be a stray.
+    pub identified: Option<String>,
+    /// Number of landmarks that may have been seen.
+    pub candidate_count: usize,
+    /// Identifiers of these landmarks, at most [`TRACE_CANDIDATES_MAX`] of them.
+    pub candidates: Vec<String>,
+    /// Whether the detection may be a stray. (With a stray budget that the dive does not use up, any may be.)
+    pub may_be_stray: bool,
+    /// Whether the true position lies in the feasible set.
+    pub truth_inside: bool,
+    /// Corners of each feasible cell, at most [`TRACE_CELLS_MAX`] of them.
+    pub cell_corners: Vec<Vec<LocalPoint>>,
+}
+
+/// Most candidates that a trace names per detection.
+pub const TRACE_CANDIDATES_MAX: usize = 20;
+
+/// What is known about a traced dive once all of its detections have been seen.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct Hindsight {
+    /// Sweeps made over the dive, backward and forward counted one by one.
+    pub sweeps: usize,
+    /// Whether the last sweep changed nothing worth another.
+    pub at_rest: bool,
+    /// Number of places where the vehicle may have been when it was lost.
+    pub start_places: usize,
+    /// Spread of the positions where the vehicle may have been when it was lost, m.
+    pub start_spread_m: f64,
+    /// Longest interval of the corridor, metres of reported travel.
+    pub corridor_spacing_m: f64,
+    /// Where the vehicle may have been at every instant, interval by interval, in order.
+    pub corridor: Vec<CorridorReport>,
+}
+
+/// Where the vehicle may have been during an interval: at every instant of it, inside one of the polygons.
+#[derive(Clone, Debug, PartialEq, Serialize)]
+pub struct CorridorReport {
+    /// Reported distance run since the vehicle was lost at the start of the interval, m.
+    pub reported_from_m: f64,
+    /// Reported distance run since the vehicle was lost at the end of the interval, m.
+    pub reported_to_m: f64,
+    /// Time since the vehicle was lost at the start of the interval, s.
+    pub from_s: f64,
+    /// Time since the vehicle was lost at the end of the interval, s.
+    pub to_s: f64,
+    /// Corners of each polygon, in order. All of them together hold the vehicle.
+    pub polygons: Vec<Vec<LocalPoint>>,
+}
+
+/// One event of a traced dive. Figures outside of `hindsight` use what was seen so far; those inside use all that was
+/// seen on the dive.
 #[derive(Clone, Debug, PartialEq, Serialize)]
 pub struct TraceEvent {
     /// Number from 1.
@@ -376,10 +440,25 @@ pub struct TraceEvent {
     pub truth_inside: bool,
     /// Corners of each feasible cell, at most [`TRACE_CELLS_MAX`] of them.
     pub cell_corners: Vec<Vec<LocalPoint>>,
+    /// What is known about this detection once the whole dive has been seen; none when nothing explains the dive.
+    pub hindsight: Option<HindsightEvent>,
 }
 
 /// Most cells whose corners a trace writes per event.
 pub const TRACE_CELLS_MAX: usize = 2000;
+
+/// The bounds contradict the data: no position explains the detections up to an event.
+#[derive(Clone, Copy, Debug, PartialEq, Serialize)]
+pub struct Contradiction {
+    /// Number of the first event at which nothing is left.
+    pub event: usize,
+    /// Distance run until then, m.
+    pub run_m: f64,
+    /// Smallest stray budget with which some position explains the whole dive; none when none of those tried does.
+    pub smallest_stray_budget: Option<u8>,
+    /// Largest stray budget tried.
+    pub tried_up_to: u8,
+}
 
 /// The result of `trace`.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -399,6 +478,12 @@ pub struct TraceReport {
     pub error_shape: crate::dive::ErrorShape,
     /// Fix distance, m; none without a fix.
     pub fix_distance_m: Option<f64>,
+    /// Distance to a fix that lasts to the end of the line, m; none without one.
+    pub lasting_fix_distance_m: Option<f64>,
+    /// Number of times a fix was lost again.
+    pub relapses: usize,
+    /// Where the bounds contradict the data; none where some position explains every detection.
+    pub contradiction: Option<Contradiction>,
     /// Whether the solver ran out of its cell budget.
     pub undecided: bool,
     /// Planned track from start to end, turns included.
@@ -407,6 +492,9 @@ pub struct TraceReport {
     pub search_area: Vec<LocalPoint>,
     /// The events.
     pub events: Vec<TraceEvent>,
+    /// What is known once the whole dive has been seen; none when nothing explains the dive. When the solver ran out of
+    /// its cell budget, the whole dive means the detections up to there.
+    pub hindsight: Option<Hindsight>,
     /// For the chart.
     #[serde(skip)]
     pub landmarks: Vec<ChartLandmark>,

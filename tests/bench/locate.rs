@@ -4,6 +4,8 @@
 //! - 10⁴ landmarks with a stray budget of 1 beside none, over the same detections in the same run;
 //! - 10⁴ landmarks with 1, 2, 4 and 8 slices of the heading bias.
 
+#![allow(missing_docs, reason = "the macro of the benchmark library writes an undocumented function")]
+
 #[path = "../suite/support/scenes.rs"]
 #[allow(dead_code, reason = "the tests use more of it")]
 mod scenes;

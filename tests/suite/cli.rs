@@ -321,3 +321,35 @@ fn names_need_not_be_ascii() {
 fn place_landmarks() -> Vec<u8> {
     Workplace::with_small_dive().bytes("landmarks.csv")
 }
+
+#[test]
+fn a_contradicted_dive_names_the_event_and_the_budget_that_explains_it() {
+    // Many simulated strays, none of them budgeted: sooner or later nothing explains the detections.
+    let place = Workplace::with_small_dive();
+    let text = String::from_utf8(place.bytes("dive.toml")).unwrap();
+    let place = place.write("dive.toml", &text.replace("[sonar]", "[sonar]\nstrays_per_km = 6"));
+    let mut seen = 0;
+    for draw in 0..6 {
+        let ran = place.run(&format!("trace dive.toml --line Back --draw {draw}"));
+        if ran.code != Some(4) {
+            continue;
+        }
+        seen += 1;
+        let (out, err) = (&ran.stdout, &ran.stderr);
+        assert!(out.contains("no position explains the detections from event"), "{out}");
+        assert!(out.contains("a stray budget of") || out.contains("no stray budget up to"), "{out}");
+        assert!(!out.contains("fix after"), "an empty set is never a fix: {out}");
+        assert!(err.contains("wrong but not empty is possible"), "{err}");
+        // With the budget that it names the same dive is explained.
+        let budget = out.split("a stray budget of ").nth(1).and_then(|rest| rest.split(' ').next());
+        if let Some(budget) = budget {
+            let text = String::from_utf8(place.bytes("dive.toml")).unwrap();
+            let explained = Workplace::with_small_dive().write(
+                "dive.toml",
+                &text.replace("[start]", &format!("[budget]\nstrays = {budget}\n[start]")),
+            );
+            explained.run(&format!("trace dive.toml --line Back --draw {draw}")).expect(0);
+        }
+    }
+    assert!(seen > 0, "none of the dives was contradicted");
+}

@@ -79,11 +79,24 @@ fn unrolled(field: &[(f64, f64)], side_m: f64, margin_m: f64, half_m: f64) -> Ve
 /// The vehicle stands still and sees an object at `at`, each coordinate within `half_m`.
 fn step(at: (f64, f64), half_m: f64) -> Step {
     let from_landmark = box_reaches(Box2::around(LocalPoint::new(-at.0, -at.1), half_m, half_m));
-    Step { along_m: 0.0, travel: vec![NOWHERE], sighting: Some(vec![Some(Look::new(from_landmark))]) }
+    Step {
+        along_m: 0.0,
+        travel: vec![NOWHERE],
+        passage: vec![None],
+        sighting: Some(vec![Some(Look::new(from_landmark))]),
+    }
 }
 
 fn solver(map: &SolverMap, search_area: Cell) -> Solver<'_> {
-    Solver { map, search_area, cell_budget: 1_000_000, stray_budget: 0, fix_size_m: 0.0 }
+    Solver {
+        map,
+        search_area,
+        cell_budget: 1_000_000,
+        stray_budget: 0,
+        silence: None,
+        miss_budget: 0,
+        fix_size_m: 0.0,
+    }
 }
 
 /// Ordered choices of landmarks that explain all steps from `cell`. One step from one cell merges nothing.

@@ -3,7 +3,9 @@
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
 mod adversary;
+mod backward;
 mod cli;
+mod corridor;
 mod craters;
 mod demo;
 mod determinism;
@@ -25,6 +27,7 @@ mod reports;
 #[path = "support/scanline.rs"]
 mod scanline;
 mod sets;
+mod silence;
 mod slices;
 mod soundness;
 mod support;

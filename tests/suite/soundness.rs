@@ -70,7 +70,8 @@ fn truth_is_never_lost_in_ten_million_events() {
 /// Proof that the check above can fail: the solver is told tighter bounds than the dives keep.
 #[test]
 fn broken_bounds_lose_the_truth() {
-    let broken: [(&str, fn(&mut Bounds)); 4] = [
+    type Distort = fn(&mut Bounds);
+    let broken: [(&str, Distort); 4] = [
         ("range", |b| {
             b.sonar.range_error_m *= 0.2;
             b.sonar.range_error_fraction *= 0.2;

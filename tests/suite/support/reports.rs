@@ -3,8 +3,8 @@
 use fixability::dive::{ErrorShape, InputFile, RankBy};
 use fixability::frame::LocalPoint;
 use fixability::report::{
-    CAUTION, ChartLandmark, Estimate, EstimatedFix, GuaranteedFix, LineReport, LinesReport, Parameters,
-    ProfilePoint, Provenance, SegmentReport, TraceEvent, TraceReport,
+    CAUTION, ChartLandmark, CorridorReport, Estimate, EstimatedFix, GuaranteedFix, Hindsight, HindsightEvent,
+    LineReport, LinesReport, Parameters, ProfilePoint, Provenance, SegmentReport, TraceEvent, TraceReport,
 };
 use rand::{Rng, RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
@@ -47,6 +47,7 @@ pub fn parameters() -> Parameters {
         strays_per_km: 0.0,
         stray_budget: 0,
         miss_budget: 0,
+        nothing_seen: false,
         sonar_kind: "side-looking",
         range_min_m: 10.0,
         range_max_m: 75.0,
@@ -93,6 +94,7 @@ pub fn estimated(p95_m: Option<f64>, undecided_share: f64) -> EstimatedFix {
         lasting_median_m: p95_m.map_or(NONE, around),
         lasting_p95_m: p95_m.map_or(NONE, around),
         relapse_share: 0.0,
+        contradiction_share: 0.0,
         wrong_fix_share: 0.0,
         undecided_share,
     }
@@ -291,12 +293,26 @@ pub fn trace(count: usize) -> TraceReport {
             true_landmark: format!("R{index:03}"),
             true_position: truth,
             truth_inside: true,
+            hindsight: Some(HindsightEvent {
+                cells: 1,
+                places: 1,
+                spread_m: 2.0 * half,
+                identified: (index % 4 < 2).then(|| format!("R{index:03}")),
+                candidate_count: [1, 1, 2, 40][index % 4],
+                candidates: (0..[1, 1, 2, 20][index % 4]).map(|k| format!("R{:03}", index + k)).collect(),
+                may_be_stray: false,
+                truth_inside: true,
+                cell_corners: vec![octagon(truth, half)],
+            }),
             cell_corners: cells,
         });
     }
     let mut parameters = parameters();
     parameters.landmarks = marks.len();
     TraceReport {
+        lasting_fix_distance_m: None,
+        relapses: 0,
+        contradiction: None,
         provenance: provenance("fixability.trace"),
         parameters,
         line: "B".to_owned(),
@@ -308,6 +324,20 @@ pub fn trace(count: usize) -> TraceReport {
         path,
         search_area: vec![at(0.0, 0.0), at(2000.0, 0.0), at(2000.0, 2000.0), at(0.0, 2000.0)],
         events,
+        hindsight: Some(Hindsight {
+            sweeps: 2,
+            at_rest: true,
+            start_places: 1,
+            start_spread_m: 40.0,
+            corridor_spacing_m: 1000.0,
+            corridor: vec![CorridorReport {
+                reported_from_m: 0.0,
+                reported_to_m: 1000.0,
+                from_s: 0.0,
+                to_s: 667.0,
+                polygons: vec![octagon(at(800.0, 1030.0), 540.0)],
+            }],
+        }),
         landmarks: marks,
     }
 }

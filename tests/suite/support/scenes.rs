@@ -1,6 +1,6 @@
 //! Seeded random scenes: maps, lines, vehicles and sonars of many kinds, all invented.
 
-use fixability::detect::Scene;
+use fixability::detect::{Scene, SimulatedDive};
 use fixability::dive::ErrorShape;
 use fixability::frame::LocalPoint;
 use fixability::locate::cell::Cell;
@@ -80,9 +80,17 @@ impl RandomScene {
             search_area: Cell::around_points(&self.search_area),
             cell_budget: 200_000,
             stray_budget: 0,
+            silence: None,
+            miss_budget: 0,
             fix_size_m: self.fix_size_m,
         }
     }
+}
+
+/// Number of strays in a dive's log after event number `start`.
+pub fn strays_from(dive: &SimulatedDive, start: usize) -> usize {
+    let seen = dive.log.events.iter().zip(&dive.truth).skip(start + 1);
+    seen.filter(|(event, truth)| event.sighting.is_some() && truth.landmark.is_none()).count()
 }
 
 fn random_map(rng: &mut ChaCha8Rng, origin: (f64, f64)) -> Vec<Landmark> {
