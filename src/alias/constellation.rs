@@ -165,7 +165,9 @@ pub(super) fn break_scale(component: &Component, near: &Near<'_>, bounds: &Agree
             Some(agreement) => left
                 .iter()
                 .copied()
-                .filter(|[u, v, w]| agreement.joins(*u, *v) && agreement.joins(*u, *w) && agreement.joins(*v, *w))
+                .filter(|[u, v, w]| {
+                    agreement.joins(*u, *v) && agreement.joins(*u, *w) && agreement.joins(*v, *w)
+                })
                 .collect(),
         };
         if holding.is_empty() {

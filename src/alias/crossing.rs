@@ -36,7 +36,9 @@ impl Passings {
                         let p = dive.landmarks[number].position;
                         let (e, n) = (p.east_m - piece.start.east_m, p.north_m - piece.start.north_m);
                         let (along, across) = (e * ahead.x + n * ahead.y, e * ahead.y - n * ahead.x);
-                        if (0.0..=piece.length_m).contains(&along) && (nearest_m..=reach_m).contains(&across.abs()) {
+                        if (0.0..=piece.length_m).contains(&along)
+                            && (nearest_m..=reach_m).contains(&across.abs())
+                        {
                             passings.push((piece.along_m + along, number as u32));
                         }
                     }
@@ -60,7 +62,12 @@ impl Passings {
                 if let (true, Some(first), Some(last)) =
                     (different.len() >= LANDMARKS_LEAST, run.first(), run.last())
                 {
-                    found.push(LookAlikeStretch { line: line.clone(), ground, from_m: first.0, to_m: last.0 });
+                    found.push(LookAlikeStretch {
+                        line: line.clone(),
+                        ground,
+                        from_m: first.0,
+                        to_m: last.0,
+                    });
                 }
                 run.clear();
             };

@@ -159,10 +159,7 @@ impl Lattice {
             }
         };
         let (a, b) = (libm::round(a), libm::round(b));
-        let off = [
-            shift[0] - a * first[0] - b * second[0],
-            shift[1] - a * first[1] - b * second[1],
-        ];
+        let off = [shift[0] - a * first[0] - b * second[0], shift[1] - a * first[1] - b * second[1]];
         length(off) <= OFF_MOST * length(first) && (a, b) != (0.0, 0.0)
     }
 

@@ -81,7 +81,11 @@ pub fn components(
     components_near(&Near::new(landmarks, separation_max_m), bounds, separation_max_m)
 }
 
-fn components_near(near: &Near<'_>, bounds: &AgreementBounds, separation_max_m: f64) -> (Vec<Component>, bool) {
+fn components_near(
+    near: &Near<'_>,
+    bounds: &AgreementBounds,
+    separation_max_m: f64,
+) -> (Vec<Component>, bool) {
     let grid = SeparationGrid::new(near, separation_max_m, CELL_M);
     let mut found: Vec<Component> = Vec::new();
     let mut is_complete = true;

@@ -109,11 +109,14 @@ impl SeparationGrid {
     pub(super) fn new(near: &Near<'_>, separation_max_m: f64, cell_m: f64) -> Self {
         let across = (2.0 * separation_max_m / cell_m).ceil().clamp(1.0, 2000.0) as usize;
         let cell_m = 2.0 * separation_max_m / across as f64;
-        let mut grid =
-            Self { cell_m, low_m: -separation_max_m, across, begins: vec![0; across * across + 1], pairs: Vec::new() };
-        let all = || {
-            (0..near.len() as u32).flat_map(|from| near.of(from).iter().map(move |to| (from, to)))
+        let mut grid = Self {
+            cell_m,
+            low_m: -separation_max_m,
+            across,
+            begins: vec![0; across * across + 1],
+            pairs: Vec::new(),
         };
+        let all = || (0..near.len() as u32).flat_map(|from| near.of(from).iter().map(move |to| (from, to)));
         let cell = |s: &Separation| grid.index(s.north_m) * across + grid.index(s.east_m);
         let mut begins = vec![0u32; across * across + 1];
         for (_, to) in all() {
@@ -124,8 +127,10 @@ impl SeparationGrid {
         }
         let mut next = begins.clone();
         let empty = Separation { east_m: 0.0, north_m: 0.0, length_m: 0.0 };
-        let mut pairs =
-            vec![Pair { from: 0, to: 0, separation: empty, boxes_m: [0.0; 2] }; begins[across * across] as usize];
+        let mut pairs = vec![
+            Pair { from: 0, to: 0, separation: empty, boxes_m: [0.0; 2] };
+            begins[across * across] as usize
+        ];
         for (from, to) in all() {
             let at = &mut next[cell(&to.separation)];
             pairs[*at as usize] = Pair {
@@ -147,11 +152,16 @@ impl SeparationGrid {
     }
 
     fn index(&self, at_m: f64) -> usize {
-        smaller((at_m - self.low_m) / self.cell_m, (self.across - 1) as f64).clamp(0.0, f64::INFINITY) as usize
+        smaller((at_m - self.low_m) / self.cell_m, (self.across - 1) as f64).clamp(0.0, f64::INFINITY)
+            as usize
     }
 
     /// Runs of pairs whose separations cover the square of half-side `reach_m` about a point.
-    pub(super) fn around(&self, (east_m, north_m): (f64, f64), reach_m: f64) -> impl Iterator<Item = &[Pair]> {
+    pub(super) fn around(
+        &self,
+        (east_m, north_m): (f64, f64),
+        reach_m: f64,
+    ) -> impl Iterator<Item = &[Pair]> {
         let (west, east) = (self.index(east_m - reach_m), self.index(east_m + reach_m));
         let (south, north) = (self.index(north_m - reach_m), self.index(north_m + reach_m));
         (south..=north).map(move |row| {

@@ -67,10 +67,8 @@ pub fn look_alikes(
     let (components, complete) = components_near(&search.near, &search.bounds, separation_max_m);
     let (mut candidates, in_layouts) = search.in_layouts(&components);
     let is_in_layout = |number: usize| in_layouts.binary_search(&number).is_ok();
-    let is_far: Vec<bool> = components
-        .par_iter()
-        .map(|component| apart_m(dive, component) > dive.scoring.fix_size_m)
-        .collect();
+    let is_far: Vec<bool> =
+        components.par_iter().map(|component| apart_m(dive, component) > dive.scoring.fix_size_m).collect();
     let within_fix_size = (0..components.len()).filter(|&n| !is_far[n] && !is_in_layout(n)).count();
     let others: Vec<usize> = (0..components.len()).filter(|&n| is_far[n] && !is_in_layout(n)).collect();
     candidates.extend(search.best_of(&components, others, request.listed));
@@ -186,7 +184,13 @@ impl<'a> Search<'a> {
                 .iter()
                 .map(|&number| {
                     let constellation = self.constellation(&components[number]);
-                    Candidate { component: number, constellation, stretches: stretches.clone(), line_m, layout: None }
+                    Candidate {
+                        component: number,
+                        constellation,
+                        stretches: stretches.clone(),
+                        line_m,
+                        layout: None,
+                    }
                 })
                 .filter(|c| c.constellation.overlay.apart_m() > self.dive.scoring.fix_size_m)
                 .min_by(danger);

@@ -89,8 +89,11 @@ impl Tolerance {
         let dr = &bounds.dead_reckoning;
         let noise = dr.heading_noise_rad * scale;
         let beam = bounds.sonar.bearing_error_rad * scale;
-        let half =
-            if window == 0 { smaller(2.0 * dr.heading_bias_rad * scale, TURN_HALF_RAD) } else { TURN_HALF_RAD };
+        let half = if window == 0 {
+            smaller(2.0 * dr.heading_bias_rad * scale, TURN_HALF_RAD)
+        } else {
+            TURN_HALF_RAD
+        };
         let centre = 2.0 * window as f64 * TURN_HALF_RAD;
         let s = dr.scale_error * scale;
         let stretch = (1.0 + s) / (1.0 - s);

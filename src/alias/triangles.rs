@@ -11,8 +11,9 @@ pub type Match = (u32, u32);
 /// Three matches that agree with each other, in order of their first landmarks.
 pub type Triangle = [Match; 3];
 
-/// Landmarks that are searched between two looks at the limit.
-const BATCH: usize = 64;
+/// Landmarks that are searched between two looks at the limit. One landmark may use this share of it, so that a batch
+/// never holds more than the limit.
+const BATCH: usize = 16;
 
 /// The agreement graph of a map at one scale of the bounds and in one window of turns.
 #[derive(Clone, Copy, Debug)]
@@ -86,6 +87,7 @@ impl<'a> Agreement<'a> {
     /// that is its own mirror only one of each triangle and its mirror image is found: the canonical one.
     pub(super) fn triangles(&self, grid: &SeparationGrid, most: usize) -> (Vec<Triangle>, bool) {
         let count = self.near.len();
+        let share = most / BATCH;
         let mut found: Vec<Triangle> = Vec::new();
         for start in (0..count).step_by(BATCH) {
             let batch = start..smaller_count(start + BATCH, count);
@@ -94,15 +96,16 @@ impl<'a> Agreement<'a> {
                 .map(|i| {
                     let mut of_i = Vec::new();
                     for second in self.near.of(i as u32).iter().filter(|n| n.number as usize > i) {
-                        self.over(i as u32, second, grid, &mut of_i);
+                        self.over(i as u32, second, grid, share, &mut of_i);
                     }
                     of_i
                 })
                 .collect();
+            let is_full = parts.iter().any(|part| part.len() > share);
             for part in parts {
                 found.extend(part);
             }
-            if found.len() > most {
+            if is_full || found.len() > most {
                 found.truncate(most);
                 return (found, false);
             }
@@ -111,7 +114,15 @@ impl<'a> Agreement<'a> {
     }
 
     /// The triangles over the separation from landmark `i` to `second`; third landmarks come after both.
-    fn over(&self, i: u32, second: &Neighbour, grid: &SeparationGrid, found: &mut Vec<Triangle>) {
+    /// Ends when `found` holds more than `most`.
+    fn over(
+        &self,
+        i: u32,
+        second: &Neighbour,
+        grid: &SeparationGrid,
+        most: usize,
+        found: &mut Vec<Triangle>,
+    ) {
         let i2 = second.number;
         let thirds: Vec<Third> = self
             .near
@@ -123,7 +134,9 @@ impl<'a> Agreement<'a> {
                 Some(Third {
                     number: n.number,
                     turned: self.there.turned(n.separation),
-                    reach_m: self.there.search_m(grid.separation_max_m(), sum(boxes_first, self.near.widest_boxes_m())),
+                    reach_m: self
+                        .there
+                        .search_m(grid.separation_max_m(), sum(boxes_first, self.near.widest_boxes_m())),
                     from_first: n.separation,
                     boxes_first,
                     from_second: self.near.separation(i2, n.number)?,
@@ -147,11 +160,18 @@ impl<'a> Agreement<'a> {
             if i == j || i2 == j2 || (self.is_own_mirror && (j < i || j2 < i)) {
                 continue;
             }
-            if !self.agrees((i, i2, second.separation), (j, j2, pair.separation), sum(own_boxes, pair.boxes_m)) {
+            if !self.agrees(
+                (i, i2, second.separation),
+                (j, j2, pair.separation),
+                sum(own_boxes, pair.boxes_m),
+            ) {
                 continue;
             }
             for third in &thirds {
                 self.close([(i, j), (i2, j2)], third, found);
+            }
+            if found.len() > most {
+                return;
             }
         }
     }
@@ -164,7 +184,8 @@ impl<'a> Agreement<'a> {
             if is_beyond(third.turned, other.separation, third.reach_m)
                 || j3 == i3
                 || j3 == j2
-                || (self.is_own_mirror && j3 < i) {
+                || (self.is_own_mirror && j3 < i)
+            {
                 continue;
             }
             let boxes = sum(third.boxes_first, self.near.boxes_m(j, j3));

@@ -72,5 +72,9 @@ fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
 /// Marks the segments that run over the most dangerous look-alikes.
 pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport) {
     let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
-    alias::mark_lines(report, &found(setup, &request));
+    let found = found(setup, &request);
+    // Marks from half a search would look like clear ground elsewhere.
+    if found.complete {
+        alias::mark_lines(report, &found);
+    }
 }

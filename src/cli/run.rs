@@ -5,8 +5,8 @@ use std::path::{Path, PathBuf};
 use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
-use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::args::{Arguments, Command, Common};
+use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
@@ -69,8 +69,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Lookalikes { dive, out, separation_m, listed } => {
-            let request =
-                LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
             lookalikes(dive, &request, out.as_deref(), common)
         }
         Command::Completions { shell } => {

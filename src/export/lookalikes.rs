@@ -144,9 +144,9 @@ fn grounds(report: &LookAlikesReport, entry: &LookAlike) -> [Vec<LocalPoint>; 2]
 fn mean(points: &[LocalPoint]) -> Option<LocalPoint> {
     let first = points.first()?;
     let count = points.len() as f64;
-    let (e, n) = points.iter().fold((0.0, 0.0), |(e, n), p| {
-        (e + (p.east_m - first.east_m), n + (p.north_m - first.north_m))
-    });
+    let (e, n) = points
+        .iter()
+        .fold((0.0, 0.0), |(e, n), p| (e + (p.east_m - first.east_m), n + (p.north_m - first.north_m)));
     Some(LocalPoint::new(first.east_m + e / count, first.north_m + n / count))
 }
 

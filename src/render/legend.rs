@@ -78,9 +78,14 @@ fn look_alike_mark(sheet: &mut Sheet, column: Rect, top: f64, pitch: f64) -> f64
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let middle = top + pitch / 2.0;
     let (left, right) = (column.left + 4.0 * k, column.left + swatch_width(k));
-    let points = vec![(left, middle - 3.0 * k), (left, middle + 1.0 * k), (right, middle + 1.0 * k), (right, middle - 3.0 * k)];
+    let points = vec![
+        (left, middle - 3.0 * k),
+        (left, middle + 1.0 * k),
+        (right, middle + 1.0 * k),
+        (right, middle - 3.0 * k),
+    ];
     sheet.scene.stroke(points, crate::interval::larger(1.0, 1.5 * k), INK);
-    let label = text::fit("runs over look-alike ground; numbers as in lookalikes", font, label_room(column, k));
+    let label = text::fit("look-alike ground and its number", font, label_room(column, k));
     sheet.scene.text((label_left(column, k), middle - font.height_px() / 2.0), &label, font, SOFT_INK);
     top + pitch
 }

@@ -1,6 +1,6 @@
 //! The worst look-alikes one by one: ground 2 laid over ground 1.
 
-use super::colours::{ACCENT, GREY, INK, SOFT_INK, WHITE};
+use super::colours::{ACCENT, BAR, GREY, INK, SOFT_INK, UNDECIDED_GROUND, WHITE};
 use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
 use super::lookalikes::{scale_in_words, title};
 use super::scene::{Px, Rect, Scene};
@@ -16,6 +16,8 @@ const PANELS: usize = 6;
 const BOX_LEAST_PX: f64 = 7.0;
 /// Radius of the ring round a tell-tale beyond its box, pixels.
 const RING_PX: f64 = 6.0;
+/// Pairs closer than this need no line to show that they belong together, pixels.
+const JOIN_LEAST_PX: f64 = 4.0;
 /// From this turn on ground 2 is turned as well as moved, degrees; smaller ones are within the heading bias.
 const TURNED_DEG: f64 = 5.0;
 
@@ -31,7 +33,12 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
     let font = sheet.sizes.small();
     let area = Rect::new(sheet.inner.left, top + 14.0 * k, sheet.inner.right, bottom - 44.0 * k);
     if shown.is_empty() {
-        sheet.scene.text((area.left, area.top), "No look-alikes beyond the fix size.", sheet.sizes.body(), INK);
+        sheet.scene.text(
+            (area.left, area.top),
+            "No look-alikes beyond the fix size.",
+            sheet.sizes.body(),
+            INK,
+        );
         return Ok(sheet.scene);
     }
     let (columns, rows) = raster(count, area);
@@ -76,11 +83,16 @@ fn note(entry: &LookAlike) -> String {
     let tell = entry.nearest_tell_tale().map_or_else(
         || "nothing tells them apart".to_owned(),
         |tell| {
-            format!("{} tells, {} m from ground {}", text::printable(&tell.landmark), nice::metres(tell.from_edge_m), tell.ground)
+            format!(
+                "{} tells, {} m from ground {}",
+                text::printable(&tell.landmark),
+                nice::metres(tell.from_edge_m),
+                tell.ground
+            )
         },
     );
     format!(
-        "{} agree; offset {} m at {:.0}°{turn}; worst {} m; {}; {tell}",
+        "{} agree; offset {} m at {:.0}°{turn}; off by up to {} m; {}; {tell}",
         entry.landmarks,
         nice::metres(entry.apart_m),
         entry.bearing_deg,
@@ -136,7 +148,8 @@ impl<'a> Overlaid<'a> {
     }
 
     fn extent(&self) -> Result<Extent, RenderError> {
-        let mut points: Vec<LocalPoint> = self.entry.numbers_1.iter().map(|&i| self.mark(i).position).collect();
+        let mut points: Vec<LocalPoint> =
+            self.entry.numbers_1.iter().map(|&i| self.mark(i).position).collect();
         points.extend(self.entry.numbers_2.iter().map(|&i| self.back(self.mark(i).position)));
         points.extend(self.tell_tales().into_iter().map(|(_, position)| position));
         let extent = Extent::of(&points)
@@ -152,19 +165,32 @@ impl<'a> Overlaid<'a> {
         let (one, two) = (&self.entry.numbers_1, &self.entry.numbers_2);
         for number in 0..self.report.landmarks.len() {
             if !one.contains(&number) {
-                fill_box(scene, frame, self.boxed(frame, number, self.mark(number).position, k), GREY);
+                fill_box(
+                    scene,
+                    frame,
+                    self.boxed(frame, number, self.mark(number).position, k),
+                    UNDECIDED_GROUND,
+                );
             }
             if !two.contains(&number) {
-                outline_box(scene, frame, self.boxed(frame, number, self.back(self.mark(number).position), k), thin, GREY);
+                outline_box(
+                    scene,
+                    frame,
+                    self.boxed(frame, number, self.back(self.mark(number).position), k),
+                    thin,
+                    GREY,
+                );
             }
         }
         for (&i, &j) in one.iter().zip(two) {
-            fill_box(scene, frame, self.boxed(frame, i, self.mark(i).position, k), INK);
+            fill_box(scene, frame, self.boxed(frame, i, self.mark(i).position, k), BAR);
             let there = self.back(self.mark(j).position);
             outline_box(scene, frame, self.boxed(frame, j, there, k), larger(1.0, 2.0 * k), INK);
             let join = [frame.px(self.mark(i).position), frame.px(there)];
-            clipped_stroke(scene, frame, &join, larger(1.0, 3.6 * k), WHITE);
-            clipped_stroke(scene, frame, &join, larger(1.0, 2.0 * k), ACCENT);
+            if libm::hypot(join[1].0 - join[0].0, join[1].1 - join[0].1) >= JOIN_LEAST_PX * k {
+                clipped_stroke(scene, frame, &join, larger(1.0, 4.4 * k), WHITE);
+                clipped_stroke(scene, frame, &join, larger(1.0, 2.4 * k), ACCENT);
+            }
         }
         for (tell, position) in self.tell_tales() {
             let rect = self.boxed(frame, tell.number, position, k);
@@ -228,11 +254,15 @@ fn legend(sheet: &mut Sheet, top: f64) -> f64 {
         );
         let scene = &mut sheet.scene;
         match index {
-            0 => scene.fill(square, INK),
+            0 => scene.fill(square, BAR),
             1 => outline_box(scene, &whole, square, larger(1.0, 2.0 * k), INK),
-            2 => scene.stroke(vec![(left + 4.0 * k, middle), (left + swatch - 4.0 * k, middle)], larger(1.0, 2.0 * k), ACCENT),
+            2 => scene.stroke(
+                vec![(left + 4.0 * k, middle), (left + swatch - 4.0 * k, middle)],
+                larger(1.0, 2.0 * k),
+                ACCENT,
+            ),
             3 => ring(scene, &whole, centre, 10.0 * k, k),
-            4 => scene.fill(square, GREY),
+            4 => scene.fill(square, UNDECIDED_GROUND),
             _ => outline_box(scene, &whole, square, larger(1.0, 1.4 * k), GREY),
         }
         let room = larger(0.0, sheet.inner.right - left - swatch - 8.0 * k);

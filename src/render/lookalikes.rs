@@ -49,6 +49,9 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
     for (entry, outlines) in drawn.iter().zip(&outlines).rev() {
         draw_entry(&mut sheet, &frame, entry, outlines);
     }
+    for outline in outlines.iter().flatten() {
+        taken.add_corridor(outline);
+    }
     draw_line_names(&mut sheet, &frame, report, &mut taken);
     for (entry, outlines) in drawn.iter().zip(&outlines) {
         for outline in outlines {
@@ -175,7 +178,8 @@ fn draw_line_names(sheet: &mut Sheet, frame: &MapFrame, report: &LookAlikesRepor
         let path = frame.path(&line.path);
         let [start, next, ..] = path.as_slice() else { continue };
         let away = (start.0 - next.0, start.1 - next.1);
-        let name = text::fit(&format!("line {}", text::printable(&line.name)), font, frame.rect.width() * 0.2);
+        let name =
+            text::fit(&format!("line {}", text::printable(&line.name)), font, frame.rect.width() * 0.2);
         let size = (text::width(&name, font) + 4.0 * k, font.height_px());
         let Some((place, leader)) = taken.label(*start, away, 5.0 * k, size) else { continue };
         if let Some((from, to)) = leader {
@@ -227,7 +231,8 @@ fn draw_legend(sheet: &mut Sheet, column: Rect) -> f64 {
 /// The most dangerous ones in words, as many as fit, and how many there are besides.
 fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[LookAlike]) {
     let (k, sizes) = (sheet.sizes.k, sheet.sizes);
-    let heading = if drawn.is_empty() { "No look-alikes beyond the fix size" } else { "Most dangerous first" };
+    let heading =
+        if drawn.is_empty() { "No look-alikes beyond the fix size" } else { "Most dangerous first" };
     let mut y = sheet.scene.text((area.left, area.top), heading, sizes.heading(), INK).bottom + 2.0 * k;
     let note = "by the landmarks that agree, then by the metres of line over the ground";
     for line in text::wrap(note, sizes.small(), area.width(), 2) {
@@ -283,16 +288,20 @@ pub(super) fn title(entry: &LookAlike) -> String {
 fn details(entry: &LookAlike) -> String {
     let tell = entry.nearest_tell_tale().map_or_else(
         || "nothing tells them apart".to_owned(),
-        |tell| format!("told by {}, {} m on", text::printable(&tell.landmark), nice::metres(tell.from_edge_m)),
+        |tell| {
+            format!("told by {}, {} m on", text::printable(&tell.landmark), nice::metres(tell.from_edge_m))
+        },
     );
     let breaks = scale_in_words(entry.break_scale);
     match &entry.layout {
-        Some(layout) => format!("{} shifts; {} m of line; {breaks}", layout.shifts, nice::metres(entry.line_m)),
-        None => format!("{tell}; {breaks}; {} m of line", nice::metres(entry.line_m)),
+        Some(layout) => {
+            format!("{} shifts; {} m of line; {breaks}", layout.shifts, nice::metres(entry.line_m))
+        }
+        None => format!("{tell}; {breaks}"),
     }
 }
 
 /// The break scale in words.
 pub(super) fn scale_in_words(scale: f64) -> String {
-    if scale < 0.005 { "never separates".to_owned() } else { format!("errors × {scale:.2} part them") }
+    if scale < 0.005 { "never separates".to_owned() } else { format!("break scale {scale:.2}") }
 }

@@ -152,7 +152,10 @@ pub fn lookalikes_png(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec
 /// # Errors
 ///
 /// As [`lookalikes_png`].
-pub fn lookalikes_layout(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+pub fn lookalikes_layout(
+    report: &LookAlikesReport,
+    size: &ChartSize,
+) -> Result<Vec<PlacedText>, RenderError> {
     Ok(lookalikes::scene(report, size)?.texts)
 }
 
