@@ -98,7 +98,8 @@ impl<'a> Setup<'a> {
         (0..count as usize).map(|k| k as f64 * self.dive.scoring.segment_m).collect()
     }
 
-    fn provenance(&self, schema: &'static str) -> Provenance {
+    /// Where a report of this dive comes from.
+    pub fn provenance(&self, schema: &'static str) -> Provenance {
         let dive = self.dive;
         Provenance {
             schema,
@@ -113,7 +114,8 @@ impl<'a> Setup<'a> {
         }
     }
 
-    fn chart_landmarks(&self) -> Vec<ChartLandmark> {
+    /// The landmarks as charts draw them.
+    pub fn chart_landmarks(&self) -> Vec<ChartLandmark> {
         self.dive
             .landmarks
             .iter()
@@ -125,7 +127,8 @@ impl<'a> Setup<'a> {
             .collect()
     }
 
-    fn parameters(&self) -> Parameters {
+    /// Every parameter in force.
+    pub fn parameters(&self) -> Parameters {
         let dive = self.dive;
         let (sonar, bounds, scoring) = (&dive.sonar, &dive.dead_reckoning, &dive.scoring);
         let (sonar_kind, sector_deg, nadir_gap_deg) = match sonar.kind {

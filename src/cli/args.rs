@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use clap::{Args, Parser, Subcommand};
 use clap_complete::Shell;
 
+use crate::alias::LISTED_DEFAULT;
 use crate::dive::RankBy;
 
 /// What `--help` teaches after the options.
@@ -111,6 +112,25 @@ pub enum Command {
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
     },
+    /// Find the ground that looks like other ground within the error bounds
+    ///
+    /// Lists the look-alikes, most dangerous first: how many landmarks agree, how far apart the two grounds lie, by how
+    /// much all errors would have to shrink before they separate, which landmark tells them apart and how far it is, and
+    /// which lines run over them. Rows and grids are summed up by their periods. With --out, writes lookalikes.json,
+    /// lookalikes.csv, lookalikes.png, lookalikes-panels.png and, when the map is on the Earth, lookalikes.geojson.
+    Lookalikes {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Longest separation at which landmarks are compared, metres [default: twice the sonar's horizontal reach]
+        #[arg(long, value_name = "METRES", value_parser = separation)]
+        separation_m: Option<f64>,
+        /// Most look-alikes to list; the others are counted
+        #[arg(long, value_name = "NUMBER", default_value_t = LISTED_DEFAULT as u32, value_parser = clap::value_parser!(u32).range(1..=10_000))]
+        listed: u32,
+    },
     /// Print a completion script for a shell
     Completions {
         /// The shell
@@ -123,6 +143,14 @@ fn spacing(text: &str) -> Result<f64, String> {
     match text.parse::<f64>() {
         Ok(spacing) if (0.1..=10_000.0).contains(&spacing) => Ok(spacing),
         _ => Err("accepted: a distance from 0.1 to 10000 m, such as 10".to_owned()),
+    }
+}
+
+/// Parses the longest separation of landmarks.
+fn separation(text: &str) -> Result<f64, String> {
+    match text.parse::<f64>() {
+        Ok(separation) if (1.0..=10_000.0).contains(&separation) => Ok(separation),
+        _ => Err("accepted: a distance from 1 to 10000 m, such as 150".to_owned()),
     }
 }
 

@@ -3,6 +3,7 @@
 //! The only place that prints, reads the command line, sets the number of threads, or decides on an exit code.
 
 mod args;
+mod lookalikes;
 mod run;
 mod terminal;
 

@@ -6,7 +6,9 @@ use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
 use super::args::{Arguments, Command, Common};
+use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::terminal::{print_notices, print_result, progress_bar};
+use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
@@ -66,6 +68,10 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             trace(dive, &request, out.as_deref(), common)
         }
+        Command::Lookalikes { dive, out, separation_m, listed } => {
+            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            lookalikes(dive, &request, out.as_deref(), common)
+        }
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
@@ -76,7 +82,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
 }
 
 /// Reads a dive and applies the options that replace its settings.
-fn read(path: &Path, common: &Common) -> Result<Dive> {
+pub(super) fn read(path: &Path, common: &Common) -> Result<Dive> {
     let mut dive = Dive::read(path)?;
     if let Some(seed) = common.seed {
         dive.scoring.seed = seed;
@@ -118,8 +124,9 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
-    let report = assess::score_lines(&setup, &|| bar.inc(1));
+    let mut report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
+    mark_look_alikes(&setup, &mut report);
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
         let files = [
@@ -199,12 +206,12 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })
 }
 
-fn warning(text: String) -> Notice {
+pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
 }
 
 /// Names the files written.
-fn say_written(out: &Path, names: &[&str], common: &Common) {
+pub(super) fn say_written(out: &Path, names: &[&str], common: &Common) {
     let paths: Vec<PathBuf> = names.iter().map(|name| out.join(name)).collect();
     let text = paths.iter().map(|path| path.display().to_string()).collect::<Vec<_>>().join(", ");
     print_notices([&Notice { file: None, text: format!("wrote {text}"), is_warning: false }], common.quiet);

@@ -4,7 +4,7 @@ use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
 /// Columns every row has.
-const COLUMNS: [&str; 36] = [
+const COLUMNS: [&str; 37] = [
     "line",
     "line_rank",
     "segment",
@@ -41,6 +41,7 @@ const COLUMNS: [&str; 36] = [
     "required_fix_m",
     "fix_size_m",
     "seed",
+    "look_alikes",
 ];
 
 /// Columns that exist only when guaranteed distances were computed.
@@ -130,6 +131,7 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
         report.parameters.required_fix_m.to_string(),
         report.parameters.fix_size_m.to_string(),
         report.provenance.seed.to_string(),
+        segment.look_alikes.iter().map(usize::to_string).collect::<Vec<_>>().join(" "),
     ]);
     row
 }

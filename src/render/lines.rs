@@ -53,9 +53,10 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
             before = Some((path, finding));
         }
     }
-    draw_names(&mut sheet, &frame, report, ribbon.half());
-    draw_surround(&mut sheet, &frame, report);
-    let legend_bottom = legend::draw(&mut sheet, column, column.top, &scale, &findings);
+    let mut taken = draw_names(&mut sheet, &frame, report, ribbon.half());
+    let has_look_alikes = draw_look_alikes(&mut sheet, &frame, report, ribbon.half(), &mut taken);
+    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    let legend_bottom = legend::draw(&mut sheet, column, column.top, &scale, &findings, has_look_alikes);
     let rest = Rect::new(column.left, legend_bottom + 22.0 * k, column.right, column.bottom);
     ranking::draw(&mut sheet, rest, report);
     Ok(sheet.scene)
@@ -83,7 +84,7 @@ fn extra_pieces(report: &LinesReport, outside: usize) -> Vec<String> {
 }
 
 /// The map frame between header and foot, left of `right`.
-fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -> MapFrame {
+pub(super) fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -> MapFrame {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     // Above: the name of the northings. Below: easting labels, then scale bar and north arrow.
     let (above, below) = (12.0 * k + font.line_px() + 8.0 * k, font.line_px() + 66.0 * k);
@@ -96,14 +97,14 @@ fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -
 }
 
 /// Axis names, tick labels, scale bar and north arrow around the frame.
-fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport) {
+pub(super) fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, coordinate_system: &str) {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let labels_bottom = frame.draw_edges(sheet);
     let above = frame.rect.top - font.height_px() - 13.0 * k;
     sheet.scene.text((sheet.inner.left, above), "Northing, m", font, SOFT_INK);
     let row = labels_bottom + 10.0 * k;
     let scale_left = frame.draw_scale(sheet, frame.rect.right, row);
-    let name = format!("Easting, m  ·  {}, grid north up", report.provenance.coordinate_system);
+    let name = format!("Easting, m  ·  {coordinate_system}, grid north up");
     let name = text::fit(&name, font, scale_left - frame.rect.left - 24.0 * k);
     sheet.scene.text((frame.rect.left, row), &name, font, SOFT_INK);
 }
@@ -132,7 +133,7 @@ fn track_px(frame: &MapFrame, line: &LineReport) -> Vec<Px> {
 }
 
 /// An arrow before the start of each line, and its name at a free place near by.
-fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_width: f64) {
+fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_width: f64) -> Taken {
     let (k, font) = (sheet.sizes.k, sheet.sizes.heading());
     let mut taken = Taken::new(frame.rect.grown(-4.0 * k), half_width);
     taken.dots = report.landmarks.iter().map(|mark| frame.px(mark.position)).collect();
@@ -160,6 +161,72 @@ fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_wi
         sheet.scene.text((place.left + 3.0 * k, place.top + 1.0 * k), &name, font, INK);
         taken.rects.push(place);
     }
+    taken
+}
+
+/// A thin bracket beside each stretch over look-alike ground, with the numbers of the look-alikes; returns whether there
+/// is any. A number that finds no place is left out: the bracket stays, and the CSV has it.
+fn draw_look_alikes(
+    sheet: &mut Sheet,
+    frame: &MapFrame,
+    report: &LinesReport,
+    half_width: f64,
+    taken: &mut Taken,
+) -> bool {
+    let mut has_any = false;
+    for line in &report.lines {
+        for run in line.segments.chunk_by(|a, b| a.look_alikes == b.look_alikes) {
+            if run[0].look_alikes.is_empty() {
+                continue;
+            }
+            has_any = true;
+            let mut path: Vec<Px> = Vec::new();
+            for point in run.iter().flat_map(|segment| frame.path(&segment.path)) {
+                if path.last() != Some(&point) {
+                    path.push(point);
+                }
+            }
+            let numbers: Vec<String> = run[0].look_alikes.iter().map(usize::to_string).collect();
+            bracket(sheet, &path, half_width, &numbers.join(", "), taken);
+        }
+    }
+    has_any
+}
+
+/// A line beside `path` on its right, with ends turned towards it, and a label at its middle.
+fn bracket(sheet: &mut Sheet, path: &[Px], half_width: f64, label: &str, taken: &mut Taken) {
+    let k = sheet.sizes.k;
+    let (aside, hook) = (half_width + 5.0 * k, half_width + 1.0 * k);
+    let at = |index: usize, by: f64| {
+        let (before, after) = (path[index.saturating_sub(1)], path[smaller_index(index + 1, path.len() - 1)]);
+        let (dx, dy) = (after.0 - before.0, after.1 - before.1);
+        let length = larger(libm::hypot(dx, dy), 1e-9);
+        (path[index].0 - dy / length * by, path[index].1 + dx / length * by)
+    };
+    if path.len() < 2 {
+        return;
+    }
+    let mut points = vec![at(0, hook)];
+    points.extend((0..path.len()).map(|index| at(index, aside)));
+    points.push(at(path.len() - 1, hook));
+    sheet.scene.stroke(points, larger(1.0, 1.5 * k), INK);
+    let font = sheet.sizes.small();
+    let middle = at(path.len() / 2, aside);
+    let on_line = path[path.len() / 2];
+    let away = (middle.0 - on_line.0, middle.1 - on_line.1);
+    let room = (text::width(label, font) + 4.0 * k, font.height_px());
+    if let Some((place, leader)) = taken.label(middle, away, 4.0 * k, room) {
+        if let Some((from, to)) = leader {
+            sheet.scene.stroke(vec![from, to], larger(1.0, k), SOFT_INK);
+            taken.leaders.push((from, to));
+        }
+        sheet.scene.text((place.left + 2.0 * k, place.top), label, font, INK);
+        taken.rects.push(place);
+    }
+}
+
+fn smaller_index(a: usize, b: usize) -> usize {
+    if a < b { a } else { b }
 }
 
 /// Name of a line as the map shows it. A name that must be cut begins with its rank, so that two long names with the

@@ -2,6 +2,13 @@
 //!
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
+mod lookalikes;
+
+pub use lookalikes::{
+    ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,
+    RegularLayout, TellTale,
+};
+
 use serde::Serialize;
 
 use crate::dive::{InputFile, RankBy};
@@ -239,6 +246,8 @@ pub struct SegmentReport {
     /// Guaranteed fix distance from here.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub guaranteed: Option<GuaranteedFix>,
+    /// Numbers of the listed look-alikes (as `lookalikes` lists them) over whose ground the segment runs, ascending.
+    pub look_alikes: Vec<usize>,
 }
 
 /// Ambiguity against distance run, over all segment starts and dives of a line (*estimated*).

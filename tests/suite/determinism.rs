@@ -33,3 +33,15 @@ fn scores_of_the_demo_do_not_depend_on_threads() {
 fn a_trace_of_the_demo_does_not_depend_on_threads() {
     compare("trace", &["trace.json", "trace.png"]);
 }
+
+#[test]
+fn look_alikes_of_the_demo_do_not_depend_on_threads() {
+    let files = [
+        "lookalikes-panels.png",
+        "lookalikes.csv",
+        "lookalikes.geojson",
+        "lookalikes.json",
+        "lookalikes.png",
+    ];
+    compare("lookalikes", &files);
+}

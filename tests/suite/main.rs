@@ -3,6 +3,7 @@
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
 mod adversary;
+mod alias;
 mod backward;
 mod cli;
 mod corridor;

@@ -23,8 +23,12 @@ const TESTS: &str = "cargo test --release";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 2] =
-    [("reports/lines.png", "demo-out/lines.png"), ("reports/trace.png", "demo-out/trace.png")];
+const PICTURES: [(&str, &str); 4] = [
+    ("reports/lines.png", "demo-out/lines.png"),
+    ("reports/trace.png", "demo-out/trace.png"),
+    ("reports/lookalikes.png", "demo-out/lookalikes.png"),
+    ("reports/lookalikes-panels.png", "demo-out/lookalikes-panels.png"),
+];
 
 /// A fenced block: language, file name (may be empty), text.
 struct Block {
@@ -75,6 +79,7 @@ static README: LazyLock<Readme> = LazyLock::new(|| {
     let mut made = on_disk.clone();
     for (part, text) in [
         ("demo ranking", printed("lines demo-data/dive.toml")),
+        ("demo look-alikes", printed("lookalikes demo-data/dive.toml")),
         ("example ranking", printed("lines mydive.toml")),
         ("keys", keys_table()),
     ] {
@@ -186,9 +191,18 @@ fn every_command_of_the_readme_runs() {
         assert!(!ran.stderr.contains("warning"), "{command} warns: {}", ran.stderr);
     }
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
-    let expected = ["lines.csv", "lines.json", "lines.png", "trace.json", "trace.png"];
-    let mut all: Vec<String> = expected.iter().map(|name| format!("demo-out/{name}")).collect();
-    all.extend(expected[..3].iter().map(|name| format!("results/{name}")));
+    let scores = ["lines.csv", "lines.json", "lines.png"];
+    let others = [
+        "lookalikes-panels.png",
+        "lookalikes.csv",
+        "lookalikes.geojson",
+        "lookalikes.json",
+        "lookalikes.png",
+        "trace.json",
+        "trace.png",
+    ];
+    let mut all: Vec<String> = scores.iter().chain(&others).map(|name| format!("demo-out/{name}")).collect();
+    all.extend(scores.iter().map(|name| format!("results/{name}")));
     assert_eq!(names, all);
 }
 
@@ -330,17 +344,20 @@ fn every_listed_column_name_is_read() {
 }
 
 #[test]
-fn columns_of_the_scores_are_those_written() {
-    let listed: Vec<String> = rows(section(&README.on_disk, "\nColumns of `lines.csv`:"))
-        .iter()
-        .flat_map(|row| quoted(&row[0]))
-        .collect();
-    let mut reader = csv::Reader::from_reader(README.outputs["demo-out/lines.csv"].as_slice());
-    let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
-    let (listed_set, written_set): (BTreeSet<_>, BTreeSet<_>) =
-        (listed.iter().collect(), written.iter().collect());
-    assert_eq!(listed_set, written_set);
-    assert_eq!(listed.len(), written.len());
+fn columns_of_the_files_are_those_written() {
+    for file in ["lines.csv", "lookalikes.csv"] {
+        let heading = format!("\nColumns of `{file}`:");
+        let table = section(&README.on_disk, &heading);
+        // The tables of several files stand in one section.
+        let table = table.split("\nColumns of `").next().expect("the beginning");
+        let listed: Vec<String> = rows(table).iter().flat_map(|row| quoted(&row[0])).collect();
+        let mut reader = csv::Reader::from_reader(README.outputs[&format!("demo-out/{file}")].as_slice());
+        let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
+        let (listed_set, written_set): (BTreeSet<_>, BTreeSet<_>) =
+            (listed.iter().collect(), written.iter().collect());
+        assert_eq!(listed_set, written_set, "{file}");
+        assert_eq!(listed.len(), written.len(), "{file}");
+    }
 }
 
 #[test]
@@ -370,7 +387,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "trace", "completions"] {
+    for command in ["", "check", "lines", "trace", "lookalikes", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()
