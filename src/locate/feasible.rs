@@ -60,34 +60,42 @@ impl Feasible {
             return Vec::new();
         }
         // Larger cells first among those that start at the same place; ties by position in the list.
-        let mut keyed: Vec<(f64, f64, u32, State)> = (0..)
-            .zip(&self.states)
-            .map(|(number, &state)| {
+        let mut keyed: Vec<(f64, f64, usize)> = self
+            .states
+            .iter()
+            .enumerate()
+            .map(|(number, state)| {
                 let east: Interval = state.cell.bounding_box().east;
-                (east.lo(), east.hi(), number, state)
+                (east.lo(), east.hi(), number)
             })
             .collect();
         keyed.sort_by(|a, b| a.0.total_cmp(&b.0).then(b.1.total_cmp(&a.1)));
         // A cell that covers another starts no farther east, so it stands before it in this order (or beside it with
         // the same extent, in which case one of the two is kept).
         let mut kept: Vec<State> = Vec::with_capacity(keyed.len());
-        let mut open: Vec<(f64, u32, State)> = Vec::new();
+        let mut open: Vec<(f64, u32)> = Vec::new();
+        let mut swept = 0;
         let mut stands_for = vec![0; keyed.len()];
-        for (lo, hi, number, state) in keyed {
-            open.retain(|(end, ..)| *end >= lo);
-            let cover = open.iter().find(|(end, _, other)| {
+        for (lo, hi, number) in keyed {
+            if open.len() > 2 * swept + SWEEP_SLACK {
+                open.retain(|(end, _)| *end >= lo);
+                swept = open.len();
+            }
+            let state = self.states[number];
+            let cover = open.iter().find(|(end, standing)| {
+                let other = &kept[*standing as usize];
                 *end >= hi
                     && other.slice == state.slice
                     && other.strays <= state.strays
                     && other.missed.is_within(&state.missed)
                     && other.cell.contains_cell(&state.cell)
             });
-            stands_for[number as usize] = match cover {
-                Some((_, standing, _)) => *standing,
+            stands_for[number] = match cover {
+                Some((_, standing)) => *standing,
                 None => {
                     let standing = u32::try_from(kept.len()).expect("the cell budget is below 2³²");
                     kept.push(state);
-                    open.push((hi, standing, state));
+                    open.push((hi, standing));
                     standing
                 }
             };
@@ -96,6 +104,10 @@ impl Feasible {
         stands_for
     }
 }
+
+/// A sweep's list of open boxes is cleared of those left behind when it has grown to twice its last length plus this:
+/// clearing then costs a constant share per box. What is left behind is told apart where the list is read.
+const SWEEP_SLACK: usize = 16;
 
 /// For each box the number of the box that represents its group. Each box of a group is within `gap_m` of another one.
 pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
@@ -106,11 +118,16 @@ pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
     });
     // Boxes that may still be met by one farther east.
     let mut open: Vec<(Box2, usize)> = Vec::new();
+    let mut swept = 0;
     for (b, i) in ordered {
-        open.retain(|(other, _)| other.east.hi() + gap_m >= b.east.lo());
+        if open.len() > 2 * swept + SWEEP_SLACK {
+            open.retain(|(other, _)| other.east.hi() + gap_m >= b.east.lo());
+            swept = open.len();
+        }
         for &(other, j) in &open {
-            let is_near =
-                other.north.lo() - gap_m <= b.north.hi() && b.north.lo() <= other.north.hi() + gap_m;
+            let is_near = other.east.hi() + gap_m >= b.east.lo()
+                && other.north.lo() - gap_m <= b.north.hi()
+                && b.north.lo() <= other.north.hi() + gap_m;
             if is_near {
                 let (mine, theirs) = (root(&mut group, i), root(&mut group, j));
                 group[mine] = theirs;

@@ -20,6 +20,7 @@
 
 mod backward;
 pub mod cell;
+mod certain;
 mod composed;
 mod corridor;
 mod feasible;
@@ -35,6 +36,6 @@ pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
-pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use steps::{Bounds, Look, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
 pub use unseen::{MISSES_MAX, Missed, Passage, Silence};
 pub use watch::{FixHistory, FixWatch};
