@@ -70,11 +70,17 @@ fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
 }
 
 /// Marks the segments that run over the most dangerous look-alikes.
-pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport) {
+pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport, common: &Common) {
     let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
     let found = found(setup, &request);
     // Marks from half a search would look like clear ground elsewhere.
     if found.complete {
         alias::mark_lines(report, &found);
+    } else {
+        let text =
+            "no segments are marked as look-alike ground: the map has more look-alikes than can be held; \
+                    lookalikes with a shorter --separation-m lists some"
+                .to_owned();
+        print_notices([&warning(text)], common.quiet);
     }
 }

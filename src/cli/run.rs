@@ -126,7 +126,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
-    mark_look_alikes(&setup, &mut report);
+    mark_look_alikes(&setup, &mut report, common);
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
         let files = [

@@ -1,6 +1,6 @@
 //! `lookalikes.json`, `lookalikes.csv`, `lookalikes.geojson`, and the table for the terminal.
 
-use geo::{ConvexHull, Coord, LineString, MultiPoint as Points};
+use geo::{Area, ConvexHull, Coord, MultiPoint as Points};
 use geojson::{Feature, FeatureCollection, Geometry, GeometryValue, JsonObject, JsonValue, Position};
 
 use super::json::pretty;
@@ -228,16 +228,35 @@ fn positions(report: &LookAlikesReport, points: &[LocalPoint]) -> Result<Vec<Pos
         .collect()
 }
 
-/// The convex hull, anticlockwise as the standard asks; a line where the landmarks lie on one.
+/// Hulls of a smaller area are written as lines: rounded to the last digit, such a ring could turn the wrong way.
+const HULL_LEAST_M2: f64 = 1.0;
+
+/// The convex hull, anticlockwise as the standard asks; a line from end to end where the landmarks lie on one.
 fn hull(report: &LookAlikesReport, ground: &[LocalPoint]) -> Result<GeometryValue, ExportError> {
-    let points: Points<f64> =
-        Points::from(ground.iter().map(|p| Coord { x: p.east_m, y: p.north_m }).collect::<Vec<_>>());
-    let ring: LineString<f64> = points.convex_hull().exterior().clone();
-    let corners: Vec<LocalPoint> = ring.0.iter().map(|c| LocalPoint::new(c.x, c.y)).collect();
-    if corners.len() < 4 {
-        return Ok(GeometryValue::LineString { coordinates: positions(report, &corners)? });
+    // From the first landmark on, so that the area keeps its digits.
+    let origin = ground.first().copied().unwrap_or(LocalPoint::new(0.0, 0.0));
+    let points: Points<f64> = Points::from(
+        ground
+            .iter()
+            .map(|p| Coord { x: p.east_m - origin.east_m, y: p.north_m - origin.north_m })
+            .collect::<Vec<_>>(),
+    );
+    let hull = points.convex_hull();
+    let corners: Vec<LocalPoint> = hull
+        .exterior()
+        .0
+        .iter()
+        .map(|c| LocalPoint::new(origin.east_m + c.x, origin.north_m + c.y))
+        .collect();
+    if hull.unsigned_area() >= HULL_LEAST_M2 {
+        return Ok(GeometryValue::Polygon { coordinates: vec![positions(report, &corners)?] });
     }
-    Ok(GeometryValue::Polygon { coordinates: vec![positions(report, &corners)?] })
+    let farthest = |from: LocalPoint| {
+        let far = corners.iter().max_by(|a, b| from.distance_m(**a).total_cmp(&from.distance_m(**b)));
+        far.copied().unwrap_or(from)
+    };
+    let end = farthest(origin);
+    Ok(GeometryValue::LineString { coordinates: positions(report, &[farthest(end), end])? })
 }
 
 /// The look-alikes, most dangerous first, and how many there are in all.

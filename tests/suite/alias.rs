@@ -709,7 +709,10 @@ fn files_say_what_was_found() {
                 .map(|p| (p[0].as_f64().unwrap(), p[1].as_f64().unwrap()))
                 .collect();
             assert_eq!(ring.first(), ring.last());
-            let area: f64 = ring.windows(2).map(|w| w[0].0 * w[1].1 - w[1].0 * w[0].1).sum();
+            let from = ring[0];
+            let at = |p: (f64, f64)| (p.0 - from.0, p.1 - from.1);
+            let area: f64 =
+                ring.windows(2).map(|w| (at(w[0]), at(w[1]))).map(|(a, b)| a.0 * b.1 - b.0 * a.1).sum();
             assert!(area > 0.0, "RFC 7946: exterior rings run anticlockwise");
         }
     }
