@@ -103,7 +103,8 @@ fn without(cause: Cause, reason: String, certain_detections: usize) -> Guarantee
     }
 }
 
-fn why_not(outcome: &ComposedOutcome, fix_size_m: f64) -> (Cause, String) {
+/// Why a composed run has no fix, as a word and in words.
+pub(super) fn why_not(outcome: &ComposedOutcome, fix_size_m: f64) -> (Cause, String) {
     let certain = outcome.certain_sightings;
     if outcome.is_undecided {
         return (Cause::Undecided, "the cell budget ran out (scoring.cell_budget)".to_owned());

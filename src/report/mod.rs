@@ -2,6 +2,10 @@
 //!
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
+mod area;
+
+pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
+
 use serde::Serialize;
 
 use crate::dive::{InputFile, RankBy};
