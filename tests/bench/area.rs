@@ -3,8 +3,8 @@
 //! Fields of 10³, 10⁴ and 10⁵ landmarks at 100 per km² (the scene of `locate.rs`). At 10⁴ landmarks, 10 km × 10 km, the
 //! map has 25 m cells and 16 headings: 2.56 million starts. The other sizes get a square of cells in the middle of their
 //! field. The plain solver is timed on a random sample of the same starts, twice: as it is used for a line (to the end
-//! of the run), and on a track cut off at its fix. Both use the same threads one after the other. Not a `criterion`
-//! benchmark, because one map takes many seconds and its memory is part of the result.
+//! of the run), and on a track cut off at its fix. Costs per start are processor time, so that other work on the machine
+//! does not enter. Not a `criterion` benchmark, because one map takes many seconds and its memory is part of the result.
 //!
 //! Run by `cargo test`, it uses small maps only.
 
@@ -52,7 +52,17 @@ fn peak_mb() -> f64 {
     kilobytes.map_or(f64::NAN, |kb: f64| kb / 1024.0)
 }
 
-/// Seconds per start of the plain solver on a sample, to the end of the run and to its fix, on one thread.
+/// Processor seconds of all threads of the process so far, where the system tells (in hundredths); wall-clock seconds
+/// mean little on a machine that does other work too.
+fn processor_s() -> f64 {
+    let stat = std::fs::read_to_string("/proc/self/stat").unwrap_or_default();
+    // After the name in brackets: state, …, user time as the 12th and system time as the 13th field.
+    let fields: Vec<&str> = stat.rsplit(')').next().unwrap_or_default().split_whitespace().collect();
+    let ticks = |k: usize| fields.get(k).and_then(|text| text.parse::<f64>().ok()).unwrap_or(f64::NAN);
+    (ticks(11) + ticks(12)) / 100.0
+}
+
+/// Processor seconds per start of the plain solver on a sample, to the end of the run and to its fix, on one thread.
 fn plain_seconds(dive: &Dive, side_m: f64, sample: usize) -> [f64; 2] {
     let setup = Setup::new(dive);
     let mut rng = ChaCha8Rng::seed_from_u64(7);
@@ -66,7 +76,7 @@ fn plain_seconds(dive: &Dive, side_m: f64, sample: usize) -> [f64; 2] {
     let runs =
         |longest_run_m| StraightRuns::new(setup.scene(), setup.solver(), setup.bounds(), 0, longest_run_m);
     let whole = runs(OPTIONS.longest_run_m);
-    let begin = Instant::now();
+    let begin = processor_s();
     let lengths: Vec<f64> = starts
         .iter()
         .map(|&(start, heading)| match whole.solve_plainly(heading, start) {
@@ -74,18 +84,16 @@ fn plain_seconds(dive: &Dive, side_m: f64, sample: usize) -> [f64; 2] {
             _ => OPTIONS.longest_run_m,
         })
         .collect();
-    let to_end = begin.elapsed().as_secs_f64() / sample as f64;
+    let to_end = (processor_s() - begin) / sample as f64;
     drop(whole);
-    let mut total = 0.0;
+    let begin = processor_s();
     for (&(start, heading), length_m) in starts.iter().zip(lengths) {
         let plan = fixability::track::plan::Plan::straight(start, heading, length_m);
-        let begin = Instant::now();
         let run = fixability::locate::ComposedRun::new(&setup.scene(), &plan, &[0.0], &setup.bounds());
         let outcome = run.solve(&setup.solver(), 0, 0.0, |_, _| {});
-        total += begin.elapsed().as_secs_f64();
         assert!(!outcome.is_undecided);
     }
-    [to_end, total / sample as f64]
+    [to_end, (processor_s() - begin) / sample as f64]
 }
 
 fn measure(landmarks: usize, cells_side_m: f64, sample: usize) {
@@ -96,6 +104,7 @@ fn measure(landmarks: usize, cells_side_m: f64, sample: usize) {
     let begin = Instant::now();
     let runs = StraightRuns::new(setup.scene(), setup.solver(), setup.bounds(), 0, OPTIONS.longest_run_m);
     let index_s = begin.elapsed().as_secs_f64();
+    let busy = processor_s();
     let (starts, fixes, map_s) = if cells_side_m >= side_m {
         drop(runs);
         let begin = Instant::now();
@@ -131,11 +140,12 @@ fn measure(landmarks: usize, cells_side_m: f64, sample: usize) {
     };
     let threads = rayon::current_num_threads() as f64;
     let memory = peak_mb();
-    let each_us = map_s * threads / starts as f64 * 1e6;
+    let busy_s = processor_s() - busy;
+    let each_us = busy_s / starts as f64 * 1e6;
     let [to_end, to_fix] = plain_seconds(&dive, side_m, sample).map(|s| s * 1e6);
     println!(
-        "{landmarks} landmarks: {starts} starts in {map_s:.2} s on {threads} threads (indexes {index_s:.2} s), {:.1} % fix, \
-         {each_us:.2} us per start and thread, peak {memory:.0} MB; plain {to_end:.0} us to the end, {to_fix:.0} us to \
+        "{landmarks} landmarks: {starts} starts in {map_s:.2} s on {threads} threads, {busy_s:.2} s of processor time (indexes {index_s:.2} s), {:.1} % fix, \
+         {each_us:.2} us per start, peak {memory:.0} MB; plain {to_end:.0} us to the end, {to_fix:.0} us to \
          the fix: {:.0} and {:.0} times faster",
         100.0 * fixes as f64 / starts as f64,
         to_end / each_us,
@@ -150,9 +160,15 @@ fn main() {
         return;
     }
     let only: Option<usize> = std::env::var("FIXABILITY_LANDMARKS").ok().and_then(|text| text.parse().ok());
+    let smaller_side_m: Option<f64> =
+        std::env::var("FIXABILITY_CELLS_SIDE_M").ok().and_then(|text| text.parse().ok());
     for (landmarks, cells_side_m, sample) in [(1_000, 1e9, 300), (10_000, 1e9, 300), (100_000, 3200.0, 60)] {
         if only.is_none_or(|only| only == landmarks) {
-            measure(landmarks, cells_side_m, sample);
+            measure(
+                landmarks,
+                smaller_side_m.unwrap_or(cells_side_m),
+                if smaller_side_m.is_some() { 2 } else { sample },
+            );
         }
     }
 }

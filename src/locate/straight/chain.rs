@@ -1,10 +1,11 @@
 //! Chains of landmarks as explanations of the sightings of one run: cheap tests between their members, and the cell of
 //! the plain solver for a whole chain.
 
+use super::index::ends;
 use super::terms::{HeadingTerms, StepSets};
 use super::{Field, Point};
 use crate::frame::LocalPoint;
-use crate::interval::Box2;
+use crate::interval::{Box2, Interval};
 use crate::locate::cell::{Cell, DIRECTION_COUNT, DIRECTIONS, Reaches, add_reaches};
 use crate::locate::certain::CertainSighting;
 use crate::locate::feasible::{Feasible, State};
@@ -30,13 +31,19 @@ pub(super) type Limits = Reaches;
 /// Whether landmarks `a` and `b` keep to `limits`.
 #[inline]
 pub(super) fn keeps(limits: &Limits, a: &Point, b: &Point) -> bool {
+    keeps_by(TEST_SLACK_M, limits, a, b)
+}
+
+/// As [`keeps`] with an allowance of `slack_m`; below zero, the pair is well inside its limits.
+#[inline]
+fn keeps_by(slack_m: f64, limits: &Limits, a: &Point, b: &Point) -> bool {
     let (east, north) = (b.east_m - a.east_m, b.north_m - a.north_m);
     let (half_east, half_north) = (a.half_east_m + b.half_east_m, a.half_north_m + b.half_north_m);
     let mut keeps = true;
     for i in 0..HALF {
         let [e, n] = DIRECTIONS[i];
         let along = e * east + n * north;
-        let room = e.abs() * half_east + n.abs() * half_north + TEST_SLACK_M;
+        let room = e.abs() * half_east + n.abs() * half_north + slack_m;
         keeps &= (along <= limits[i] + room) & (-along <= limits[i + HALF] + room);
     }
     keeps
@@ -131,6 +138,41 @@ impl Run {
                 keeps(&limits[back * windows + window], first, second)
             })
         })
+    }
+
+    /// Whether a chain of one or two landmarks certainly has a cell in `window`, by the tests alone.
+    ///
+    /// Where the first landmark's vantage lies whole inside the moved search area, that vantage is the first cell. Two
+    /// cells A and B with the same edge directions meet exactly if 0 ∈ A ⊕ (−B), a polygon with no other edge
+    /// directions, that is if the sums of opposite reaches are at least 0 in all of them: the limits of the pair.
+    pub fn surely_has_cell(&self, field: &Field<'_>, chain: &[u32], window: usize) -> bool {
+        let first = &self.steps[0].sets;
+        let moved = field.solver.search_area.minkowski_sum(&first.travel[window]);
+        let vantage = field.solver.map.vantage(chain[0] as usize, &first.looks[window]);
+        if !moved.contains_cell(&Cell::from_reaches(vantage)) {
+            return false;
+        }
+        match chain {
+            [_] => true,
+            &[a, b] => {
+                let (a, b) = (&field.points[a as usize], &field.points[b as usize]);
+                keeps_by(-TEST_SLACK_M, &self.steps[1].limits[window], a, b)
+            }
+            _ => false,
+        }
+    }
+
+    /// The box around all positions that `landmark` allows at the last step, over its window.
+    pub fn outer_box(&self, field: &Field<'_>, terms: &HeadingTerms, landmark: u32) -> Box2 {
+        let last = self.steps.len() - 1;
+        let mut apart = Box2 { east: Interval::ZERO, north: Interval::ZERO };
+        for window in 0..terms.window_count() {
+            let reaches = terms.drift_apart(window, &self.sightings[last]);
+            let (low, high) = ends(&reaches);
+            apart.east = apart.east.hull(Interval::new(low.east_m, high.east_m));
+            apart.north = apart.north.hull(Interval::new(low.north_m, high.north_m));
+        }
+        field.solver.map.box_of(landmark as usize).minkowski_sum(self.steps[last].around).minkowski_sum(apart)
     }
 
     /// The plain solver's cell for a chain that ends at the last step; `None` when the solver drops it. `number` is the

@@ -173,9 +173,15 @@ impl PairIndex {
         (((x + self.reach_m) / VECTOR_CELL_M) as usize).min(self.side - 1)
     }
 
-    /// Calls `found` with the pairs whose vector v has dᵢ·v ≤ `most`ᵢ in every direction (a little more are found,
-    /// none less), until it answers `false`. `None` when the index does not reach that far: then nothing was called.
-    pub fn for_each(&self, most: &Reaches, mut found: impl FnMut(u32, u32) -> bool) -> Option<()> {
+    /// Calls `found` with the pairs whose first landmark is wanted and whose vector v has dᵢ·v ≤ `most`ᵢ in every
+    /// direction (a little more are found, none less), until it answers `false`. `None` when the index does not reach
+    /// that far: then nothing was called.
+    pub fn for_each(
+        &self,
+        most: &Reaches,
+        wants: impl Fn(u32) -> bool,
+        mut found: impl FnMut(u32, u32) -> bool,
+    ) -> Option<()> {
         let most = most.map(|reach| reach + 5.0 * VECTOR_SLACK_M);
         let (low, high) = ends(&most);
         let (west_m, east_m, south_m, north_m) = (low.east_m, high.east_m, low.north_m, high.north_m);
@@ -189,11 +195,15 @@ impl PairIndex {
         for row in self.line(south_m)..=self.line(north_m) {
             let begin = row * self.side;
             for pair in self.bins.of(begin + self.line(west_m), begin + self.line(east_m)) {
+                if !wants(pair.first) {
+                    continue;
+                }
                 let (e, n) = (f64::from(pair.east_m), f64::from(pair.north_m));
-                let is_within = DIRECTIONS
-                    .iter()
-                    .zip(&most)
-                    .fold(true, |within, (d, most)| within & (d[0] * e + d[1] * n <= *most));
+                let mut is_within = true;
+                for i in 0..DIRECTION_COUNT / 2 {
+                    let along = DIRECTIONS[i][0] * e + DIRECTIONS[i][1] * n;
+                    is_within &= (along <= most[i]) & (-along <= most[i + DIRECTION_COUNT / 2]);
+                }
                 if is_within && !found(pair.first, pair.second) {
                     return Some(());
                 }

@@ -41,8 +41,6 @@ mod index;
 mod terms;
 mod tree;
 
-use std::collections::BTreeSet;
-
 use chain::TEST_SLACK_M;
 use index::{PairIndex, PointGrid};
 use terms::HeadingTerms;
@@ -51,7 +49,7 @@ use super::composed::composed_travels;
 use super::{Bounds, ComposedRun, Solver};
 use crate::detect::Scene;
 use crate::frame::LocalPoint;
-use crate::interval::{Box2, Interval, larger, smaller};
+use crate::interval::{Box2, Interval, larger};
 use crate::track::plan::{Plan, direction};
 use crate::vehicle::SonarKind;
 
@@ -95,6 +93,8 @@ struct Field<'a> {
     points: Vec<Point>,
     /// The landmarks that can be the first one seen by a vehicle that starts in the search area, and perhaps others.
     starters: Vec<u32>,
+    /// By landmark: its number among the starters.
+    starter_number: Vec<Option<u32>>,
     /// Largest half-widths of a box.
     half_east_m: f64,
     half_north_m: f64,
@@ -141,13 +141,25 @@ impl<'a> StraightRuns<'a> {
             travel_m + 2.0 * scene.sonar.range_max_m + half_east_m + half_north_m + 10.0,
         );
         let start_box = solver.search_area.bounding_box().minkowski_sum(Box2 { east: reach, north: reach });
-        let starters = (0..)
-            .zip(&places)
-            .filter(|(_, place)| start_box.contains(**place))
-            .map(|(number, _)| number)
-            .collect();
+        let is_starter: Vec<bool> = places.iter().map(|place| start_box.contains(*place)).collect();
+        let starters: Vec<u32> =
+            (0..).zip(&is_starter).filter(|(_, is_starter)| **is_starter).map(|(number, _)| number).collect();
+        let mut starter_number = vec![None; places.len()];
+        for (number, &landmark) in (0..).zip(&starters) {
+            starter_number[landmark as usize] = Some(number);
+        }
         Self {
-            field: Field { scene, solver, points, starters, half_east_m, half_north_m, grid, pairs },
+            field: Field {
+                scene,
+                solver,
+                points,
+                starters,
+                starter_number,
+                half_east_m,
+                half_north_m,
+                grid,
+                pairs,
+            },
             bounds,
             misses,
             longest_run_m,
@@ -247,48 +259,34 @@ impl<'a> StraightRuns<'a> {
 }
 
 impl Field<'_> {
-    /// Whether more than one place is left, given that both the true landmark `here` and the landmark `there` explain the
-    /// sighting and their cells are not within one fix size. `None` when a quick look cannot tell.
+    /// Whether the true landmark `here` and the landmark `there` certainly belong to different places, when both explain
+    /// the sighting. `around` holds the positions, less the landmark's, from which it may be seen.
     ///
-    /// All landmarks stand for candidates here, each with its whole vantage, which can only join groups; when the group
-    /// around `here` is closed without `there`, the two are apart.
-    fn are_apart(&self, here: u32, there: u32, around: Box2) -> Option<()> {
+    /// Each of the `candidates` (all that explain the sighting, and perhaps more) stands for its whole vantage, which can
+    /// only join places. When the group around `here` is closed without `there`, the two are apart.
+    fn are_apart(&self, here: u32, there: u32, around: Box2, candidates: &[u32]) -> bool {
         let gap = self.solver.fix_size_m + 2.0 * TEST_SLACK_M;
-        let (east_m, north_m) = (
-            gap + around.east.width() + 2.0 * self.half_east_m,
-            gap + around.north.width() + 2.0 * self.half_north_m,
-        );
-        let mut group = BTreeSet::from([here]);
+        let east_m = gap + around.east.width() + 2.0 * self.half_east_m;
+        let north_m = gap + around.north.width() + 2.0 * self.half_north_m;
+        let mut rest: Vec<u32> = candidates.iter().copied().filter(|&number| number != here).collect();
         let mut open = vec![here];
+        let mut size = 1;
         while let Some(number) = open.pop() {
             let p = self.points[number as usize];
-            let low = LocalPoint::new(p.east_m - east_m, p.north_m - north_m);
-            let high = LocalPoint::new(p.east_m + east_m, p.north_m + north_m);
-            self.grid.for_each(low, high, |other| {
+            rest.retain(|&other| {
                 let q = self.points[other as usize];
                 let is_near =
                     (q.east_m - p.east_m).abs() <= east_m && (q.north_m - p.north_m).abs() <= north_m;
-                if is_near && group.len() <= GROUP_MAX && group.insert(other) {
+                if is_near {
                     open.push(other);
+                    size += 1;
                 }
+                !is_near
             });
-            if group.len() > GROUP_MAX || group.contains(&there) {
-                return None;
+            if size > GROUP_MAX {
+                return false;
             }
         }
-        Some(())
-    }
-
-    /// The landmarks in a box, and some near it.
-    fn for_each_in(&self, low: LocalPoint, high: LocalPoint, found: impl FnMut(u32)) {
-        self.grid.for_each(low, high, found);
-    }
-
-    /// The smaller box of two, by corners.
-    fn overlap(a: (LocalPoint, LocalPoint), b: (LocalPoint, LocalPoint)) -> (LocalPoint, LocalPoint) {
-        (
-            LocalPoint::new(larger(a.0.east_m, b.0.east_m), larger(a.0.north_m, b.0.north_m)),
-            LocalPoint::new(smaller(a.1.east_m, b.1.east_m), smaller(a.1.north_m, b.1.north_m)),
-        )
+        rest.contains(&there)
     }
 }

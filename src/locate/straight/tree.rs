@@ -5,8 +5,14 @@ use super::index::ends;
 use super::terms::HeadingTerms;
 use super::{CANDIDATES_PER_BUDGET, Field, StraightOutcome, StraightRuns};
 use crate::frame::LocalPoint;
-use crate::interval::larger;
-use crate::locate::cell::{Cell, DIRECTION_COUNT};
+use crate::interval::{Box2, larger, smaller};
+use crate::locate::cell::{Cell, DIRECTION_COUNT, DIRECTIONS};
+
+/// No chain.
+const NONE: u32 = u32::MAX;
+
+/// Up to this length a list of chains is lengthened by a look around each.
+const SHORT_LIST: usize = 24;
 
 /// Chains of landmarks of one length, with the number of the chain without its last member in the list before.
 #[derive(Debug)]
@@ -53,6 +59,8 @@ pub(super) struct Tree<'a, 'f> {
     runs: Vec<Run>,
     outcomes: Vec<StraightOutcome>,
     first: &'a Chains,
+    /// By landmark: the first chain that ends with it, while a list is lengthened.
+    heads: Vec<u32>,
 }
 
 impl<'a, 'f> Tree<'a, 'f> {
@@ -61,7 +69,15 @@ impl<'a, 'f> Tree<'a, 'f> {
         let first = Chains { length: 1, landmarks: starters.clone(), parents: vec![0; starters.len()] };
         let none = StraightOutcome::NoFix { certain_sightings: 0, has_places: false };
         let outcomes = vec![none; runs.len()];
-        let mut tree = Tree { all, field: &all.field, terms, runs, outcomes, first: &first };
+        let mut tree = Tree {
+            all,
+            field: &all.field,
+            terms,
+            runs,
+            outcomes,
+            first: &first,
+            heads: vec![NONE; all.field.points.len()],
+        };
         let members = (0..tree.runs.len()).collect();
         tree.branch(members, 0, &Chains::new(0));
         tree.outcomes
@@ -122,58 +138,119 @@ impl<'a, 'f> Tree<'a, 'f> {
     }
 
     /// Candidates with one more landmark, for all of `group`; `None` when they are too many.
-    fn lengthen(&self, group: &[usize], depth: usize, before: &Chains) -> Option<Chains> {
+    #[inline(never)]
+    fn lengthen(&mut self, group: &[usize], depth: usize, before: &Chains) -> Option<Chains> {
         let most = CANDIDATES_PER_BUDGET.saturating_mul(self.field.solver.cell_budget);
-        let windows = self.terms.window_count();
-        let limits: Vec<Limits> = (0..depth.min(LOOK_BACK))
-            .map(|back| {
-                let mut widest = [f64::NEG_INFINITY; DIRECTION_COUNT];
-                for &run in group {
-                    for limit in &self.runs[run].steps[depth].limits[back * windows..(back + 1) * windows] {
-                        widest = std::array::from_fn(|i| larger(widest[i], limit[i]));
-                    }
-                }
-                widest
-            })
-            .collect();
+        let limits: Vec<Limits> =
+            (0..depth.min(LOOK_BACK)).map(|back| self.widest(group, depth, back)).collect();
         let mut longer = Chains::new(depth + 1);
         let field = self.field;
-        if depth == 1 {
+        // The limits of earlier pairs are narrower for this group than for the one that its list was made for.
+        let earlier: Vec<(usize, Limits)> = match depth {
+            0 | 1 => Vec::new(),
+            _ => (0..(depth - 1).min(LOOK_BACK))
+                .map(|back| (depth - 2 - back, self.widest(group, depth - 1, back)))
+                .collect(),
+        };
+        let keeps_earlier = |chain: &[u32]| {
+            let last = &field.points[chain[depth - 1] as usize];
+            earlier.iter().all(|(a, limit)| keeps(limit, &field.points[chain[*a] as usize], last))
+        };
+        let keeps_limits = |chain: &[u32], next: u32| {
+            let next = &field.points[next as usize];
+            limits
+                .iter()
+                .enumerate()
+                .all(|(back, limit)| keeps(limit, &field.points[chain[depth - 1 - back] as usize], next))
+        };
+        // A long list is joined with the pairs of its last landmarks and the next; a short one looks around each.
+        if depth == 1 || before.len() > SHORT_LIST {
             let mut widest = limits[0];
-            for (reach, [e, n]) in widest.iter_mut().zip(crate::locate::cell::DIRECTIONS) {
+            for (reach, [e, n]) in widest.iter_mut().zip(DIRECTIONS) {
                 *reach += 2.0 * (e.abs() * field.half_east_m + n.abs() * field.half_north_m) + TEST_SLACK_M;
             }
-            let found = field.pairs.for_each(&widest, |first, second| {
-                longer.push(&[first], second, first);
-                longer.len() <= most
-            });
+            let found = if depth == 1 {
+                let number_of = |first: u32| field.starter_number[first as usize];
+                field.pairs.for_each(
+                    &widest,
+                    |first| number_of(first).is_some(),
+                    |first, second| {
+                        let number = number_of(first).expect("only starters are wanted");
+                        longer.push(&[first], second, number);
+                        longer.len() <= most
+                    },
+                )
+            } else {
+                // Chains by last landmark, as linked lists.
+                let mut after = vec![NONE; before.len()];
+                for number in 0..before.len() {
+                    let head = &mut self.heads[before.chain(number)[depth - 1] as usize];
+                    after[number] = *head;
+                    *head = number as u32;
+                }
+                let heads = &self.heads;
+                let found = field.pairs.for_each(
+                    &widest,
+                    |first| heads[first as usize] != NONE,
+                    |first, second| {
+                        let mut number = heads[first as usize];
+                        while number != NONE {
+                            let chain = before.chain(number as usize);
+                            if keeps_limits(chain, second) && keeps_earlier(chain) {
+                                longer.push(chain, second, number);
+                            }
+                            number = after[number as usize];
+                        }
+                        longer.len() <= most
+                    },
+                );
+                for number in 0..before.len() {
+                    self.heads[before.chain(number)[depth - 1] as usize] = NONE;
+                }
+                found
+            };
             if found.is_some() {
                 return (longer.len() <= most).then_some(longer);
             }
         }
-        let reaches: Vec<(LocalPoint, LocalPoint)> = limits.iter().map(ends).collect();
+        // Where the next landmark may lie from each earlier one, boxes at their largest.
+        let east_m = 2.0 * field.half_east_m + TEST_SLACK_M;
+        let north_m = 2.0 * field.half_north_m + TEST_SLACK_M;
+        let reaches: Vec<(LocalPoint, LocalPoint)> = limits
+            .iter()
+            .map(|limit| {
+                let (low, high) = ends(limit);
+                (
+                    LocalPoint::new(low.east_m - east_m, low.north_m - north_m),
+                    LocalPoint::new(high.east_m + east_m, high.north_m + north_m),
+                )
+            })
+            .collect();
         for number in 0..before.len() {
             let chain = before.chain(number);
-            let mut near: Option<(LocalPoint, LocalPoint)> = None;
-            for (back, (low, high)) in reaches.iter().enumerate() {
-                let p = field.points[chain[depth - 1 - back] as usize];
-                let east = p.half_east_m + field.half_east_m + TEST_SLACK_M;
-                let north = p.half_north_m + field.half_north_m + TEST_SLACK_M;
-                let this = (
-                    LocalPoint::new(p.east_m + low.east_m - east, p.north_m + low.north_m - north),
-                    LocalPoint::new(p.east_m + high.east_m + east, p.north_m + high.north_m + north),
-                );
-                near = Some(near.map_or(this, |other| Field::overlap(this, other)));
-            }
-            let Some((low, high)) = near else { continue };
-            if low.east_m > high.east_m || low.north_m > high.north_m {
+            if !keeps_earlier(chain) {
                 continue;
             }
-            field.for_each_in(low, high, |landmark| {
-                let second = &field.points[landmark as usize];
-                let is_kept = limits.iter().enumerate().all(|(back, limit)| {
-                    keeps(limit, &field.points[chain[depth - 1 - back] as usize], second)
-                });
+            let (mut west_m, mut east_m) = (f64::NEG_INFINITY, f64::INFINITY);
+            let (mut south_m, mut north_m) = (f64::NEG_INFINITY, f64::INFINITY);
+            for (back, (low, high)) in reaches.iter().enumerate() {
+                let p = &field.points[chain[depth - 1 - back] as usize];
+                west_m = larger(west_m, p.east_m + low.east_m);
+                east_m = smaller(east_m, p.east_m + high.east_m);
+                south_m = larger(south_m, p.north_m + low.north_m);
+                north_m = smaller(north_m, p.north_m + high.north_m);
+            }
+            if west_m > east_m || south_m > north_m {
+                continue;
+            }
+            let (low, high) = (LocalPoint::new(west_m, south_m), LocalPoint::new(east_m, north_m));
+            field.grid.for_each(low, high, |landmark| {
+                let next = &field.points[landmark as usize];
+                let is_inside = (west_m <= next.east_m)
+                    & (next.east_m <= east_m)
+                    & (south_m <= next.north_m)
+                    & (next.north_m <= north_m);
+                let is_kept = is_inside && keeps_limits(chain, landmark);
                 if is_kept && longer.len() <= most {
                     longer.push(chain, landmark, number as u32);
                 }
@@ -185,6 +262,18 @@ impl<'a, 'f> Tree<'a, 'f> {
         Some(longer)
     }
 
+    /// The largest limits of a group for the sighting of step `depth` against the one `back` + 1 before.
+    fn widest(&self, group: &[usize], depth: usize, back: usize) -> Limits {
+        let windows = self.terms.window_count();
+        let mut widest = [f64::NEG_INFINITY; DIRECTION_COUNT];
+        for &run in group {
+            for limit in &self.runs[run].steps[depth].limits[back * windows..(back + 1) * windows] {
+                widest = std::array::from_fn(|i| larger(widest[i], limit[i]));
+            }
+        }
+        widest
+    }
+
     /// What the last step says of a run.
     fn find(&mut self, run: usize, chains: &Chains) -> Finding {
         let run = &mut self.runs[run];
@@ -194,20 +283,37 @@ impl<'a, 'f> Tree<'a, 'f> {
             if run.is_far(self.field, last)
                 && (0..self.terms.window_count()).any(|window| {
                     run.keeps(self.field, chain, window)
-                        && run
-                            .cell(self.field, chain, window, number as u32, chains.parents[number])
-                            .is_some()
+                        && (run.surely_has_cell(self.field, chain, window)
+                            || run
+                                .cell(self.field, chain, window, number as u32, chains.parents[number])
+                                .is_some())
                 })
             {
                 return Finding::Elsewhere(last);
             }
         }
+        // All that is left lies near the true position. Whole vantages that fit into the fix size need no cells.
+        let near: Vec<usize> = (0..chains.len())
+            .filter(|&number| {
+                let chain = chains.chain(number);
+                !run.is_far(self.field, chain[chain.len() - 1])
+                    && (0..self.terms.window_count()).any(|window| run.keeps(self.field, chain, window))
+            })
+            .collect();
+        let outer = near
+            .iter()
+            .map(|&number| run.outer_box(self.field, self.terms, chains.chain(number)[chains.length - 1]))
+            .reduce(|a, b| Box2 { east: a.east.hull(b.east), north: a.north.hull(b.north) });
+        let fits = outer.is_some_and(|outer| {
+            let diagonal = libm::hypot(outer.east.width(), outer.north.width());
+            diagonal + TEST_SLACK_M <= self.field.solver.fix_size_m
+        });
+        if fits {
+            return Finding::Fix;
+        }
         let mut cells = Vec::new();
-        for number in 0..chains.len() {
-            let chain = chains.chain(number);
-            if !run.is_far(self.field, chain[chain.len() - 1]) {
-                collect(run, self.field, self.terms, chains, number, &mut cells);
-            }
+        for number in near {
+            collect(run, self.field, self.terms, chains, number, &mut cells);
         }
         let is_fix =
             run.spread_m(self.terms, &cells).is_some_and(|spread_m| spread_m <= self.field.solver.fix_size_m);
@@ -223,7 +329,15 @@ impl<'a, 'f> Tree<'a, 'f> {
             Finding::Elsewhere(there) => {
                 let here = run.sightings[chains.length - 1].landmark as u32;
                 let around = run.steps[chains.length - 1].around;
-                if self.field.are_apart(here, there, around).is_some() {
+                let windows = self.terms.window_count();
+                let mut candidates: Vec<u32> = (0..chains.len())
+                    .map(|number| chains.chain(number))
+                    .filter(|chain| (0..windows).any(|window| run.keeps(self.field, chain, window)))
+                    .map(|chain| chain[chains.length - 1])
+                    .collect();
+                candidates.sort_unstable();
+                candidates.dedup();
+                if self.field.are_apart(here, there, around, &candidates) {
                     return true;
                 }
                 let mut cells = Vec::new();
