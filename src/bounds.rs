@@ -266,7 +266,7 @@ pub const KEYS: &[Key] = &[
         "dead_reckoning",
         "heading_slices",
         Kind::Whole(Range::closed(1.0, 720.0, "")),
-        Default("4"),
+        Without("as many as keep each slice within 1 degree"),
         "Slices of the heading bias that are solved one by one; more are tighter and slower.",
     ),
     key(

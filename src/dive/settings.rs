@@ -74,7 +74,10 @@ impl Settings {
         let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
         let scoring = scoring(doc, f);
         let area = area(doc, f);
-        let heading_slices = doc.number("dead_reckoning", "heading_slices", f).map(|n| n as usize);
+        let heading_slices = match doc.number("dead_reckoning", "heading_slices", f) {
+            Some(given) => Some(given as usize),
+            None => dead_reckoning.map(default_slices),
+        };
         let budget = budget(doc, f);
         Self {
             name,
@@ -309,6 +312,17 @@ fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> 
         }
     }
     true
+}
+
+/// Widest slice of the heading bias unless told otherwise, degrees. Measured (`tests/suite/slices.rs` and
+/// `tests/suite/tightness.rs`): wider slices fix later and report larger areas, narrower ones gain little for their time.
+const SLICE_DEG: f64 = 1.0;
+
+/// As many slices as keep each within [`SLICE_DEG`].
+fn default_slices(dead_reckoning: DeadReckoning) -> usize {
+    // The allowance keeps a bias that is a whole number of slices from asking for one more by rounding.
+    let slices = 2.0 * dead_reckoning.heading_bias_rad.to_degrees() / SLICE_DEG - 1e-9;
+    slices.ceil().clamp(1.0, 720.0) as usize
 }
 
 fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {

@@ -37,7 +37,7 @@ pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
-pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use steps::{Bounds, Look, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
 pub use straight::{StraightOutcome, StraightRuns};
 pub use unseen::{MISSES_MAX, Missed, Passage, Silence};
 pub use watch::{FixHistory, FixWatch};

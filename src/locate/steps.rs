@@ -14,7 +14,9 @@
 
 use crate::detect::{Log, ReportedPiece, Sighting};
 use crate::interval::{Box2, Interval, larger};
-use crate::locate::cell::{DIRECTION_COUNT, Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
+use crate::locate::cell::{
+    DIRECTION_COUNT, EAST, HALF, NORTH, Reaches, add_reaches, disc_reaches, mirrored, polar_reaches,
+};
 use crate::locate::unseen::Passage;
 use crate::vehicle::{DeadReckoning, Sonar, horizontal_range};
 
@@ -67,10 +69,10 @@ impl Look {
     pub fn new(from_landmark: Reaches) -> Self {
         let s = mirrored(&from_landmark);
         let side = |toward: usize| {
-            let away = (toward + DIRECTION_COUNT / 2) % DIRECTION_COUNT;
+            let away = (toward + HALF) % DIRECTION_COUNT;
             Interval::new(-larger(s[away], -s[toward]), s[toward])
         };
-        Self { extent: Box2 { east: side(0), north: side(4) }, from_landmark }
+        Self { extent: Box2 { east: side(EAST), north: side(NORTH) }, from_landmark }
     }
 }
 

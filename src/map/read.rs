@@ -57,16 +57,16 @@ pub struct ReadOptions {
     pub skip_bad_rows: bool,
 }
 
-/// Reads the landmarks of a file whose coordinate system the dive file states. None, with findings, when the file
-/// cannot be used.
+/// Reads the landmarks of a file whose coordinate system the dive file states. Rows with problems are left out, with
+/// findings, so that what the other rows have in common can still be checked in the same pass; none when the file cannot
+/// be read at all.
 pub fn read(
     input: &InputText,
     crs: &Crs,
     options: ReadOptions,
     findings: &mut Findings,
 ) -> Option<LandmarkFile> {
-    let before = findings.problems.len();
-    let file = match input.format() {
+    match input.format() {
         Some(Format::Csv) => csv::read(input, crs, options, findings),
         Some(Format::GeoJson) => geojson::read(input, crs, options, findings),
         Some(Format::Gpx) | None => {
@@ -76,6 +76,5 @@ pub fn read(
             );
             None
         }
-    };
-    file.filter(|_| findings.problems.len() == before)
+    }
 }

@@ -1,4 +1,5 @@
 //! What hindsight costs on top of a solve: recording, sweeps, and the corridor, over a whole line at 10⁴ landmarks.
+#![allow(missing_docs, reason = "the macro of the benchmark library writes an undocumented function")]
 
 #[path = "../suite/support/scenes.rs"]
 #[allow(dead_code, reason = "the tests use more of it")]

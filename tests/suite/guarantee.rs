@@ -2,12 +2,13 @@
 
 use fixability::detect::{DrawnErrors, Errors, LegErrors, SightingErrors, StrayDraw, simulate};
 use fixability::dive::{Budget, ErrorShape};
-use fixability::locate::cell::{Cell, add_reaches};
-use fixability::locate::{Bounds, ComposedRun, Feasible, Solver, Step, steps};
+use fixability::locate::cell::Cell;
+use fixability::locate::{Bounds, ComposedRun, Feasible, Solver, steps};
 use nalgebra::Vector2;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::moved::set_at;
 use crate::support::scenes::RandomScene;
 
 /// What a batch of dives showed.
@@ -24,7 +25,7 @@ struct Tally {
 }
 
 /// Bounds with every error multiplied by `share`.
-fn scaled(mut bounds: Bounds, share: f64) -> Bounds {
+pub fn scaled(mut bounds: Bounds, share: f64) -> Bounds {
     let (d, s) = (&mut bounds.dead_reckoning, &mut bounds.sonar);
     for error in [
         &mut d.scale_error,
@@ -39,25 +40,6 @@ fn scaled(mut bounds: Bounds, share: f64) -> Bounds {
         *error *= share;
     }
     bounds
-}
-
-/// The feasible set at step `at`, moved from the last sighting before it.
-fn set_at(sets: &[(usize, Feasible)], steps: &[Step], start: usize, at: usize, area: Cell) -> Vec<Cell> {
-    let last = sets.iter().rev().find(|(step, _)| *step <= at);
-    let (from, states) = match last {
-        Some((step, set)) => (step + 1, set.states.iter().map(|s| (s.cell, usize::from(s.slice))).collect()),
-        None => (start, (0..steps[at].travel.len()).map(|slice| (area, slice)).collect::<Vec<_>>()),
-    };
-    states
-        .into_iter()
-        .map(|(cell, slice)| {
-            let mut travel = [0.0; 16];
-            for step in &steps[from..=at] {
-                add_reaches(&mut travel, &step.travel[slice]);
-            }
-            cell.minkowski_sum(&travel)
-        })
-        .collect()
 }
 
 /// Drawn errors with a chosen pattern of strays and misses.

@@ -2,6 +2,7 @@
 #![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
+mod adversary;
 mod area;
 mod backward;
 mod cli;
@@ -14,6 +15,9 @@ mod guarantee;
 mod intervals;
 mod layers;
 mod load;
+mod look_alike_chance;
+#[path = "support/moved.rs"]
+mod moved;
 mod one_dimension;
 mod oracle;
 mod projection;
@@ -21,7 +25,13 @@ mod readme;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;
+#[path = "support/scanline.rs"]
+mod scanline;
 mod sets;
 mod silence;
+mod slices;
 mod soundness;
 mod support;
+#[path = "support/template.rs"]
+mod template;
+mod tightness;

@@ -257,3 +257,16 @@ fn an_unclosed_quotation_mark_does_not_swallow_rows() {
         &["reef.csv:2: a field runs over more than one line"],
     );
 }
+
+#[test]
+fn bad_rows_do_not_hide_what_is_wrong_with_the_others() {
+    let text = REEF.replace("500300", "5003o0").replace("D,500700,6200080,2", "A,500700,6200080,");
+    holds(
+        &Scene::new().file("reef.csv", text).errors(),
+        &[
+            "reef.csv:3: column easting: \"5003o0\" is not a number",
+            "reef.csv:2: the identifier \"A\" stands 2 times: line 2, line 5",
+            "1 of 3 landmarks have no uncertainty: line 5",
+        ],
+    );
+}
