@@ -12,7 +12,7 @@ mod rank;
 pub mod statistics;
 mod trace;
 
-pub use area::{AREA_STARTS_MAX, area, area_grid};
+pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
 pub use check::{check, line_notices};
 pub use line::score_lines;
 pub use trace::{TraceError, TraceRequest, trace};

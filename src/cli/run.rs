@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
+use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::assess::{self, Setup, TraceRequest};
@@ -66,6 +67,15 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             trace(dive, &request, out.as_deref(), common)
         }
+        Command::Area { dive, out, cell_m, headings, longest_run_m } => {
+            let asked = AreaRequest {
+                out: out.as_deref(),
+                cell_m: *cell_m,
+                headings: *headings,
+                longest_run_m: *longest_run_m,
+            };
+            area(dive, &asked, common)
+        }
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
@@ -76,7 +86,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
 }
 
 /// Reads a dive and applies the options that replace its settings.
-fn read(path: &Path, common: &Common) -> Result<Dive> {
+pub(super) fn read(path: &Path, common: &Common) -> Result<Dive> {
     let mut dive = Dive::read(path)?;
     if let Some(seed) = common.seed {
         dive.scoring.seed = seed;
@@ -199,12 +209,12 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })
 }
 
-fn warning(text: String) -> Notice {
+pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
 }
 
 /// Names the files written.
-fn say_written(out: &Path, names: &[&str], common: &Common) {
+pub(super) fn say_written(out: &Path, names: &[&str], common: &Common) {
     let paths: Vec<PathBuf> = names.iter().map(|name| out.join(name)).collect();
     let text = paths.iter().map(|path| path.display().to_string()).collect::<Vec<_>>().join(", ");
     print_notices([&Notice { file: None, text: format!("wrote {text}"), is_warning: false }], common.quiet);

@@ -239,14 +239,14 @@ fn contradicted(contradiction: &Contradiction) -> String {
 }
 
 /// An empty table; all columns but number `left` are set to the right.
-fn plain(header: &[String], left: usize) -> Table {
+pub(super) fn plain(header: &[String], left: usize) -> Table {
     let mut table = Table::new();
     table.load_style(ASCII_FULL_CONDENSED).set_content_arrangement(ContentArrangement::Disabled);
     table.set_header(cells(header.to_vec(), left));
     table
 }
 
-fn add(table: &mut Table, row: Vec<String>, left: usize) {
+pub(super) fn add(table: &mut Table, row: Vec<String>, left: usize) {
     table.add_row(cells(row, left));
 }
 
@@ -270,7 +270,7 @@ fn per_cent(share: f64) -> String {
     format!("{:.1}", share * 100.0)
 }
 
-fn metres(value: Option<f64>) -> String {
+pub(super) fn metres(value: Option<f64>) -> String {
     value.map_or_else(none, |value| format!("{value:.0}"))
 }
 

@@ -33,18 +33,12 @@ const BLOCK_CELLS: usize = 32;
 
 /// The grid of start cells over the search area, and the cells (column, row) whose centre lies in it, row by row.
 pub fn area_grid(setup: &Setup<'_>, options: &AreaOptions) -> (AreaGrid, Vec<(usize, usize)>) {
+    let grid = grid_of(setup, options);
     let corners = &setup.dive.start.search_area;
-    let side = |of: fn(&LocalPoint) -> f64| {
-        let low = corners.iter().map(of).reduce(smaller).unwrap_or(0.0);
-        let high = corners.iter().map(of).reduce(larger).unwrap_or(0.0);
-        let first = (low / options.cell_m).floor();
-        (first * options.cell_m, ((high / options.cell_m).ceil() - first) as usize)
-    };
-    let ((west_m, columns), (south_m, rows)) = (side(|p| p.east_m), side(|p| p.north_m));
-    let grid = AreaGrid { cell_m: options.cell_m, west_m, south_m, columns, rows };
     let ring = corners.iter().map(|p| Coord { x: p.east_m, y: p.north_m }).collect();
     let area = Polygon::new(LineString::new(ring), vec![]);
-    let cells = (0..rows)
+    let columns = grid.columns;
+    let cells = (0..grid.rows)
         .into_par_iter()
         .flat_map_iter(|row| (0..columns).map(move |column| (column, row)))
         .filter(|&(column, row)| {
@@ -53,6 +47,27 @@ pub fn area_grid(setup: &Setup<'_>, options: &AreaOptions) -> (AreaGrid, Vec<(us
         })
         .collect();
     (grid, cells)
+}
+
+/// The grid over the box around the search area.
+fn grid_of(setup: &Setup<'_>, options: &AreaOptions) -> AreaGrid {
+    let corners = &setup.dive.start.search_area;
+    let side = |of: fn(&LocalPoint) -> f64| {
+        let low = corners.iter().map(of).reduce(smaller).unwrap_or(0.0);
+        let high = corners.iter().map(of).reduce(larger).unwrap_or(0.0);
+        let first = (low / options.cell_m).floor();
+        (first * options.cell_m, ((high / options.cell_m).ceil() - first) as usize)
+    };
+    let ((west_m, columns), (south_m, rows)) = (side(|p| p.east_m), side(|p| p.north_m));
+    AreaGrid { cell_m: options.cell_m, west_m, south_m, columns, rows }
+}
+
+/// Runs of the map: start cells times headings. A grid that is far too fine is not counted cell by cell: the answer is then
+/// that of the box around the search area.
+pub fn area_starts(setup: &Setup<'_>, options: &AreaOptions) -> usize {
+    let all = grid_of(setup, options);
+    let most = all.columns.saturating_mul(all.rows).saturating_mul(options.headings);
+    if most > 4 * AREA_STARTS_MAX { most } else { area_grid(setup, options).1.len() * options.headings }
 }
 
 /// Computes the area map. `tick` is called with the number of runs finished since the last call; all calls add up to
