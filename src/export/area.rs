@@ -104,7 +104,7 @@ fn best_heading_deg(report: &AreaReport, cell: &AreaCell) -> Option<f64> {
 pub struct AreaCsv;
 
 /// Columns of `area.csv`.
-const COLUMNS: [&str; 18] = [
+const COLUMNS: [&str; 19] = [
     "column",
     "row",
     "easting_m",
@@ -121,6 +121,7 @@ const COLUMNS: [&str; 18] = [
     "look_alikes",
     "too_wide",
     "undecided",
+    "detection_not_certain",
     "required_fix_m",
     "longest_run_m",
 ];
@@ -156,6 +157,7 @@ impl Exporter for AreaCsv {
                 cell.no_fix.look_alikes.to_string(),
                 cell.no_fix.too_wide.to_string(),
                 cell.no_fix.undecided.to_string(),
+                cell.no_fix.detection_not_certain.to_string(),
                 report.parameters.required_fix_m.to_string(),
                 report.options.longest_run_m.to_string(),
             ];

@@ -149,14 +149,13 @@ fn draw_cells(sheet: &mut Sheet, frame: &MapFrame, report: &AreaReport, findings
     }
 }
 
-/// Strokes from lower left to upper right, on lines that all rectangles share.
+/// Strokes from upper left to lower right, as in the legend, on lines that all rectangles share.
 fn hatch(scene: &mut Scene, rect: &Rect, spacing: f64, width: f64) {
-    // On a stroke x + y is constant.
-    let (first, last) = (rect.left + rect.top, rect.right + rect.bottom);
+    // On a stroke x − y is constant.
+    let (first, last) = (rect.left - rect.bottom, rect.right - rect.top);
     for n in (libm::ceil(first / spacing) as i64)..=(libm::floor(last / spacing) as i64) {
-        let sum = n as f64 * spacing;
-        let from = (sum - rect.bottom, rect.bottom);
-        let to = (sum - rect.top, rect.top);
+        let difference = n as f64 * spacing;
+        let (from, to) = ((difference + rect.top, rect.top), (difference + rect.bottom, rect.bottom));
         if let Some((from, to)) = rect.clip_segment(from, to) {
             scene.stroke(vec![from, to], width, INK);
         }
@@ -277,12 +276,11 @@ fn draw_legend(
         }
     }
     let (none, undecided) = match chart {
-        AreaChart::Worst => (
-            format!("no guaranteed fix within {longest} m on some heading"),
-            "undecided: cell budget reached",
-        ),
+        AreaChart::Worst => {
+            (format!("some heading without a fix by {longest} m"), "undecided: cell budget reached")
+        }
         AreaChart::Best => {
-            (format!("no guaranteed fix within {longest} m on any heading"), "undecided: cell budget reached")
+            (format!("no heading with a fix by {longest} m"), "undecided: cell budget reached")
         }
         AreaChart::Share => ("no heading".to_owned(), "undecided: cell budget reached"),
     };

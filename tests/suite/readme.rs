@@ -23,8 +23,11 @@ const TESTS: &str = "cargo test --release";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 2] =
-    [("reports/lines.png", "demo-out/lines.png"), ("reports/trace.png", "demo-out/trace.png")];
+const PICTURES: [(&str, &str); 3] = [
+    ("reports/lines.png", "demo-out/lines.png"),
+    ("reports/trace.png", "demo-out/trace.png"),
+    ("reports/area-best.png", "demo-out/area-best.png"),
+];
 
 /// A fenced block: language, file name (may be empty), text.
 struct Block {
@@ -186,9 +189,11 @@ fn every_command_of_the_readme_runs() {
         assert!(!ran.stderr.contains("warning"), "{command} warns: {}", ran.stderr);
     }
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
-    let expected = ["lines.csv", "lines.json", "lines.png", "trace.json", "trace.png"];
-    let mut all: Vec<String> = expected.iter().map(|name| format!("demo-out/{name}")).collect();
-    all.extend(expected[..3].iter().map(|name| format!("results/{name}")));
+    let scores = ["lines.csv", "lines.json", "lines.png"];
+    let area = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json"];
+    let demo = area.iter().chain(&scores).chain(&["trace.json", "trace.png"]);
+    let mut all: Vec<String> = demo.map(|name| format!("demo-out/{name}")).collect();
+    all.extend(scores.iter().map(|name| format!("results/{name}")));
     assert_eq!(names, all);
 }
 
@@ -331,16 +336,19 @@ fn every_listed_column_name_is_read() {
 
 #[test]
 fn columns_of_the_scores_are_those_written() {
-    let listed: Vec<String> = rows(section(&README.on_disk, "\nColumns of `lines.csv`:"))
-        .iter()
-        .flat_map(|row| quoted(&row[0]))
-        .collect();
-    let mut reader = csv::Reader::from_reader(README.outputs["demo-out/lines.csv"].as_slice());
-    let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
-    let (listed_set, written_set): (BTreeSet<_>, BTreeSet<_>) =
-        (listed.iter().collect(), written.iter().collect());
-    assert_eq!(listed_set, written_set);
-    assert_eq!(listed.len(), written.len());
+    for (title, file) in [
+        ("\nColumns of `lines.csv`:", "demo-out/lines.csv"),
+        ("\nColumns of `area.csv`, one row", "demo-out/area.csv"),
+    ] {
+        let listed: Vec<String> =
+            rows(section(&README.on_disk, title)).iter().flat_map(|row| quoted(&row[0])).collect();
+        let mut reader = csv::Reader::from_reader(README.outputs[file].as_slice());
+        let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
+        let (listed_set, written_set): (BTreeSet<_>, BTreeSet<_>) =
+            (listed.iter().collect(), written.iter().collect());
+        assert_eq!(listed_set, written_set, "{file}");
+        assert_eq!(listed.len(), written.len(), "{file}");
+    }
 }
 
 #[test]
@@ -370,7 +378,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "trace", "completions"] {
+    for command in ["", "check", "lines", "area", "trace", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()
