@@ -446,6 +446,27 @@ pub const KEYS: &[Key] = &[
         Default("50000"),
         "Most cells the solver keeps at once before it answers \"undecided\".",
     ),
+    number(
+        "area",
+        "cell_m",
+        Range::closed(1.0, 10_000.0, "m"),
+        Default("25"),
+        "Side of a start cell of the area map; the vehicle is lost at its centre.",
+    ),
+    key(
+        "area",
+        "headings",
+        Kind::Whole(Range::closed(1.0, 360.0, "")),
+        Default("16"),
+        "Headings run from every cell of the area map, evenly spaced from grid north.",
+    ),
+    number(
+        "area",
+        "longest_run_m",
+        Range::closed(10.0, 100_000.0, "m"),
+        Default("600"),
+        "Longest straight run of the area map.",
+    ),
 ];
 
 /// The row of a key.

@@ -19,7 +19,7 @@ use crate::track::plan::Plan;
 const RIM_TRACKS: usize = 6;
 
 /// With fewer certain detections than this, look-alikes are put down to too few landmarks.
-const FEW_DETECTIONS: usize = 3;
+pub(super) const FEW_DETECTIONS: usize = 3;
 
 /// The tracks that stand for the descent scatter.
 fn offset_tracks(setup: &Setup<'_>, plan: &Plan) -> Vec<Plan> {

@@ -3,6 +3,7 @@
 //! What comes from `guarantee.rs` is true for every error within the bounds. Everything else is *estimated* from
 //! simulated dives and carries a confidence interval. The two stand in fields of their own.
 
+mod area;
 mod check;
 mod ensemble;
 mod guarantee;
@@ -11,6 +12,7 @@ mod rank;
 pub mod statistics;
 mod trace;
 
+pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
 pub use check::{check, line_notices};
 pub use line::score_lines;
 pub use trace::{TraceError, TraceRequest, trace};

@@ -6,6 +6,7 @@ use clap::{Args, Parser, Subcommand};
 use clap_complete::Shell;
 
 use crate::alias::LISTED_DEFAULT;
+use crate::bounds;
 use crate::dive::RankBy;
 
 /// What `--help` teaches after the options.
@@ -16,7 +17,7 @@ Exit codes:
   2    the command line is wrong
   3    an input is wrong, or a file could not be read or written
   4    the bounds contradict the data: no position explains the detections (trace)
-  5    undecided: the solver ran out of its cell budget in some dives
+  5    undecided: the solver ran out of its cell budget in some dives or runs
   130  interrupted
 
 Planning aid, not for navigation. Results hold only while the stated error bounds hold and the map is as described; \
@@ -131,6 +132,28 @@ pub enum Command {
         #[arg(long, value_name = "NUMBER", default_value_t = LISTED_DEFAULT as u32, value_parser = clap::value_parser!(u32).range(1..=10_000))]
         listed: u32,
     },
+    /// Map how far the vehicle must run, from every cell of the search area and on every heading, until a guaranteed fix
+    ///
+    /// From the centre of each start cell a straight run on each heading is solved, lost in the whole search area, and the
+    /// guaranteed fix distance is reported: worst, best and median heading, share of the headings that fix within the
+    /// required distance, and why the others do not. With --out, writes area.json, area.csv, area-worst.png,
+    /// area-best.png and area-share.png.
+    Area {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Side of a start cell, metres, in place of the dive file's
+        #[arg(long, value_name = "METRES", value_parser = cell)]
+        cell_m: Option<f64>,
+        /// Headings from every cell, evenly spaced from grid north, in place of the dive file's
+        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..=360))]
+        headings: Option<u16>,
+        /// Longest straight run, metres, in place of the dive file's
+        #[arg(long, value_name = "METRES", value_parser = longest_run)]
+        longest_run_m: Option<f64>,
+    },
     /// Print a completion script for a shell
     Completions {
         /// The shell
@@ -151,6 +174,25 @@ fn separation(text: &str) -> Result<f64, String> {
     match text.parse::<f64>() {
         Ok(separation) if (1.0..=10_000.0).contains(&separation) => Ok(separation),
         _ => Err("accepted: a distance from 1 to 10000 m, such as 150".to_owned()),
+    }
+}
+
+/// Parses the side of a start cell.
+fn cell(text: &str) -> Result<f64, String> {
+    in_range_of("cell_m", text)
+}
+
+/// Parses the longest straight run.
+fn longest_run(text: &str) -> Result<f64, String> {
+    in_range_of("longest_run_m", text)
+}
+
+/// Parses a number in the range of a key of the area map.
+fn in_range_of(key: &str, text: &str) -> Result<f64, String> {
+    let key = bounds::find("area", key);
+    match (text.parse::<f64>(), key.kind) {
+        (Ok(number), bounds::Kind::Number(range)) if range.contains(number) => Ok(number),
+        _ => Err(format!("accepted: {}", key.accepted())),
     }
 }
 

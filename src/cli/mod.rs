@@ -2,6 +2,7 @@
 //!
 //! The only place that prints, reads the command line, sets the number of threads, or decides on an exit code.
 
+mod area;
 mod args;
 mod lookalikes;
 mod run;

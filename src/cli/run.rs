@@ -5,6 +5,7 @@ use std::path::{Path, PathBuf};
 use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
+use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::terminal::{print_notices, print_result, progress_bar};
@@ -71,6 +72,15 @@ fn run(arguments: &Arguments) -> Result<Exit> {
         Command::Lookalikes { dive, out, separation_m, listed } => {
             let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
             lookalikes(dive, &request, out.as_deref(), common)
+        }
+        Command::Area { dive, out, cell_m, headings, longest_run_m } => {
+            let asked = AreaRequest {
+                out: out.as_deref(),
+                cell_m: *cell_m,
+                headings: *headings,
+                longest_run_m: *longest_run_m,
+            };
+            area(dive, &asked, common)
         }
         Command::Completions { shell } => {
             let mut script = Vec::new();

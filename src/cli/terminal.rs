@@ -35,8 +35,13 @@ pub(super) fn print_notices<'a>(notices: impl IntoIterator<Item = &'a Notice>, q
 
 /// A progress bar over simulated dives on standard error; drawn only when that is a terminal and not `quiet`.
 pub(super) fn progress_bar(dives: usize, quiet: bool) -> ProgressBar {
+    progress_bar_over(dives, "dives", quiet)
+}
+
+/// A progress bar over anything that is counted.
+pub(super) fn progress_bar_over(count: usize, what: &str, quiet: bool) -> ProgressBar {
     let target = if quiet { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
-    let style = ProgressStyle::with_template("{bar:30} {pos}/{len} dives, {eta} left")
-        .expect("the template is fixed and valid");
-    ProgressBar::with_draw_target(Some(dives as u64), target).with_style(style)
+    let style = ProgressStyle::with_template(&format!("{{bar:30}} {{pos}}/{{len}} {what}, {{eta}} left"))
+        .expect("the template is valid");
+    ProgressBar::with_draw_target(Some(count as u64), target).with_style(style)
 }

@@ -84,6 +84,17 @@ pub struct Scoring {
     pub cell_budget: usize,
 }
 
+/// How the area map is cut up.
+#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+pub struct AreaOptions {
+    /// Side of a start cell, metres, above 0.
+    pub cell_m: f64,
+    /// Number of headings, evenly spaced from grid north, at least 1.
+    pub headings: usize,
+    /// Longest straight run from a start, metres, above 0.
+    pub longest_run_m: f64,
+}
+
 /// One input file and the fingerprint of its bytes.
 #[derive(Clone, Debug, PartialEq, serde::Serialize)]
 pub struct InputFile {
@@ -118,6 +129,8 @@ pub struct Dive {
     pub start: Start,
     /// How lines are scored.
     pub scoring: Scoring,
+    /// How the area map is cut up.
+    pub area: AreaOptions,
     /// Slices of the heading-bias interval that the solver takes one by one, at least 1.
     pub heading_slices: usize,
     /// Detections that may be strays and landmarks that may be missed.

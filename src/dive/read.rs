@@ -119,6 +119,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         sonar: widened_sonar,
         start: Start { search_area, scatter_m },
         scoring: settings.scoring?,
+        area: settings.area?,
         heading_slices: settings.heading_slices?,
         budget: settings.budget?,
         nothing_seen_inside,

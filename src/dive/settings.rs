@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use super::section::Document;
-use super::{Budget, ErrorShape, RankBy, Scoring};
+use super::{AreaOptions, Budget, ErrorShape, RankBy, Scoring};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -34,6 +34,7 @@ pub(super) struct Settings {
     pub nothing_seen: bool,
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
+    pub area: Option<AreaOptions>,
     pub heading_slices: Option<usize>,
     pub budget: Option<Budget>,
 }
@@ -72,6 +73,7 @@ impl Settings {
         let complete_inside = doc.file("map", "complete_inside", f);
         let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
         let scoring = scoring(doc, f);
+        let area = area(doc, f);
         let heading_slices = match doc.number("dead_reckoning", "heading_slices", f) {
             Some(given) => Some(given as usize),
             None => dead_reckoning.map(default_slices),
@@ -100,6 +102,7 @@ impl Settings {
             nothing_seen,
             scatter_m,
             scoring,
+            area,
             heading_slices,
             budget,
         }
@@ -330,6 +333,13 @@ fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {
     let strays = doc.number("budget", "strays", f);
     let misses = doc.number("budget", "misses", f);
     Some(Budget { strays: strays? as u8, misses: misses? as u8 })
+}
+
+fn area(doc: &Document<'_>, f: &mut Findings) -> Option<AreaOptions> {
+    let cell = doc.number("area", "cell_m", f);
+    let headings = doc.number("area", "headings", f);
+    let longest = doc.number("area", "longest_run_m", f);
+    Some(AreaOptions { cell_m: cell?, headings: headings? as usize, longest_run_m: longest? })
 }
 
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {

@@ -2,12 +2,14 @@
 //!
 //! Data files carry full precision and the names of their units; a missing value is empty or absent, never zero.
 
+mod area;
 mod csv;
 mod files;
 mod json;
 mod lookalikes;
 mod table;
 
+pub use area::{AreaCsv, AreaJson, area_table};
 pub use csv::LinesCsv;
 pub use files::{prepare, write_all};
 pub use json::{LinesJson, TraceJson, check_json};

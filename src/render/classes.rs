@@ -50,11 +50,21 @@ impl Scale {
         Self { quantity, limits_m: limits(&values, required_m), required_m }
     }
 
+    /// The scale for guaranteed distances `values`.
+    pub(super) fn of_guaranteed(values: &[f64], required_m: f64) -> Self {
+        Self { quantity: Quantity::Guaranteed, limits_m: limits(values, required_m), required_m }
+    }
+
+    /// How a distance is drawn.
+    pub(super) fn class_of(&self, value: f64) -> Finding {
+        let class = self.limits_m.iter().position(|&limit| value <= limit);
+        Finding::Class(class.unwrap_or(CLASSES - 1))
+    }
+
     /// How `segment` is drawn.
     pub(super) fn finding(&self, segment: &SegmentReport) -> Finding {
         if let Some(value) = value_m(self.quantity, segment) {
-            let class = self.limits_m.iter().position(|&limit| value <= limit);
-            return Finding::Class(class.unwrap_or(CLASSES - 1));
+            return self.class_of(value);
         }
         match self.quantity {
             Quantity::Guaranteed if segment.guaranteed.is_some() => Finding::NoFix,

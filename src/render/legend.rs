@@ -97,20 +97,20 @@ fn no_fix_label(quantity: Quantity) -> &'static str {
     }
 }
 
-fn swatch_width(k: f64) -> f64 {
+pub(super) fn swatch_width(k: f64) -> f64 {
     56.0 * k
 }
 
-fn label_left(column: Rect, k: f64) -> f64 {
+pub(super) fn label_left(column: Rect, k: f64) -> f64 {
     column.left + swatch_width(k) + 12.0 * k
 }
 
-fn label_room(column: Rect, k: f64) -> f64 {
+pub(super) fn label_room(column: Rect, k: f64) -> f64 {
     column.right - label_left(column, k)
 }
 
 /// One row: a piece of ribbon and its label.
-fn swatch(sheet: &mut Sheet, row: Rect, finding: Finding, label: &str) {
+pub(super) fn swatch(sheet: &mut Sheet, row: Rect, finding: Finding, label: &str) {
     let sizes = sheet.sizes;
     let k = sizes.k;
     let middle = (row.top + row.bottom) / 2.0;
@@ -124,7 +124,7 @@ fn swatch(sheet: &mut Sheet, row: Rect, finding: Finding, label: &str) {
 }
 
 /// The required distance, in a row of its own between two classes; returns where the row ends.
-fn required_mark(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale) -> f64 {
+pub(super) fn required_mark(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale) -> f64 {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let bottom = top + font.height_px() + 4.0 * k;
     let middle = (top + bottom) / 2.0;

@@ -7,6 +7,7 @@
 //! frame; labels inside are tried at candidate places against the rectangles and line corridors already taken, so
 //! nothing overlaps and nothing is clipped. [`lines_layout`] and [`trace_layout`] tell where the texts went.
 
+mod area;
 mod canvas;
 mod classes;
 mod colours;
@@ -26,7 +27,7 @@ mod trace;
 pub use colours::{CLASSES, ramp};
 pub use scene::{PlacedText, Rect};
 
-use crate::report::{LinesReport, LookAlikesReport, TraceReport};
+use crate::report::{AreaReport, LinesReport, LookAlikesReport, TraceReport};
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
@@ -118,6 +119,39 @@ pub fn lines_png(report: &LinesReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`lines_png`].
 pub fn lines_layout(report: &LinesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(lines::scene(report, size)?.texts)
+}
+
+/// Which figure of the area map a chart shows.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum AreaChart {
+    /// Longest guaranteed fix distance over the headings.
+    Worst,
+    /// Shortest guaranteed fix distance over the headings, with arrows.
+    Best,
+    /// Share of the headings with a guaranteed fix within the required distance.
+    Share,
+}
+
+/// Draws one figure of the area map over the search area.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or there is no start cell.
+pub fn area_png(report: &AreaReport, chart: AreaChart, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&area::scene(report, chart, size)?, size)
+}
+
+/// The texts of [`area_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`area_png`].
+pub fn area_layout(
+    report: &AreaReport,
+    chart: AreaChart,
+    size: &ChartSize,
+) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(area::scene(report, chart, size)?.texts)
 }
 
 /// Draws the feasible set of one simulated dive at chosen events, one small frame each.

@@ -83,7 +83,7 @@ impl Ribbon {
 }
 
 /// Colour under the marks.
-fn ground(finding: Finding) -> Rgb {
+pub(super) fn ground(finding: Finding) -> Rgb {
     match finding {
         Finding::Class(class) => ramp()[class],
         Finding::NoFix | Finding::NotScored => WHITE,

@@ -2,8 +2,10 @@
 //!
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
+mod area;
 mod lookalikes;
 
+pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
 pub use lookalikes::{
     ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,
     RegularLayout, TellTale,

@@ -119,6 +119,17 @@ impl Plan {
         Self { length_m: builder.along_m, pieces: builder.pieces, notes }
     }
 
+    /// A straight track from `start` on `heading_rad`. The heading is taken as it is, so that many tracks on one heading
+    /// have it to the last digit.
+    ///
+    /// # Panics
+    /// When `length_m` is not above 0.
+    pub fn straight(start: LocalPoint, heading_rad: f64, length_m: f64) -> Self {
+        assert!(length_m > 0.0, "a track has a length");
+        let piece = Piece { start, heading_rad, length_m, along_m: 0.0, in_turn: false };
+        Self { pieces: vec![piece], length_m, notes: Vec::new() }
+    }
+
     /// The same track moved by `east_m` and `north_m`.
     #[must_use]
     pub fn moved(&self, east_m: f64, north_m: f64) -> Self {

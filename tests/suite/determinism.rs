@@ -2,13 +2,14 @@
 
 use crate::support::program::{Workplace, project};
 
-fn compare(command: &str, files: &[&str]) {
+fn compare(command: &str, extra: &[&str], files: &[&str]) {
     let place = Workplace::new();
     let dive = project("demo-data/dive.toml");
     let run = |threads: &str| {
         let mut arguments =
             vec![command, dive.to_str().expect("a plain path"), "--threads", threads, "--out"];
         arguments.push(threads);
+        arguments.extend(extra);
         crate::support::program::Ran::of(place.command(arguments).output().expect("the program starts"))
             .expect(0)
     };
@@ -26,12 +27,18 @@ fn compare(command: &str, files: &[&str]) {
 
 #[test]
 fn scores_of_the_demo_do_not_depend_on_threads() {
-    compare("lines", &["lines.csv", "lines.json", "lines.png"]);
+    compare("lines", &[], &["lines.csv", "lines.json", "lines.png"]);
 }
 
 #[test]
 fn a_trace_of_the_demo_does_not_depend_on_threads() {
-    compare("trace", &["trace.json", "trace.png"]);
+    compare("trace", &[], &["trace.json", "trace.png"]);
+}
+
+#[test]
+fn an_area_map_of_the_demo_does_not_depend_on_threads() {
+    let files = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json"];
+    compare("area", &["--cell-m", "60", "--headings", "8"], &files);
 }
 
 #[test]
@@ -43,5 +50,5 @@ fn look_alikes_of_the_demo_do_not_depend_on_threads() {
         "lookalikes.json",
         "lookalikes.png",
     ];
-    compare("lookalikes", &files);
+    compare("lookalikes", &[], &files);
 }

@@ -4,6 +4,7 @@
 
 mod adversary;
 mod alias;
+mod area;
 mod backward;
 mod cli;
 mod corridor;

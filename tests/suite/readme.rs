@@ -23,11 +23,12 @@ const TESTS: &str = "cargo test --release";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 4] = [
+const PICTURES: [(&str, &str); 5] = [
     ("reports/lines.png", "demo-out/lines.png"),
     ("reports/trace.png", "demo-out/trace.png"),
     ("reports/lookalikes.png", "demo-out/lookalikes.png"),
     ("reports/lookalikes-panels.png", "demo-out/lookalikes-panels.png"),
+    ("reports/area-best.png", "demo-out/area-best.png"),
 ];
 
 /// A fenced block: language, file name (may be empty), text.
@@ -193,6 +194,11 @@ fn every_command_of_the_readme_runs() {
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
     let scores = ["lines.csv", "lines.json", "lines.png"];
     let others = [
+        "area-best.png",
+        "area-share.png",
+        "area-worst.png",
+        "area.csv",
+        "area.json",
         "lookalikes-panels.png",
         "lookalikes.csv",
         "lookalikes.geojson",
@@ -345,7 +351,7 @@ fn every_listed_column_name_is_read() {
 
 #[test]
 fn columns_of_the_files_are_those_written() {
-    for file in ["lines.csv", "lookalikes.csv"] {
+    for file in ["lines.csv", "area.csv", "lookalikes.csv"] {
         let heading = format!("\nColumns of `{file}`:");
         let table = section(&README.on_disk, &heading);
         // The tables of several files stand in one section.
@@ -387,7 +393,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "trace", "lookalikes", "completions"] {
+    for command in ["", "check", "lines", "area", "trace", "lookalikes", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()
