@@ -352,7 +352,7 @@ fn every_listed_column_name_is_read() {
 #[test]
 fn columns_of_the_files_are_those_written() {
     for file in ["lines.csv", "area.csv", "lookalikes.csv"] {
-        let heading = format!("\nColumns of `{file}`:");
+        let heading = format!("\nColumns of `{file}`");
         let table = section(&README.on_disk, &heading);
         // The tables of several files stand in one section.
         let table = table.split("\nColumns of `").next().expect("the beginning");

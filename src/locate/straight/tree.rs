@@ -182,10 +182,10 @@ impl<'a, 'f> Tree<'a, 'f> {
                 )
             } else {
                 // Chains by last landmark, as linked lists.
-                let mut after = vec![NONE; before.len()];
+                let mut after = Vec::with_capacity(before.len());
                 for number in 0..before.len() {
                     let head = &mut self.heads[before.chain(number)[depth - 1] as usize];
-                    after[number] = *head;
+                    after.push(*head);
                     *head = number as u32;
                 }
                 let heads = &self.heads;
