@@ -3,8 +3,13 @@
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
 mod area;
+mod remap;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
+pub use remap::{
+    CauseShare, GeographicOutline, LineOverRegions, REMAP_STATEMENT, RegionOutline, RegionStretch,
+    RemapCause, RemapRegion, RemapReport, Resurvey, TOO_FEW_LANDMARKS_NOTE,
+};
 
 use serde::Serialize;
 
@@ -243,6 +248,9 @@ pub struct SegmentReport {
     /// Guaranteed fix distance from here.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub guaranteed: Option<GuaranteedFix>,
+    /// Numbers of the remap regions that the segment runs over; empty when none or not asked.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub remap_regions: Vec<usize>,
 }
 
 /// Ambiguity against distance run, over all segment starts and dives of a line (*estimated*).

@@ -131,6 +131,7 @@ pub fn line(
                 detections_ahead: (count - segments.len()) * 2,
                 estimated: finding(segments.len(), count),
                 guaranteed: None,
+                remap_regions: Vec::new(),
             });
             along += length;
         }
