@@ -6,10 +6,11 @@ use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
 use super::args::{Arguments, Command, Common};
-use super::terminal::{print_notices, print_result, progress_bar};
-use crate::assess::{self, Setup, TraceRequest};
-use crate::dive::{Dive, RankBy};
-use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
+use super::terminal::{print_notices, print_result, progress_bar, runs_bar};
+use crate::assess::{self, RemapProgress, Setup, TraceRequest};
+use crate::dive::{AreaOptions, Dive, RankBy};
+use crate::export::{self, Exporter, LinesCsv, LinesJson, RemapCsv, RemapGeoJson, RemapJson, TraceJson};
+use crate::frame::LocalPoint;
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::LinesReport;
@@ -66,6 +67,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             trace(dive, &request, out.as_deref(), common)
         }
+        Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
@@ -197,6 +199,65 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
         return Ok(Exit::Contradiction);
     }
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })
+}
+
+fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
+    const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
+    let dive = read(path, common)?;
+    print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
+    let setup = Setup::new(&dive);
+    refuse_huge_map(&setup, &assess::remap_area_options(&dive), "remap.cell_m")?;
+    if let Some(out) = out {
+        export::prepare(out, &FILES, common.force)?;
+    }
+    let bar = runs_bar(common.quiet);
+    let report = assess::remap(&setup, &|progress| match progress {
+        RemapProgress::Planned(runs) => bar.inc_length(runs as u64),
+        RemapProgress::Done(runs) => bar.inc(runs as u64),
+    });
+    bar.finish_and_clear();
+    let json = RemapJson.bytes(&report)?;
+    if let Some(out) = out {
+        let files = [
+            (FILES[0], json.clone()),
+            (FILES[1], RemapCsv.bytes(&report)?),
+            (FILES[2], RemapGeoJson.bytes(&report)?),
+            (FILES[3], Vec::new()),
+        ];
+        export::write_all(out, &files, common.force)?;
+        say_written(out, &FILES, common);
+    }
+    let text = if common.json { json } else { export::remap_table(&report).into_bytes() };
+    print_result(&text).context("standard output")?;
+    if report.undecided {
+        let text = "some runs are undecided: the solver ran out of its cell budget; they count as runs without a fix; \
+                    raise scoring.cell_budget to decide them"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
+        return Ok(Exit::Undecided);
+    }
+    Ok(Exit::Done)
+}
+
+/// Refuses a map with more runs than memory holds; `key` sets the size of its cells.
+fn refuse_huge_map(setup: &Setup<'_>, options: &AreaOptions, key: &str) -> Result<()> {
+    let area = &setup.dive.start.search_area;
+    let extent = |of: fn(&LocalPoint) -> f64| {
+        let values = || area.iter().map(of);
+        let (low, high) = (values().min_by(f64::total_cmp), values().max_by(f64::total_cmp));
+        high.zip(low).map_or(0.0, |(high, low)| high - low)
+    };
+    let cells =
+        (extent(|p| p.east_m) / options.cell_m + 1.0) * (extent(|p| p.north_m) / options.cell_m + 1.0);
+    let runs = cells * options.headings as f64;
+    if runs > assess::AREA_STARTS_MAX as f64 {
+        anyhow::bail!(
+            "{key}: {} m gives about {runs:.0} runs over the search area, more than {}; take larger cells or a smaller search area",
+            options.cell_m,
+            assess::AREA_STARTS_MAX
+        );
+    }
+    Ok(())
 }
 
 fn warning(text: String) -> Notice {

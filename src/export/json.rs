@@ -46,7 +46,7 @@ pub fn check_json(report: &CheckReport) -> Result<Vec<u8>, ExportError> {
 }
 
 /// Indented JSON with a newline at its end. Numbers are the shortest that read back as the same value.
-fn pretty(file: &'static str, report: &impl Serialize) -> Result<Vec<u8>, ExportError> {
+pub(super) fn pretty(file: &'static str, report: &impl Serialize) -> Result<Vec<u8>, ExportError> {
     let mut bytes = serde_json::to_vec_pretty(report)
         .map_err(|error| ExportError::Format { file, reason: error.to_string() })?;
     bytes.push(b'\n');

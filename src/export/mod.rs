@@ -5,11 +5,13 @@
 mod csv;
 mod files;
 mod json;
+mod remap;
 mod table;
 
 pub use csv::LinesCsv;
 pub use files::{prepare, write_all};
 pub use json::{LinesJson, TraceJson, check_json};
+pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
 pub use table::{check_text, lines_table, trace_table};
 
 use std::path::PathBuf;

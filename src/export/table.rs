@@ -239,14 +239,14 @@ fn contradicted(contradiction: &Contradiction) -> String {
 }
 
 /// An empty table; all columns but number `left` are set to the right.
-fn plain(header: &[String], left: usize) -> Table {
+pub(super) fn plain(header: &[String], left: usize) -> Table {
     let mut table = Table::new();
     table.load_style(ASCII_FULL_CONDENSED).set_content_arrangement(ContentArrangement::Disabled);
     table.set_header(cells(header.to_vec(), left));
     table
 }
 
-fn add(table: &mut Table, row: Vec<String>, left: usize) {
+pub(super) fn add(table: &mut Table, row: Vec<String>, left: usize) {
     table.add_row(cells(row, left));
 }
 
@@ -266,7 +266,7 @@ fn share(estimate: Estimate) -> String {
     }
 }
 
-fn per_cent(share: f64) -> String {
+pub(super) fn per_cent(share: f64) -> String {
     format!("{:.1}", share * 100.0)
 }
 
@@ -274,16 +274,16 @@ fn metres(value: Option<f64>) -> String {
     value.map_or_else(none, |value| format!("{value:.0}"))
 }
 
-fn none() -> String {
+pub(super) fn none() -> String {
     "none".to_owned()
 }
 
-fn short(value: f64) -> String {
+pub(super) fn short(value: f64) -> String {
     // The shortest text that reads back as the same number.
     value.to_string()
 }
 
 /// A name without control characters, which a terminal would obey.
-fn printable(name: &str) -> String {
+pub(super) fn printable(name: &str) -> String {
     name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect()
 }

@@ -78,7 +78,7 @@ impl RegionIndex {
             (from.east_m - self.grid.west_m, to.east_m - self.grid.west_m),
             (from.north_m - self.grid.south_m, to.north_m - self.grid.south_m),
         ] {
-            let (low, high) = (start.total_cmp(&end).is_lt()).then_some((start, end)).unwrap_or((end, start));
+            let (low, high) = if start < end { (start, end) } else { (end, start) };
             let (first, last) = ((low / cell_m).ceil() as i64, (high / cell_m).floor() as i64);
             let crossings = (first..=last).map(|k| (k as f64 * cell_m - start) / (end - start));
             cuts.extend(crossings.filter(|t| *t > 0.0 && *t < 1.0));
