@@ -19,7 +19,7 @@ use crate::track::plan::Plan;
 const RIM_TRACKS: usize = 6;
 
 /// With fewer certain detections than this, look-alikes are put down to too few landmarks.
-const FEW_DETECTIONS: usize = 3;
+pub(super) const FEW_DETECTIONS: usize = 3;
 
 /// The tracks that stand for the descent scatter.
 fn offset_tracks(setup: &Setup<'_>, plan: &Plan) -> Vec<Plan> {
@@ -103,8 +103,7 @@ fn without(cause: Cause, reason: String, certain_detections: usize) -> Guarantee
     }
 }
 
-/// Why a composed run has no fix, as a word and in words.
-pub(super) fn why_not(outcome: &ComposedOutcome, fix_size_m: f64) -> (Cause, String) {
+fn why_not(outcome: &ComposedOutcome, fix_size_m: f64) -> (Cause, String) {
     let certain = outcome.certain_sightings;
     if outcome.is_undecided {
         return (Cause::Undecided, "the cell budget ran out (scoring.cell_budget)".to_owned());

@@ -322,23 +322,40 @@ pub fn box_reaches(b: Box2) -> Reaches {
 }
 
 /// Reaches of the polar patch { ρ·(sin θ, cos θ) : ρ ∈ `rho`, θ ∈ `theta` }, which are those of its convex hull.
+pub fn polar_reaches(rho: Interval, theta: Interval) -> Reaches {
+    Fan::new(theta).reaches(rho)
+}
+
+/// A range of bearings, ready for polar patches of many lengths.
 ///
 /// dᵢ·ρ(sin θ, cos θ) = ρ·|dᵢ|·cos(θ − φᵢ) with φᵢ the bearing of dᵢ; evaluated outward.
-pub fn polar_reaches(rho: Interval, theta: Interval) -> Reaches {
-    static POLAR: LazyLock<[(Interval, Interval); DIRECTION_COUNT]> = LazyLock::new(|| {
-        DIRECTIONS.map(|[e, n]| {
-            let length = (Interval::point(e).sqr() + Interval::point(n).sqr()).sqrt();
-            let bearing = libm::atan2(e, n);
-            // `libm::atan2` is within 1 ulp; four steps outward leave room to spare.
-            let (lo, hi) =
-                ((0..4).fold(bearing, |x, _| x.next_down()), (0..4).fold(bearing, |x, _| x.next_up()));
-            (length, Interval::new(lo, hi))
-        })
-    });
-    std::array::from_fn(|i| {
-        let (length, bearing) = POLAR[i];
-        (rho * (length * (theta - bearing).cos())).hi()
-    })
+#[derive(Clone, Copy, Debug)]
+pub struct Fan([Interval; DIRECTION_COUNT]);
+
+impl Fan {
+    /// The bearings `theta`, radians.
+    pub fn new(theta: Interval) -> Self {
+        static POLAR: LazyLock<[(Interval, Interval); DIRECTION_COUNT]> = LazyLock::new(|| {
+            DIRECTIONS.map(|[e, n]| {
+                let length = (Interval::point(e).sqr() + Interval::point(n).sqr()).sqrt();
+                let bearing = libm::atan2(e, n);
+                // `libm::atan2` is within 1 ulp; four steps outward leave room to spare.
+                let (lo, hi) =
+                    ((0..4).fold(bearing, |x, _| x.next_down()), (0..4).fold(bearing, |x, _| x.next_up()));
+                (length, Interval::new(lo, hi))
+            })
+        });
+        Self(std::array::from_fn(|i| {
+            let (length, bearing) = POLAR[i];
+            length * (theta - bearing).cos()
+        }))
+    }
+
+    /// Reaches of the patch with lengths `rho`, rounded up.
+    #[inline]
+    pub fn reaches(&self, rho: Interval) -> Reaches {
+        self.0.map(|along| (rho * along).hi())
+    }
 }
 
 /// Reaches of the mirrored set −A: the reach of −A in direction i is that of A in direction i + 8.

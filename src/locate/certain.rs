@@ -38,18 +38,9 @@ pub(super) fn certain_sightings(scene: &Scene<'_>, plan: &Plan, bounds: &Bounds)
         let near = ends.minkowski_sum(Box2 { east: reach, north: reach });
         let mut numbers: Vec<usize> = scene.index.meeting(near).collect();
         numbers.sort_unstable();
+        let geometry = PieceGeometry::new(scene, piece, bounds);
         for landmark in numbers {
-            let geometry = Approach::new(scene, piece, landmark, bounds);
-            match scene.sonar.kind {
-                SonarKind::SideLooking { nadir_gap_rad } => found.extend(geometry.abeam(nadir_gap_rad)),
-                SonarKind::ForwardLooking { half_sector_rad } => {
-                    let entering = geometry.entering(half_sector_rad);
-                    if entering.is_some() {
-                        found.extend(geometry.leaving(half_sector_rad));
-                    }
-                    found.extend(entering);
-                }
-            }
+            geometry.sightings(scene, piece, landmark, &mut found);
         }
     }
     found
@@ -67,41 +58,111 @@ pub fn certain_landmarks(scene: &Scene<'_>, plan: &Plan, bounds: &Bounds, within
     numbers.len()
 }
 
+/// What all sightings from one straight piece of the track have in common. Nothing here depends on where the piece
+/// starts or ends, so it serves all pieces on one heading.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct PieceGeometry {
+    /// Sine and cosine of the heading.
+    sin: Interval,
+    cos: Interval,
+    /// Altitude above the seabed.
+    altitude: Interval,
+    /// Half of the crab angle's interval; none when the drift may be as fast as the vehicle.
+    crab_rad: Option<f64>,
+    /// Of the beams of a side-looking sonar; none when the beam may point along the track.
+    beams: Option<Beams>,
+}
+
+/// The two beams of a side-looking sonar, against the normal of the track.
+#[derive(Clone, Copy, Debug)]
+struct Beams {
+    /// Angle off the normal: crab and beam error.
+    off: Interval,
+    cos_off: Interval,
+    tan_off: Interval,
+    /// Farthest end of the nadir gap, metres.
+    gap_m: f64,
+}
+
+impl PieceGeometry {
+    pub fn new(scene: &Scene<'_>, piece: &Piece, bounds: &Bounds) -> Self {
+        let heading = Interval::point(piece.heading_rad);
+        let ratio = bounds.dead_reckoning.drift_mps / scene.vehicle.speed_mps;
+        let altitude = bounds.altitude();
+        // `libm::asin` is within 1 ulp; the resolution of angles covers it many times over.
+        let crab_rad = (ratio < 1.0).then(|| libm::asin(ratio) + RESOLUTION_RAD);
+        let beams = match scene.sonar.kind {
+            SonarKind::SideLooking { nadir_gap_rad } => crab_rad
+                .map(|crab_rad| crab_rad + scene.sonar.bearing_error_rad + RESOLUTION_RAD)
+                .filter(|&off| off < 1.0)
+                .map(|off| {
+                    let off = Interval::new(-off, off);
+                    let nadir_gap = Interval::point(nadir_gap_rad);
+                    let gap = (altitude * nadir_gap.sin()) / nadir_gap.cos();
+                    Beams { off, cos_off: off.cos(), tan_off: off.sin() / off.cos(), gap_m: gap.hi() }
+                }),
+            SonarKind::ForwardLooking { .. } => None,
+        };
+        Self { sin: heading.sin(), cos: heading.cos(), altitude, crab_rad, beams }
+    }
+
+    /// Adds the certain sightings of a landmark from `piece`, which is on the heading of this geometry.
+    pub fn sightings(
+        &self,
+        scene: &Scene<'_>,
+        piece: &Piece,
+        landmark: usize,
+        found: &mut Vec<CertainSighting>,
+    ) {
+        let approach = Approach::new(scene, piece, landmark, self);
+        match scene.sonar.kind {
+            SonarKind::SideLooking { .. } => found.extend(approach.abeam()),
+            SonarKind::ForwardLooking { half_sector_rad } => {
+                let entering = approach.entering(half_sector_rad);
+                if entering.is_some() {
+                    found.extend(approach.leaving(half_sector_rad));
+                }
+                found.extend(entering);
+            }
+        }
+    }
+}
+
+/// World direction, less γ, of a landmark that a beam of a side-looking sonar sees on a side of the track (1 for
+/// starboard, −1 for port); none when the beam may point along the track.
+pub(super) fn beam_bearing(geometry: &PieceGeometry, side: f64, heading_rad: f64) -> Option<Interval> {
+    let off = geometry.beams?.off;
+    let quarter = Interval::point(side * std::f64::consts::FRAC_PI_2) + Interval::around(0.0, RESOLUTION_RAD);
+    Some((quarter + off) + Interval::point(heading_rad))
+}
+
 /// One landmark's box seen from one straight piece of the track.
 struct Approach<'a> {
     scene: &'a Scene<'a>,
     piece: &'a Piece,
+    geometry: &'a PieceGeometry,
     landmark: usize,
     /// Along the piece from its start, metres.
     ahead: Interval,
     /// To starboard of the piece, metres.
     starboard: Interval,
-    /// Altitude above the seabed.
-    altitude: Interval,
-    /// Half of the crab angle's interval; none when the drift may be as fast as the vehicle.
-    crab_rad: Option<f64>,
 }
 
 impl<'a> Approach<'a> {
-    fn new(scene: &'a Scene<'a>, piece: &'a Piece, number: usize, bounds: &'a Bounds) -> Self {
+    fn new(scene: &'a Scene<'a>, piece: &'a Piece, number: usize, geometry: &'a PieceGeometry) -> Self {
         let landmark: &Landmark = &scene.landmarks[number];
         let b = landmark.bounds();
         let slack = Interval::around(0.0, RESOLUTION_M);
         let east = b.east - Interval::point(piece.start.east_m) + slack;
         let north = b.north - Interval::point(piece.start.north_m) + slack;
-        let heading = Interval::point(piece.heading_rad);
-        let (sin, cos) = (heading.sin(), heading.cos());
-        let ratio = bounds.dead_reckoning.drift_mps / scene.vehicle.speed_mps;
+        let (sin, cos) = (geometry.sin, geometry.cos);
         Self {
             scene,
             piece,
-
+            geometry,
             landmark: number,
             ahead: east * sin + north * cos,
             starboard: east * cos - north * sin,
-            altitude: bounds.altitude(),
-            // `libm::asin` is within 1 ulp; the resolution of angles covers it many times over.
-            crab_rad: (ratio < 1.0).then(|| libm::asin(ratio) + RESOLUTION_RAD),
         }
     }
 
@@ -123,7 +184,7 @@ impl<'a> Approach<'a> {
             landmark: self.landmark,
             window: window + Interval::point(self.piece.along_m),
             rho,
-            theta: theta + Interval::point(self.piece.heading_rad),
+            theta,
             heading_rad: self.piece.heading_rad,
         })
     }
@@ -136,42 +197,34 @@ impl<'a> Approach<'a> {
         let twice = Interval::point(2.0) * Interval::point(a);
         let lo = ((slant * (one - b)) - twice) / (one + b);
         let hi = ((slant * (one + b)) + twice) / (one - b);
-        horizontal_range(lo.hull(hi).intersection(Interval::new(0.0, f64::INFINITY)), self.altitude)
+        horizontal_range(lo.hull(hi).intersection(Interval::new(0.0, f64::INFINITY)), self.geometry.altitude)
     }
 
     /// Side-looking sonar: the beam passes the landmark.
-    fn abeam(&self, nadir_gap_rad: f64) -> Option<CertainSighting> {
+    fn abeam(&self) -> Option<CertainSighting> {
         let sonar = &self.scene.sonar;
         let across = self.across()?;
-        // Angle of the beam off the track's normal: crab and beam error.
-        let off = self.crab_rad? + sonar.bearing_error_rad + RESOLUTION_RAD;
-        if off >= 1.0 {
-            return None;
-        }
-        let off = Interval::new(-off, off);
-        let rho = across / off.cos();
-        let slant = (rho.sqr() + self.altitude.sqr()).sqrt();
-        let gap =
-            (self.altitude * Interval::point(nadir_gap_rad).sin()) / Interval::point(nadir_gap_rad).cos();
+        let beams = self.geometry.beams?;
+        let rho = across / beams.cos_off;
+        let slant = (rho.sqr() + self.geometry.altitude.sqr()).sqrt();
         let is_in_swath =
-            slant.lo() > sonar.range_min_m && slant.hi() < sonar.range_max_m && rho.lo() > gap.hi();
+            slant.lo() > sonar.range_min_m && slant.hi() < sonar.range_max_m && rho.lo() > beams.gap_m;
         if !is_in_swath {
             return None;
         }
-        let window = self.ahead + across * (off.sin() / off.cos());
+        let window = self.ahead + across * beams.tan_off;
         let side = if self.starboard.lo() > 0.0 { 1.0 } else { -1.0 };
-        let quarter =
-            Interval::point(side * std::f64::consts::FRAC_PI_2) + Interval::around(0.0, RESOLUTION_RAD);
-        self.certain(window, self.composed_range(slant), quarter + off)
+        let theta = beam_bearing(self.geometry, side, self.piece.heading_rad)?;
+        self.certain(window, self.composed_range(slant), theta)
     }
 
     /// Forward-looking sonar: the landmark comes within the far range while inside the sector.
     fn entering(&self, half_sector_rad: f64) -> Option<CertainSighting> {
         let sonar = &self.scene.sonar;
         let slant = Interval::point(sonar.range_max_m);
-        let far = horizontal_range(slant, self.altitude);
+        let far = horizontal_range(slant, self.geometry.altitude);
         let forward = (far.sqr() - self.starboard.sqr()).sqrt();
-        let near = horizontal_range(Interval::point(sonar.range_min_m), self.altitude);
+        let near = horizontal_range(Interval::point(sonar.range_min_m), self.geometry.altitude);
         if far.is_empty() || forward.is_empty() || forward.lo() <= 0.0 {
             return None;
         }
@@ -180,7 +233,7 @@ impl<'a> Approach<'a> {
             return None;
         }
         let bearing = bearing_of(self.starboard, forward);
-        let crab = Interval::around(0.0, self.crab_rad?);
+        let crab = Interval::around(0.0, self.geometry.crab_rad?);
         let relative = bearing + crab;
         let inside = Interval::new(-half_sector_rad, half_sector_rad);
         if !(inside.contains_interval(relative)
@@ -190,26 +243,28 @@ impl<'a> Approach<'a> {
             return None;
         }
         let twice_error = Interval::around(0.0, 2.0 * sonar.bearing_error_rad + RESOLUTION_RAD);
-        self.certain(self.ahead - forward, self.composed_range(slant), bearing + twice_error)
+        let theta = bearing + twice_error + Interval::point(self.piece.heading_rad);
+        self.certain(self.ahead - forward, self.composed_range(slant), theta)
     }
 
     /// Forward-looking sonar: the landmark leaves across the edge of the sector, having entered.
     fn leaving(&self, half_sector_rad: f64) -> Option<CertainSighting> {
         let sonar = &self.scene.sonar;
         let across = self.across()?;
-        let edge = Interval::around(half_sector_rad, self.crab_rad?);
+        let edge = Interval::around(half_sector_rad, self.geometry.crab_rad?);
         if edge.hi() > LEAVING_SECTOR_MAX_RAD || edge.lo() <= 0.0 {
             return None;
         }
         let rho = across / edge.sin();
-        let slant = (rho.sqr() + self.altitude.sqr()).sqrt();
+        let slant = (rho.sqr() + self.geometry.altitude.sqr()).sqrt();
         if slant.lo() <= sonar.range_min_m || slant.hi() >= sonar.range_max_m {
             return None;
         }
         let window = self.ahead - across * (edge.cos() / edge.sin());
         let side = if self.starboard.lo() > 0.0 { edge } else { -edge };
         let twice_error = Interval::around(0.0, 2.0 * sonar.bearing_error_rad + RESOLUTION_RAD);
-        self.certain(window, self.composed_range(slant), side + twice_error)
+        let theta = side + twice_error + Interval::point(self.piece.heading_rad);
+        self.certain(window, self.composed_range(slant), theta)
     }
 }
 

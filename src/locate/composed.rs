@@ -101,21 +101,7 @@ impl ComposedRun {
     /// Prepares the composed run along `plan` (which is taken as the vehicle's true track), to be solved from any of
     /// `starts_m`, ascending distances along it.
     pub fn new(scene: &Scene<'_>, plan: &Plan, starts_m: &[f64], bounds: &Bounds) -> Self {
-        let windows = gamma_windows(bounds);
-        let dead_reckoning = &bounds.dead_reckoning;
-        let one = Interval::point(1.0);
-        let s = Interval::point(dead_reckoning.scale_error);
-        let scale = ((one - s) / (one + s)).hull((one + s) / (one - s));
-        let drift_mps =
-            (Interval::point(dead_reckoning.drift_mps) * (one + Interval::point(scale.hi()))).hi();
-        let noise = Interval::around(0.0, dead_reckoning.heading_noise_rad);
-        let heading_error = noise + noise + Interval::around(0.0, COMPOSED_RESOLUTION_RAD);
-        let travel_error = |gamma: Interval| TravelError {
-            scale,
-            heading: gamma + heading_error,
-            drift_mps,
-            slack_m: COMPOSED_RESOLUTION_M,
-        };
+        let travels = composed_travels(bounds);
         let sightings = certain_sightings(scene, plan, bounds);
         // The end of the line is a mark too, so that a fix is known to last until there.
         let mut stops: Vec<(f64, Option<&CertainSighting>)> =
@@ -138,23 +124,18 @@ impl ComposedRun {
             at_m = along_m;
             run.steps.push(Step {
                 along_m,
-                travel: windows.iter().map(|&gamma| travel_error(gamma).reaches(&pieces)).collect(),
+                travel: travels.iter().map(|travel| travel.reaches(&pieces)).collect(),
                 // What a dive does not see is not used: W is larger without it, and the claim holds.
-                passage: vec![None; windows.len()],
+                passage: vec![None; travels.len()],
                 sighting: sighting.map(|x| {
-                    windows
-                        .iter()
-                        .map(|&gamma| {
-                            Some(x.look(gamma + heading_error, &travel_error(gamma), scene.vehicle.speed_mps))
-                        })
-                        .collect()
+                    travels.iter().map(|travel| Some(x.look(travel, scene.vehicle.speed_mps))).collect()
                 }),
             });
             run.earliest_m.push(sighting.map_or(along_m, |x| x.window.lo()));
             run.landmarks.push(sighting.map(|x| x.landmark));
             run.drift_apart.push(match sighting {
                 None => Vec::new(),
-                Some(x) => windows.iter().map(|&gamma| x.drift_apart(&travel_error(gamma))).collect(),
+                Some(x) => travels.iter().map(|travel| x.drift_apart(travel)).collect(),
             });
         }
         run
@@ -235,8 +216,8 @@ impl ComposedRun {
 
 impl CertainSighting {
     /// The relative positions of the history at the end of the window.
-    fn look(&self, heading_error: Interval, travel: &TravelError, speed_mps: f64) -> Look {
-        let mut from_landmark = mirrored(&polar_reaches(self.rho, self.theta + heading_error));
+    pub(super) fn look(&self, travel: &TravelError, speed_mps: f64) -> Look {
+        let mut from_landmark = mirrored(&polar_reaches(self.rho, self.theta + travel.heading));
         add_reaches(&mut from_landmark, &self.carried(travel, speed_mps));
         add_reaches(&mut from_landmark, &disc_reaches(COMPOSED_RESOLUTION_M));
         Look::new(from_landmark)
@@ -255,7 +236,7 @@ impl CertainSighting {
     }
 
     /// conv{0, s·u − κ·s·Rot·u} with s the width of the window.
-    fn drift_apart(&self, travel: &TravelError) -> Reaches {
+    pub(super) fn drift_apart(&self, travel: &TravelError) -> Reaches {
         let length = Interval::point(self.window.width());
         let heading = Interval::point(self.heading_rad);
         let mut apart = polar_reaches(length, heading);
@@ -272,6 +253,26 @@ fn spread_over_window(set: &Feasible, drift_apart: &[Reaches]) -> Option<f64> {
         .map(|state| state.cell.minkowski_sum(&drift_apart[usize::from(state.slice)]))
         .reduce(|a, b| a.hull(&b))
         .map(|hull| hull.diameter_m())
+}
+
+/// Travel of a history against the planned motion, one for each window of γ; its heading is γ ± 2ν.
+pub(super) fn composed_travels(bounds: &Bounds) -> Vec<TravelError> {
+    let dead_reckoning = &bounds.dead_reckoning;
+    let one = Interval::point(1.0);
+    let s = Interval::point(dead_reckoning.scale_error);
+    let scale = ((one - s) / (one + s)).hull((one + s) / (one - s));
+    let drift_mps = (Interval::point(dead_reckoning.drift_mps) * (one + Interval::point(scale.hi()))).hi();
+    let noise = Interval::around(0.0, dead_reckoning.heading_noise_rad);
+    let heading_error = noise + noise + Interval::around(0.0, COMPOSED_RESOLUTION_RAD);
+    gamma_windows(bounds)
+        .into_iter()
+        .map(|gamma| TravelError {
+            scale,
+            heading: gamma + heading_error,
+            drift_mps,
+            slack_m: COMPOSED_RESOLUTION_M,
+        })
+        .collect()
 }
 
 /// The windows of γ: width 2δ at steps of δ over [−2B, 2B], δ = 2B/n.

@@ -32,6 +32,11 @@ impl SolverMap {
         &self.index
     }
 
+    /// The box of landmark number `landmark`.
+    pub(super) fn box_of(&self, landmark: usize) -> Box2 {
+        self.boxes[landmark]
+    }
+
     /// The positions from which landmark number `landmark` may have been seen when `look` explains its detection.
     pub(super) fn vantage(&self, landmark: usize, look: &Look) -> Reaches {
         let mut vantage = self.reaches[landmark];

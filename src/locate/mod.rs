@@ -27,6 +27,7 @@ mod feasible;
 mod forward;
 mod history;
 mod steps;
+mod straight;
 mod unseen;
 mod watch;
 
@@ -38,5 +39,6 @@ pub use feasible::{Feasible, State};
 pub use forward::{EventSummary, Outcome, Solver, SolverMap};
 pub use history::{Candidates, History};
 pub use steps::{Bounds, RESOLUTION_M, RESOLUTION_RAD, Step, steps};
+pub use straight::{StraightOutcome, StraightRuns};
 pub use unseen::{MISSES_MAX, Missed, Passage, Silence};
 pub use watch::{FixHistory, FixWatch};

@@ -2,6 +2,7 @@
 #![allow(clippy::unwrap_used, reason = "a test that unwraps nothing fails, as it should")]
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
+mod area;
 mod backward;
 mod cli;
 mod corridor;

@@ -1,7 +1,7 @@
 //! The area map: how far must the vehicle run straight from here, on this heading, until its position is unambiguous?
 //!
 //! *What is computed.* For the centre of every start cell and every heading the guaranteed fix distance of a straight
-//! run ([`crate::locate::ComposedRun`]), lost in the whole search area. The search area bounds the start only: a run may
+//! run ([`crate::locate::StraightRuns`]), lost in the whole search area. The search area bounds the start only: a run may
 //! leave it.
 //!
 //! *What it holds for.* Starts at the centres of the cells, on the headings computed. Everything here is guaranteed; no
@@ -11,20 +11,25 @@
 //! one more sighting for a vehicle that passes it, but also one more explanation of what a vehicle sees elsewhere. A
 //! second rock beside the only one on the map turns a fix into a look-alike.
 
-mod plain;
+use std::collections::BTreeMap;
 
 use geo::{Contains, Coord, LineString, Polygon};
 use rayon::prelude::*;
 
 use super::Setup;
+use super::guarantee::FEW_DETECTIONS;
 use super::statistics::{at_rank_of_share, sort_missing_last};
 use crate::dive::AreaOptions;
 use crate::frame::LocalPoint;
 use crate::interval::{larger, smaller};
+use crate::locate::{StraightOutcome, StraightRuns};
 use crate::report::{AreaCell, AreaGrid, AreaReport, Cause, NoFixCounts, RunOutcome};
 
 /// Most runs (cells times headings) of one map: beyond it the result would not fit into the memory of a laptop.
 pub const AREA_STARTS_MAX: usize = 50_000_000;
+
+/// Side of a block of cells that is solved in one go.
+const BLOCK_CELLS: usize = 32;
 
 /// The grid of start cells over the search area, and the cells (column, row) whose centre lies in it, row by row.
 pub fn area_grid(setup: &Setup<'_>, options: &AreaOptions) -> (AreaGrid, Vec<(usize, usize)>) {
@@ -96,17 +101,56 @@ pub(super) fn outcomes(
         tick(places.len() * count);
         return vec![RunOutcome::NoFix(Cause::DetectionNotCertain); places.len() * count];
     }
-    let plain = plain::Plain::new(setup, options.longest_run_m);
-    places
+    let runs = StraightRuns::new(
+        setup.scene(),
+        setup.solver(),
+        setup.bounds(),
+        setup.dive.budget.misses,
+        options.longest_run_m,
+    );
+    let blocks = blocks(places);
+    let work: Vec<(usize, usize)> =
+        (0..blocks.len()).flat_map(|block| (0..count).map(move |heading| (block, heading))).collect();
+    let solved: Vec<Vec<RunOutcome>> = work
         .par_iter()
-        .flat_map_iter(|&(column, row)| {
-            let centre = grid.centre(column, row);
-            let runs: Vec<RunOutcome> =
-                headings_rad.iter().map(|&heading_rad| plain.outcome(centre, heading_rad)).collect();
-            tick(count);
-            runs
+        .map(|&(block, heading)| {
+            let starts: Vec<LocalPoint> =
+                blocks[block].iter().map(|&place| grid.centre(places[place].0, places[place].1)).collect();
+            let outcomes = runs.solve(headings_rad[heading], &starts).into_iter().map(outcome).collect();
+            tick(starts.len());
+            outcomes
         })
-        .collect()
+        .collect();
+    let mut all = vec![RunOutcome::NoFix(Cause::Undecided); places.len() * count];
+    for ((block, heading), outcomes) in work.into_iter().zip(solved) {
+        for (&place, outcome) in blocks[block].iter().zip(outcomes) {
+            all[place * count + heading] = outcome;
+        }
+    }
+    all
+}
+
+/// Numbers of the cells in square blocks, each solved in one go.
+fn blocks(places: &[(usize, usize)]) -> Vec<Vec<usize>> {
+    let mut blocks: BTreeMap<(usize, usize), Vec<usize>> = BTreeMap::new();
+    for (number, (column, row)) in places.iter().enumerate() {
+        blocks.entry((row / BLOCK_CELLS, column / BLOCK_CELLS)).or_default().push(number);
+    }
+    blocks.into_values().collect()
+}
+
+/// The outcome of one run, with the cause that a segment of a line would get.
+fn outcome(found: StraightOutcome) -> RunOutcome {
+    match found {
+        StraightOutcome::Fix(fix_m) => RunOutcome::Fix(fix_m),
+        StraightOutcome::Undecided => RunOutcome::NoFix(Cause::Undecided),
+        StraightOutcome::NoFix { certain_sightings: 0, .. } => RunOutcome::NoFix(Cause::TooFewLandmarks),
+        StraightOutcome::NoFix { has_places: false, .. } => RunOutcome::NoFix(Cause::TooWide),
+        StraightOutcome::NoFix { certain_sightings, .. } if certain_sightings < FEW_DETECTIONS => {
+            RunOutcome::NoFix(Cause::TooFewLandmarks)
+        }
+        StraightOutcome::NoFix { .. } => RunOutcome::NoFix(Cause::LookAlikes),
+    }
 }
 
 /// Sums the headings of a cell up.
