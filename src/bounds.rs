@@ -485,14 +485,14 @@ pub const KEYS: &[Key] = &[
         "remap",
         "cured_share",
         Range::above(0.0, 1.0, ""),
-        Default("0.9"),
+        Default("0.75"),
         "Share of the cells of a region that must pass for the region to count as cured.",
     ),
     key(
         "remap",
         "smallest_region_cells",
         Kind::Whole(Range::closed(1.0, 10_000.0, "")),
-        Default("4"),
+        Default("10"),
         "Fewest cells of a region; smaller specks are counted and left out.",
     ),
     number(

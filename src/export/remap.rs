@@ -12,13 +12,14 @@ use crate::report::{RemapCause, RemapRegion, RemapReport, Resurvey};
 const DEGREE_SCALE: f64 = 1e9;
 
 /// Columns of `remap.csv` beside those of the causes.
-const COLUMNS: [&str; 10] = [
+const COLUMNS: [&str; 11] = [
     "region",
     "cause",
     "label_easting_m",
     "label_northing_m",
     "cells",
     "area_km2",
+    "survey_margin_m",
     "survey_km2",
     "landmarks_inside",
     "landmarks_surveyed",
@@ -83,6 +84,7 @@ impl Exporter for RemapCsv {
                 region.label_at.north_m.to_string(),
                 region.cells.to_string(),
                 region.area_km2.to_string(),
+                region.survey_margin_m.to_string(),
                 region.survey_km2.to_string(),
                 region.landmarks_inside.to_string(),
                 region.landmarks_surveyed.to_string(),
@@ -184,7 +186,7 @@ fn feature(report: &RemapReport, region: &RemapRegion) -> Result<Feature, Export
     put("cells", region.cells.into());
     put("area_km2", region.area_km2.into());
     put("survey_km2", region.survey_km2.into());
-    put("survey_margin_m", report.parameters.farthest_horizontal_m.into());
+    put("survey_margin_m", region.survey_margin_m.into());
     put("landmarks_inside", region.landmarks_inside.into());
     put("landmarks_surveyed", region.landmarks_surveyed.into());
     if let Some(resurvey) = &region.resurvey {
@@ -230,6 +232,7 @@ pub fn remap_table(report: &RemapReport) -> String {
         "main cause",
         "of cells %",
         "area km2",
+        "margin m",
         "survey km2",
         "landmarks",
         "half-width now m",
@@ -237,7 +240,6 @@ pub fn remap_table(report: &RemapReport) -> String {
         "cures",
         "gain km2",
         "gain per km2",
-        "what to do",
     ];
     let mut table = plain(&header.map(str::to_owned), 1);
     for region in &report.regions {
@@ -250,6 +252,7 @@ pub fn remap_table(report: &RemapReport) -> String {
             region.cause.in_words().to_owned(),
             per_cent(region.causes[0].share),
             format!("{:.4}", region.area_km2),
+            format!("{:.0}", region.survey_margin_m),
             format!("{:.4}", region.survey_km2),
             region.landmarks_surveyed.to_string(),
             figure(|resurvey| resurvey.half_width_before_m, 2),
@@ -257,7 +260,6 @@ pub fn remap_table(report: &RemapReport) -> String {
             resurvey.map_or_else(none, |resurvey| if resurvey.cures { "yes" } else { "no" }.to_owned()),
             figure(|resurvey| resurvey.gained_km2, 4),
             figure(|resurvey| resurvey.gained_per_surveyed, 3),
-            region.verdict.clone(),
         ];
         add(&mut table, row, 1);
     }
@@ -266,6 +268,9 @@ pub fn remap_table(report: &RemapReport) -> String {
     } else {
         format!("{}\n", table.trim_fmt())
     };
+    for region in &report.regions {
+        text.push_str(&format!("Region {}: {}.\n", region.number, region.verdict));
+    }
     text.push_str(&format!(
         "{} of {} cells of {} m fail ({:.3} km2): fewer than {} of {} headings with a guaranteed fix within {required} m.\n",
         report.failing_cells,

@@ -147,7 +147,9 @@ pub struct RemapRegion {
     pub cells: usize,
     /// Area, km².
     pub area_km2: f64,
-    /// Area to be surveyed, km²: the region and all ground within the horizontal reach of the sonar of it.
+    /// How far the survey has to go beyond the region, m.
+    pub survey_margin_m: f64,
+    /// Area to be surveyed, km²: the region and all ground within that margin.
     pub survey_km2: f64,
     /// Landmarks charted inside the region.
     pub landmarks_inside: usize,

@@ -164,25 +164,29 @@ fn ranked(run: &Run<'_>, map: &resurvey::Map, mut groups: Vec<Group>) -> (Vec<Re
 fn examined(run: &Run<'_>, map: &resurvey::Map, group: Group, with_gain: bool) -> (RemapRegion, bool) {
     let dive = run.setup.dive;
     let outline = region::outline(&group.cells, &run.grid);
-    let ground = survey_ground(dive, &outline);
+    let reach_m = dive.sonar.reach_m();
+    let near = survey_ground(dive, &outline, reach_m);
     let causes = shares(&group.causes);
     let main = causes[0].cause;
-    let tried = if with_gain && !matches!(main, RemapCause::Undecided | RemapCause::DetectionNotCertain) {
-        resurvey::best(run, map, &group.cells, &ground)
-    } else {
-        resurvey::Tried::default()
-    };
+    let (tried, ground) =
+        if with_gain && !matches!(main, RemapCause::Undecided | RemapCause::DetectionNotCertain) {
+            let wide = survey_ground(dive, &outline, run.area.longest_run_m + reach_m);
+            resurvey::best(run, map, &group.cells, near, wide)
+        } else {
+            (resurvey::Tried::default(), near)
+        };
     let region = RemapRegion {
         number: 0,
         cause: main,
         causes,
         cells: group.cells.len(),
         area_km2: group.cells.len() as f64 * run.cell_km2(),
+        survey_margin_m: ground.margin_m,
         survey_km2: ground.area_km2,
         landmarks_inside: ground.inside,
         landmarks_surveyed: ground.landmarks.len(),
         label_at: region::label_at(&group.cells, &run.grid),
-        verdict: verdict(main, &tried, with_gain, dive.remap.gain_regions),
+        verdict: verdict(main, &tried, ground.margin_m, with_gain, dive.remap.gain_regions),
         resurvey: tried.resurvey,
         outline_wgs84: region::on_the_earth(&outline, &dive.frame),
         outline,
@@ -206,9 +210,17 @@ fn shares(causes: &[RemapCause]) -> Vec<CauseShare> {
 }
 
 /// What to do about a region, in words.
-fn verdict(cause: RemapCause, tried: &resurvey::Tried, with_gain: bool, gain_regions: usize) -> String {
+fn verdict(
+    cause: RemapCause,
+    tried: &resurvey::Tried,
+    margin_m: f64,
+    with_gain: bool,
+    gain_regions: usize,
+) -> String {
     let advice = match cause {
-        RemapCause::BoxesTooWide => "narrow the boxes of the ground around it as well",
+        RemapCause::BoxesTooWide => {
+            "most of its cells pass only when boxes farther away are narrowed too, or part of it fails for another cause"
+        }
         RemapCause::TooFewLandmarks => TOO_FEW_LANDMARKS_NOTE,
         RemapCause::DeadReckoning => "better dead reckoning does",
         RemapCause::Sonar => "smaller sonar errors do",
@@ -223,13 +235,13 @@ fn verdict(cause: RemapCause, tried: &resurvey::Tried, with_gain: bool, gain_reg
     };
     match tried.resurvey {
         Some(resurvey) if resurvey.cures => {
-            format!("half-widths of at most {:.2} m cure this", resurvey.half_width_after_m)
+            format!(
+                "half-widths of at most {:.2} m, here and within {margin_m:.0} m, cure this",
+                resurvey.half_width_after_m
+            )
         }
         _ if !with_gain => {
             format!("cure and gain not computed: not among the {gain_regions} largest regions")
-        }
-        Some(_) if cause == RemapCause::BoxesTooWide => {
-            format!("tighter boxes here alone do not cure this; {advice}")
         }
         Some(_) => format!("tighter boxes do not cure this; {advice}"),
         None if tried.has_no_landmarks => format!("no landmark here to survey again; {advice}"),
