@@ -506,7 +506,7 @@ pub const KEYS: &[Key] = &[
         "remap",
         "gain_regions",
         Kind::Whole(Range::closed(0.0, 10_000.0, "")),
-        Default("12"),
+        Default("20"),
         "Number of regions, largest first, for which cure and gain are computed.",
     ),
 ];

@@ -222,7 +222,7 @@ fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
             (FILES[0], json.clone()),
             (FILES[1], RemapCsv.bytes(&report)?),
             (FILES[2], RemapGeoJson.bytes(&report)?),
-            (FILES[3], Vec::new()),
+            (FILES[3], render::remap_png(&report, &ChartSize::default())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &FILES, common);

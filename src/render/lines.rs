@@ -12,7 +12,7 @@ use crate::interval::larger;
 use crate::report::{ChartLandmark, LineReport, LinesReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
-const BOX_LEAST_PX: f64 = 4.0;
+pub(super) const BOX_LEAST_PX: f64 = 4.0;
 /// Widest label over the width of the frame.
 const LABEL_SHARE: f64 = 0.2;
 
@@ -54,7 +54,7 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
         }
     }
     draw_names(&mut sheet, &frame, report, ribbon.half());
-    draw_surround(&mut sheet, &frame, report);
+    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
     let legend_bottom = legend::draw(&mut sheet, column, column.top, &scale, &findings);
     let rest = Rect::new(column.left, legend_bottom + 22.0 * k, column.right, column.bottom);
     ranking::draw(&mut sheet, rest, report);
@@ -83,7 +83,7 @@ fn extra_pieces(report: &LinesReport, outside: usize) -> Vec<String> {
 }
 
 /// The map frame between header and foot, left of `right`.
-fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -> MapFrame {
+pub(super) fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -> MapFrame {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     // Above: the name of the northings. Below: easting labels, then scale bar and north arrow.
     let (above, below) = (12.0 * k + font.line_px() + 8.0 * k, font.line_px() + 66.0 * k);
@@ -96,14 +96,14 @@ fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -
 }
 
 /// Axis names, tick labels, scale bar and north arrow around the frame.
-fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport) {
+pub(super) fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, coordinate_system: &str) {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let labels_bottom = frame.draw_edges(sheet);
     let above = frame.rect.top - font.height_px() - 13.0 * k;
     sheet.scene.text((sheet.inner.left, above), "Northing, m", font, SOFT_INK);
     let row = labels_bottom + 10.0 * k;
     let scale_left = frame.draw_scale(sheet, frame.rect.right, row);
-    let name = format!("Easting, m  ·  {}, grid north up", report.provenance.coordinate_system);
+    let name = format!("Easting, m  ·  {coordinate_system}, grid north up");
     let name = text::fit(&name, font, scale_left - frame.rect.left - 24.0 * k);
     sheet.scene.text((frame.rect.left, row), &name, font, SOFT_INK);
 }

@@ -14,8 +14,10 @@ mod furniture;
 mod legend;
 mod lines;
 mod nice;
+mod pattern;
 mod place;
 mod ranking;
+mod remap;
 mod ribbon;
 mod scene;
 mod text;
@@ -24,7 +26,7 @@ mod trace;
 pub use colours::{CLASSES, ramp};
 pub use scene::{PlacedText, Rect};
 
-use crate::report::{LinesReport, TraceReport};
+use crate::report::{LinesReport, RemapReport, TraceReport};
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
@@ -134,4 +136,22 @@ pub fn trace_png(report: &TraceReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`trace_png`].
 pub fn trace_layout(report: &TraceReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(trace::scene(report, size)?.texts)
+}
+
+/// Draws the regions that deserve more mapping, patterned by cause and numbered by gain, with the list of them.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or the search area has no finite corner.
+pub fn remap_png(report: &RemapReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&remap::scene(report, size)?, size)
+}
+
+/// The texts of [`remap_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`remap_png`].
+pub fn remap_layout(report: &RemapReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(remap::scene(report, size)?.texts)
 }

@@ -261,7 +261,7 @@ fn cross(scene: &mut Scene, (x, y): Px, k: f64) {
     }
 }
 
-fn clipped_stroke(
+pub(super) fn clipped_stroke(
     scene: &mut Scene,
     frame: &MapFrame,
     points: &[Px],
