@@ -157,7 +157,7 @@ fn head(report: &RemapReport) -> Result<JsonObject, ExportError> {
     } else {
         "local metres east and north: NOT longitude and latitude"
     };
-    head.insert("coordinates".into(), coordinates.into());
+    head.insert("positions".into(), coordinates.into());
     Ok(head)
 }
 

@@ -210,7 +210,10 @@ fn label(region: &RemapRegion) -> String {
         other => other.in_words(),
     };
     match &region.resurvey {
-        Some(resurvey) => format!("{cause}, +{} km²", nice::short(resurvey.gained_km2, 2)),
+        Some(resurvey) if resurvey.gained_km2 > 0.0 => {
+            format!("{cause}, +{} km²", nice::short(resurvey.gained_km2, 2))
+        }
+        Some(_) => format!("{cause}, no gain"),
         None => cause.to_owned(),
     }
 }
@@ -272,7 +275,7 @@ fn list(sheet: &mut Sheet, area: Rect, report: &RemapReport) {
         "gain: ground that passes only after the re-survey, for each area surveyed; boxes keep their centres";
     let lines = text::wrap(note, font, area.width(), 3);
     y = sheet.scene.lines((area.left, y + 2.0 * k), &lines, font, SOFT_INK) + 6.0 * k;
-    let pitch = 2.0 * font.line_px() + 8.0 * k;
+    let pitch = sizes.body().height_px() + font.height_px() + 3.0 * k;
     let rows = ((area.bottom - y) / pitch) as usize;
     let shown = if report.regions.len() <= rows { rows } else { rows.saturating_sub(1) };
     for region in report.regions.iter().take(shown) {
@@ -282,7 +285,7 @@ fn list(sheet: &mut Sheet, area: Rect, report: &RemapReport) {
         sheet.scene.text((area.left + 30.0 * k - width, y), &number, sizes.heading(), INK);
         let first = format!("{}, {} km²", region.cause.in_words(), nice::short(region.area_km2, 3));
         let first = text::fit(&first, sizes.body(), area.right - left);
-        let below = sheet.scene.text((left, y), &first, sizes.body(), INK).bottom - 3.0 * k;
+        let below = sheet.scene.text((left, y), &first, sizes.body(), INK).bottom;
         let second = text::fit(&bought(region), font, area.right - left);
         sheet.scene.text((left, below), &second, font, SOFT_INK);
         y += pitch;

@@ -219,7 +219,7 @@ fn verdict(
 ) -> String {
     let advice = match cause {
         RemapCause::BoxesTooWide => {
-            "most of its cells pass only when boxes farther away are narrowed too, or part of it fails for another cause"
+            "its cells need narrow boxes everywhere, or part of them fails for another cause"
         }
         RemapCause::TooFewLandmarks => TOO_FEW_LANDMARKS_NOTE,
         RemapCause::DeadReckoning => "better dead reckoning does",
