@@ -47,6 +47,7 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
                 estimated: estimate(&runs),
                 guaranteed: guaranteed.next(),
                 look_alikes: Vec::new(),
+                remap_regions: Vec::new(),
             }
         })
         .collect();

@@ -9,12 +9,16 @@ mod ensemble;
 mod guarantee;
 mod line;
 mod rank;
+mod remap;
 pub mod statistics;
 mod trace;
 
 pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
 pub use check::{check, line_notices};
 pub use line::score_lines;
+pub use remap::{
+    RegionIndex, RemapProgress, SurveyGround, mark_segments, remap, remap_area_options, survey_ground,
+};
 pub use trace::{TraceError, TraceRequest, trace};
 
 use geo::{Contains, Coord, LineString, Polygon, Rect};

@@ -154,6 +154,19 @@ pub enum Command {
         #[arg(long, value_name = "METRES", value_parser = longest_run)]
         longest_run_m: Option<f64>,
     },
+    /// Find the seabed that deserves more mapping before the dive: where, why, and what it buys
+    ///
+    /// Runs the area map, joins the cells that fail the requirement into regions, and finds the cause of each by running
+    /// the map again with one thing changed at a time: narrower landmark boxes, perfect dead reckoning, a perfect sonar.
+    /// For each region it then looks for the re-survey quality that cures it, and runs the map with that quality to see
+    /// what it buys. With --out, writes remap.json, remap.csv, remap.geojson and remap.png. Keys: section [remap].
+    Remap {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the four files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+    },
     /// Print a completion script for a shell
     Completions {
         /// The shell

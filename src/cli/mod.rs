@@ -5,6 +5,7 @@
 mod area;
 mod args;
 mod lookalikes;
+mod remap;
 mod run;
 mod terminal;
 

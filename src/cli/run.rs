@@ -8,6 +8,7 @@ use clap::{CommandFactory, Parser};
 use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::lookalikes::{lookalikes, mark_look_alikes};
+use super::remap::remap;
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
@@ -82,6 +83,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             area(dive, &asked, common)
         }
+        Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);

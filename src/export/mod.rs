@@ -7,6 +7,7 @@ mod csv;
 mod files;
 mod json;
 mod lookalikes;
+mod remap;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
@@ -14,6 +15,7 @@ pub use csv::LinesCsv;
 pub use files::{prepare, write_all};
 pub use json::{LinesJson, TraceJson, check_json};
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
+pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
 pub use table::{check_text, lines_table, trace_table};
 
 use std::path::PathBuf;

@@ -12,7 +12,7 @@ use crate::interval::larger;
 use crate::report::{ChartLandmark, LineReport, LinesReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
-const BOX_LEAST_PX: f64 = 4.0;
+pub(super) const BOX_LEAST_PX: f64 = 4.0;
 /// Widest label over the width of the frame.
 const LABEL_SHARE: f64 = 0.2;
 

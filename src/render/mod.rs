@@ -17,8 +17,10 @@ mod lines;
 mod lookalike_panels;
 mod lookalikes;
 mod nice;
+mod pattern;
 mod place;
 mod ranking;
+mod remap;
 mod ribbon;
 mod scene;
 mod text;
@@ -27,7 +29,7 @@ mod trace;
 pub use colours::{CLASSES, ramp};
 pub use scene::{PlacedText, Rect};
 
-use crate::report::{AreaReport, LinesReport, LookAlikesReport, TraceReport};
+use crate::report::{AreaReport, LinesReport, LookAlikesReport, RemapReport, TraceReport};
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
@@ -212,4 +214,22 @@ pub fn lookalike_panels_layout(
     size: &ChartSize,
 ) -> Result<Vec<PlacedText>, RenderError> {
     Ok(lookalike_panels::scene(report, size)?.texts)
+}
+
+/// Draws the regions that deserve more mapping, patterned by cause and numbered by gain, with the list of them.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or the search area has no finite corner.
+pub fn remap_png(report: &RemapReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&remap::scene(report, size)?, size)
+}
+
+/// The texts of [`remap_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`remap_png`].
+pub fn remap_layout(report: &RemapReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(remap::scene(report, size)?.texts)
 }

@@ -23,6 +23,7 @@ mod one_dimension;
 mod oracle;
 mod projection;
 mod readme;
+mod remap;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;

@@ -23,12 +23,13 @@ const TESTS: &str = "cargo test --release";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 5] = [
+const PICTURES: [(&str, &str); 6] = [
     ("reports/lines.png", "demo-out/lines.png"),
     ("reports/trace.png", "demo-out/trace.png"),
     ("reports/lookalikes.png", "demo-out/lookalikes.png"),
     ("reports/lookalikes-panels.png", "demo-out/lookalikes-panels.png"),
     ("reports/area-best.png", "demo-out/area-best.png"),
+    ("reports/remap.png", "demo-out/remap.png"),
 ];
 
 /// A fenced block: language, file name (may be empty), text.
@@ -145,10 +146,12 @@ fn keys_table() -> String {
     table
 }
 
-/// The text from one heading or sentence to the next heading.
+/// The text from one heading or sentence to the next heading or table of columns.
 fn section<'a>(text: &'a str, start: &str) -> &'a str {
     let from = text.find(start).unwrap_or_else(|| panic!("no \"{start}\"")) + start.len();
-    let length = text[from..].find("\n## ").unwrap_or(text.len() - from);
+    let rest = &text[from..];
+    let ends = ["\n## ", "\nColumns of `"].map(|end| rest.find(end).unwrap_or(rest.len()));
+    let length = ends[0].min(ends[1]);
     &text[from..from + length]
 }
 
@@ -204,6 +207,10 @@ fn every_command_of_the_readme_runs() {
         "lookalikes.geojson",
         "lookalikes.json",
         "lookalikes.png",
+        "remap.csv",
+        "remap.geojson",
+        "remap.json",
+        "remap.png",
         "trace.json",
         "trace.png",
     ];
@@ -367,6 +374,17 @@ fn columns_of_the_files_are_those_written() {
 }
 
 #[test]
+fn columns_of_the_regions_are_those_written() {
+    let listed: Vec<String> = rows(section(&README.on_disk, "\nColumns of `remap.csv`:"))
+        .iter()
+        .flat_map(|row| quoted(&row[0]))
+        .collect();
+    let mut reader = csv::Reader::from_reader(README.outputs["demo-out/remap.csv"].as_slice());
+    let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
+    assert_eq!(listed, written);
+}
+
+#[test]
 fn exit_codes_are_those_of_the_help() {
     let help = Workplace::new().run("--help").expect(0).stdout;
     let codes = help.split("Exit codes:").nth(1).expect("the help lists them");
@@ -393,7 +411,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "area", "trace", "lookalikes", "completions"] {
+    for command in ["", "check", "lines", "area", "trace", "lookalikes", "remap", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()

@@ -132,6 +132,7 @@ pub fn line(
                 estimated: finding(segments.len(), count),
                 guaranteed: None,
                 look_alikes: Vec::new(),
+                remap_regions: Vec::new(),
             });
             along += length;
         }
