@@ -408,7 +408,12 @@ impl Fan {
     /// Reaches of the patch with lengths `rho`, rounded up.
     #[inline]
     pub fn reaches(&self, rho: Interval) -> Reaches {
-        self.0.map(|along| (rho * along).hi())
+        if !(rho.lo() >= 0.0 && rho.hi() < f64::INFINITY) {
+            return self.0.map(|along| (rho * along).hi());
+        }
+        // The same product, of which only one corner can be the upper end.
+        let (near, far) = (rho.lo(), rho.hi());
+        self.0.map(|along| up(along.hi() * if along.hi() >= 0.0 { far } else { near }))
     }
 }
 

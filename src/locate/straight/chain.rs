@@ -6,13 +6,10 @@ use super::terms::{HeadingTerms, StepSets};
 use super::{Field, Point};
 use crate::frame::LocalPoint;
 use crate::interval::{Box2, Interval};
-use crate::locate::cell::{Cell, DIRECTION_COUNT, DIRECTIONS, Reaches, add_reaches};
+use crate::locate::cell::{Cell, DIRECTION_COUNT, DIRECTIONS, HALF, Reaches, add_reaches};
 use crate::locate::certain::CertainSighting;
 use crate::locate::feasible::{Feasible, State};
 use crate::locate::unseen::Missed;
-
-/// Half of the directions; the other half are their opposites.
-const HALF: usize = DIRECTION_COUNT / 2;
 
 /// What a test between landmarks allows for rounding, metres. Coordinates stay below 10⁸ m, where one rounding is below
 /// 2·10⁻⁸ m, and fewer than a hundred of them meet in a test.

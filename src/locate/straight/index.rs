@@ -4,7 +4,7 @@
 
 use crate::frame::LocalPoint;
 use crate::interval::{larger, smaller};
-use crate::locate::cell::{DIRECTION_COUNT, DIRECTIONS, Reaches};
+use crate::locate::cell::{DIRECTIONS, EAST, HALF, NORTH, Reaches};
 
 /// Most pairs kept (16 bytes each).
 const PAIRS_MAX: usize = 12_000_000;
@@ -199,11 +199,15 @@ impl PairIndex {
                     continue;
                 }
                 let (e, n) = (f64::from(pair.east_m), f64::from(pair.north_m));
-                let mut is_within = true;
-                for i in 0..DIRECTION_COUNT / 2 {
+                let keeps = |i: usize| {
                     let along = DIRECTIONS[i][0] * e + DIRECTIONS[i][1] * n;
-                    is_within &= (along <= most[i]) & (-along <= most[i + DIRECTION_COUNT / 2]);
+                    (along <= most[i]) & (-along <= most[i + HALF])
+                };
+                // Most vectors fail along an axis or a diagonal.
+                if !(0..4).fold(true, |all, k| all & keeps(k * (HALF / 4))) {
+                    continue;
                 }
+                let is_within = (0..HALF).fold(true, |all, i| all & keeps(i));
                 if is_within && !found(pair.first, pair.second) {
                     return Some(());
                 }
@@ -215,10 +219,8 @@ impl PairIndex {
 
 /// South-west and north-east end of a set given by its reaches.
 pub(super) fn ends(reach: &Reaches) -> (LocalPoint, LocalPoint) {
-    let (east, north, half) = (0, DIRECTION_COUNT / 4, DIRECTION_COUNT / 2);
-    // These four directions lie along the axes.
-    let along = |i: usize| reach[i] / (DIRECTIONS[i][0].abs() + DIRECTIONS[i][1].abs());
-    (LocalPoint::new(-along(east + half), -along(north + half)), LocalPoint::new(along(east), along(north)))
+    // Unit vectors, as a test of the cells holds them to.
+    (LocalPoint::new(-reach[EAST + HALF], -reach[NORTH + HALF]), LocalPoint::new(reach[EAST], reach[NORTH]))
 }
 
 /// Calls `found` with all pairs within `reach_m` of each other along each axis until it answers `false`. Whether all
