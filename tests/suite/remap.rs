@@ -178,7 +178,8 @@ fn detection_that_is_not_certain_is_named() {
 /// A site with several causes: a grid in one corner, nothing in another, wide boxes.
 fn mixed() -> Site {
     let mut landmarks = irregular(160, 900.0, 11);
-    landmarks.retain(|(e, n)| !(*e < 450.0 && *n < 450.0) && !(*e > 600.0 && *n > 500.0));
+    let cleared = |e: f64, n: f64| (e < 450.0 && n < 450.0) || (e > 600.0 && n > 500.0);
+    landmarks.retain(|&(e, n)| !cleared(e, n));
     landmarks.extend((0..9).flat_map(|i| (0..9).map(move |j| (50.0 * i as f64, 50.0 * j as f64))));
     Site { side_m: 900.0, landmarks, half_width_m: 2.0, replaced: vec![] }
 }
