@@ -78,6 +78,9 @@ pub enum Command {
         /// Folder for lines.json, lines.csv and lines.png (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
+        /// Also mark the segments that run over remap regions (runs the analysis of `remap`, which takes longer)
+        #[arg(long)]
+        mark_remap: bool,
         /// What orders the ranking, in place of the dive file's
         #[arg(long, value_enum, value_name = "KEY")]
         rank_by: Option<RankBy>,

@@ -10,6 +10,7 @@ use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
 use crate::render::{self, ChartSize};
+use crate::report::{LinesReport, RemapReport};
 
 /// Files that `remap` writes.
 const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
@@ -18,22 +19,11 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
     let setup = Setup::new(&dive);
-    let starts = assess::area_starts(&setup, &assess::remap_area_options(&dive));
-    if starts > AREA_STARTS_MAX {
-        bail!(
-            "remap: {starts} runs (start cells times headings), and at most {AREA_STARTS_MAX} are computed; choose larger \
-             cells (remap.cell_m), fewer headings (area.headings), or a smaller start.search_area"
-        );
-    }
+    refuse_huge(&setup)?;
     if let Some(out) = out {
         export::prepare(out, &FILES, common.force)?;
     }
-    let bar = runs_bar(common.quiet);
-    let report = assess::remap(&setup, &|progress| match progress {
-        RemapProgress::Planned(runs) => bar.inc_length(runs as u64),
-        RemapProgress::Done(runs) => bar.inc(runs as u64),
-    });
-    bar.finish_and_clear();
+    let report = analyse(&setup, common);
     let json = RemapJson.bytes(&report)?;
     if let Some(out) = out {
         let files = [
@@ -55,4 +45,31 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
         return Ok(Exit::Undecided);
     }
     Ok(Exit::Done)
+}
+
+/// Marks the segments of `lines` that run over remap regions.
+pub(super) fn mark_remap_regions(setup: &Setup<'_>, lines: &mut LinesReport, common: &Common) {
+    assess::mark_segments(lines, &analyse(setup, common));
+}
+
+fn analyse(setup: &Setup<'_>, common: &Common) -> RemapReport {
+    let bar = runs_bar(common.quiet);
+    let report = assess::remap(setup, &|progress| match progress {
+        RemapProgress::Planned(runs) => bar.inc_length(runs as u64),
+        RemapProgress::Done(runs) => bar.inc(runs as u64),
+    });
+    bar.finish_and_clear();
+    report
+}
+
+/// Refuses a map with more runs than are computed.
+pub(super) fn refuse_huge(setup: &Setup<'_>) -> Result<()> {
+    let starts = assess::area_starts(setup, &assess::remap_area_options(setup.dive));
+    if starts > AREA_STARTS_MAX {
+        bail!(
+            "remap: {starts} runs (start cells times headings), and at most {AREA_STARTS_MAX} are computed; choose larger \
+             cells (remap.cell_m), fewer headings (area.headings), or a smaller start.search_area"
+        );
+    }
+    Ok(())
 }

@@ -4,7 +4,7 @@ use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
 /// Columns every row has.
-const COLUMNS: [&str; 37] = [
+const COLUMNS: [&str; 38] = [
     "line",
     "line_rank",
     "segment",
@@ -42,6 +42,7 @@ const COLUMNS: [&str; 37] = [
     "fix_size_m",
     "seed",
     "look_alikes",
+    "remap_regions",
 ];
 
 /// Columns that exist only when guaranteed distances were computed.
@@ -131,9 +132,15 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
         report.parameters.required_fix_m.to_string(),
         report.parameters.fix_size_m.to_string(),
         report.provenance.seed.to_string(),
-        segment.look_alikes.iter().map(usize::to_string).collect::<Vec<_>>().join(" "),
+        numbers(&segment.look_alikes),
+        numbers(&segment.remap_regions),
     ]);
     row
+}
+
+/// Numbers with blanks between.
+fn numbers(numbers: &[usize]) -> String {
+    numbers.iter().map(usize::to_string).collect::<Vec<_>>().join(" ")
 }
 
 /// The shortest text that reads back as the same number; empty for none.

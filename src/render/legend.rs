@@ -15,7 +15,7 @@ pub(super) fn draw(
     top: f64,
     scale: &Scale,
     findings: &[Finding],
-    has_look_alikes: bool,
+    [has_look_alikes, has_regions]: [bool; 2],
 ) -> f64 {
     let sizes = sheet.sizes;
     let k = sizes.k;
@@ -68,13 +68,16 @@ pub(super) fn draw(
     sheet.scene.text((label_left(column, k), top), &label, sizes.small(), SOFT_INK);
     y += pitch;
     if has_look_alikes {
-        y = look_alike_mark(sheet, column, y, pitch);
+        y = mark(sheet, column, y, pitch, "look-alike ground and its number");
+    }
+    if has_regions {
+        y = mark(sheet, column, y, pitch, "remap region (r) and its number");
     }
     y
 }
 
-/// The bracket of look-alike ground; returns where the row ends.
-fn look_alike_mark(sheet: &mut Sheet, column: Rect, top: f64, pitch: f64) -> f64 {
+/// The bracket beside marked ground; returns where the row ends.
+fn mark(sheet: &mut Sheet, column: Rect, top: f64, pitch: f64, label: &str) -> f64 {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let middle = top + pitch / 2.0;
     let (left, right) = (column.left + 4.0 * k, column.left + swatch_width(k));
@@ -85,7 +88,7 @@ fn look_alike_mark(sheet: &mut Sheet, column: Rect, top: f64, pitch: f64) -> f64
         (right, middle - 3.0 * k),
     ];
     sheet.scene.stroke(points, crate::interval::larger(1.0, 1.5 * k), INK);
-    let label = text::fit("look-alike ground and its number", font, label_room(column, k));
+    let label = text::fit(label, font, label_room(column, k));
     sheet.scene.text((label_left(column, k), middle - font.height_px() / 2.0), &label, font, SOFT_INK);
     top + pitch
 }

@@ -9,7 +9,7 @@ use super::scene::{Px, Rect, Scene};
 use super::text::Font;
 use super::{ChartSize, RenderError, legend, ranking, text};
 use crate::interval::larger;
-use crate::report::{ChartLandmark, LineReport, LinesReport};
+use crate::report::{ChartLandmark, LineReport, LinesReport, SegmentReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
 pub(super) const BOX_LEAST_PX: f64 = 4.0;
@@ -54,9 +54,12 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
         }
     }
     let mut taken = draw_names(&mut sheet, &frame, report, ribbon.half());
-    let has_look_alikes = draw_look_alikes(&mut sheet, &frame, report, ribbon.half(), &mut taken);
+    let has_look_alikes =
+        draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::LOOK_ALIKES);
+    let has_regions = draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::REMAP_REGIONS);
     draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
-    let legend_bottom = legend::draw(&mut sheet, column, column.top, &scale, &findings, has_look_alikes);
+    let legend_bottom =
+        legend::draw(&mut sheet, column, column.top, &scale, &findings, [has_look_alikes, has_regions]);
     let rest = Rect::new(column.left, legend_bottom + 22.0 * k, column.right, column.bottom);
     ranking::draw(&mut sheet, rest, report);
     Ok(sheet.scene)
@@ -164,19 +167,35 @@ fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_wi
     taken
 }
 
-/// A thin bracket beside each stretch over look-alike ground, with the numbers of the look-alikes; returns whether there
-/// is any. A number that finds no place is left out: the bracket stays, and the CSV has it.
-fn draw_look_alikes(
+/// A kind of ground that is marked beside the lines.
+#[derive(Clone, Copy)]
+struct Mark {
+    numbers: fn(&SegmentReport) -> &[usize],
+    /// Before each number.
+    prefix: &'static str,
+    /// 1 to starboard of the line, −1 to port.
+    side: f64,
+}
+
+impl Mark {
+    const LOOK_ALIKES: Self = Self { numbers: |segment| &segment.look_alikes, prefix: "", side: 1.0 };
+    const REMAP_REGIONS: Self = Self { numbers: |segment| &segment.remap_regions, prefix: "r", side: -1.0 };
+}
+
+/// A thin bracket beside each stretch over marked ground, with its numbers; returns whether there is any. A number that
+/// finds no place is left out: the bracket stays, and the CSV has it.
+fn draw_marks(
     sheet: &mut Sheet,
     frame: &MapFrame,
     report: &LinesReport,
     half_width: f64,
     taken: &mut Taken,
+    mark: Mark,
 ) -> bool {
     let mut has_any = false;
     for line in &report.lines {
-        for run in line.segments.chunk_by(|a, b| a.look_alikes == b.look_alikes) {
-            if run[0].look_alikes.is_empty() {
+        for run in line.segments.chunk_by(|a, b| (mark.numbers)(a) == (mark.numbers)(b)) {
+            if (mark.numbers)(&run[0]).is_empty() {
                 continue;
             }
             has_any = true;
@@ -186,17 +205,19 @@ fn draw_look_alikes(
                     path.push(point);
                 }
             }
-            let numbers: Vec<String> = run[0].look_alikes.iter().map(usize::to_string).collect();
-            bracket(sheet, &path, half_width, &numbers.join(", "), taken);
+            let numbers: Vec<String> =
+                (mark.numbers)(&run[0]).iter().map(|number| format!("{}{number}", mark.prefix)).collect();
+            bracket(sheet, &path, half_width * mark.side, &numbers.join(", "), taken);
         }
     }
     has_any
 }
 
-/// A line beside `path` on its right, with ends turned towards it, and a label at its middle.
+/// A line beside `path`, on its right for a positive `half_width` of the ribbon and on its left for a negative one, with
+/// ends turned towards it, and a label at its middle.
 fn bracket(sheet: &mut Sheet, path: &[Px], half_width: f64, label: &str, taken: &mut Taken) {
     let k = sheet.sizes.k;
-    let (aside, hook) = (half_width + 5.0 * k, half_width + 1.0 * k);
+    let (aside, hook) = (half_width + (5.0 * k).copysign(half_width), half_width + k.copysign(half_width));
     let at = |index: usize, by: f64| {
         let (before, after) = (path[index.saturating_sub(1)], path[smaller_index(index + 1, path.len() - 1)]);
         let (dx, dy) = (after.0 - before.0, after.1 - before.1);
