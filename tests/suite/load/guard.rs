@@ -28,7 +28,13 @@ fn every_number_outside_its_range_is_refused_by_name() {
         let scene = match super::DIVE.lines().find(|l| l.starts_with(&format!("{} ", key.name))) {
             Some(line) => Scene::new().swap(line, &bad),
             None => {
-                Scene::new().swap(&format!("[{}]\n", key.section), &format!("[{}]\n{bad}\n", key.section))
+                let section = format!("[{}]\n", key.section);
+                let with_bad = format!("{section}{bad}\n");
+                if super::DIVE.contains(&section) {
+                    Scene::new().swap(&section, &with_bad)
+                } else {
+                    Scene::new().swap("[scoring]\n", &format!("{with_bad}[scoring]\n"))
+                }
             }
         };
         let text = scene.errors();
