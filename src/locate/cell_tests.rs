@@ -63,6 +63,9 @@ fn three_edges_without_a_common_point_are_empty() {
 }
 
 proptest! {
+    // Failures become named tests, not files beside the manifest.
+    #![proptest_config(ProptestConfig { failure_persistence: None, ..ProptestConfig::default() })]
+
     #[test]
     fn minkowski_sum_and_intersection_keep_every_point(
         e in -1e6..1e6f64, n in -1e6..1e6f64, w in 0.0..50.0f64, t in 0.0..50.0f64,

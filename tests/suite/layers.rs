@@ -89,3 +89,25 @@ fn nothing_between_detect_and_report_touches_the_world() {
         }
     }
 }
+
+#[test]
+fn the_top_level_holds_nothing_else() {
+    const ALLOWED: [&str; 10] = [
+        "Cargo.lock",
+        "Cargo.toml",
+        "DEVELOPERS.md",
+        "LICENSE",
+        "README.md",
+        "demo-data",
+        "reports",
+        "src",
+        "tests",
+        // What a build and the README's commands leave; git ignores both.
+        "target",
+    ];
+    for entry in fs::read_dir(env!("CARGO_MANIFEST_DIR")).expect("the project's folder") {
+        let name = entry.expect("an entry").file_name().to_string_lossy().into_owned();
+        let is_known = name.starts_with('.') || ALLOWED.contains(&name.as_str()) || name == "demo-out";
+        assert!(is_known, "{name} does not belong at the top level");
+    }
+}
