@@ -266,7 +266,7 @@ pub const KEYS: &[Key] = &[
         "dead_reckoning",
         "heading_slices",
         Kind::Whole(Range::closed(1.0, 720.0, "")),
-        Without("as many as keep each slice within 1 degree"),
+        Without("as many as keep each slice within 1 degree, at most 72"),
         "Slices of the heading bias that are solved one by one; more are tighter and slower.",
     ),
     key(
@@ -466,6 +466,48 @@ pub const KEYS: &[Key] = &[
         Range::closed(10.0, 100_000.0, "m"),
         Default("600"),
         "Longest straight run of the area map.",
+    ),
+    number(
+        "remap",
+        "cell_m",
+        Range::closed(1.0, 10_000.0, "m"),
+        Default("50"),
+        "Side of a start cell of the remap analysis.",
+    ),
+    number(
+        "remap",
+        "pass_share",
+        Range::above(0.0, 1.0, ""),
+        Default("0.5"),
+        "Share of the headings (`area.headings`) that must have a guaranteed fix within `scoring.required_fix_m` for a cell to pass.",
+    ),
+    number(
+        "remap",
+        "cured_share",
+        Range::above(0.0, 1.0, ""),
+        Default("0.75"),
+        "Share of the cells of a region that must pass for the region to count as cured.",
+    ),
+    key(
+        "remap",
+        "smallest_region_cells",
+        Kind::Whole(Range::closed(1.0, 10_000.0, "")),
+        Default("10"),
+        "Fewest cells of a region; smaller specks are counted and left out.",
+    ),
+    number(
+        "remap",
+        "resurvey_half_width_m",
+        Range::closed(0.0, 10_000.0, "m"),
+        Default("0.5"),
+        "Half-width of a landmark's box that a re-survey can reach at best.",
+    ),
+    key(
+        "remap",
+        "gain_regions",
+        Kind::Whole(Range::closed(0.0, 10_000.0, "")),
+        Default("20"),
+        "Number of regions, largest first, for which cure and gain are computed.",
     ),
 ];
 

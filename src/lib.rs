@@ -15,6 +15,7 @@
 //! Data flows one way: files → [`map`], [`track`], [`vehicle`] (gathered in a [`dive::Dive`]) → [`detect`] →
 //! [`locate`] → [`assess`] → [`report`] → [`export`] and [`render`] → [`cli`].
 
+pub mod alias;
 pub mod assess;
 pub mod bibliography;
 pub mod bounds;

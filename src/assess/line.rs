@@ -46,6 +46,8 @@ fn score_line(setup: &Setup<'_>, line: &Line, tick: &(dyn Fn() + Sync)) -> LineR
                 detections_ahead: detections.iter().filter(|&&along_m| along_m >= start_m).count(),
                 estimated: estimate(&runs),
                 guaranteed: guaranteed.next(),
+                look_alikes: Vec::new(),
+                remap_regions: Vec::new(),
             }
         })
         .collect();

@@ -9,12 +9,16 @@ mod ensemble;
 mod guarantee;
 mod line;
 mod rank;
+mod remap;
 pub mod statistics;
 mod trace;
 
 pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
 pub use check::{check, line_notices};
 pub use line::score_lines;
+pub use remap::{
+    RegionIndex, RemapProgress, SurveyGround, mark_segments, remap, remap_area_options, survey_ground,
+};
 pub use trace::{TraceError, TraceRequest, trace};
 
 use geo::{Contains, Coord, LineString, Polygon, Rect};
@@ -100,7 +104,8 @@ impl<'a> Setup<'a> {
         (0..count as usize).map(|k| k as f64 * self.dive.scoring.segment_m).collect()
     }
 
-    fn provenance(&self, schema: &'static str) -> Provenance {
+    /// Where a report of this dive comes from.
+    pub fn provenance(&self, schema: &'static str) -> Provenance {
         let dive = self.dive;
         Provenance {
             schema,
@@ -115,7 +120,8 @@ impl<'a> Setup<'a> {
         }
     }
 
-    fn chart_landmarks(&self) -> Vec<ChartLandmark> {
+    /// The landmarks as charts draw them.
+    pub fn chart_landmarks(&self) -> Vec<ChartLandmark> {
         self.dive
             .landmarks
             .iter()
@@ -127,7 +133,8 @@ impl<'a> Setup<'a> {
             .collect()
     }
 
-    fn parameters(&self) -> Parameters {
+    /// Every parameter in force.
+    pub fn parameters(&self) -> Parameters {
         let dive = self.dive;
         let (sonar, bounds, scoring) = (&dive.sonar, &dive.dead_reckoning, &dive.scoring);
         let (sonar_kind, sector_deg, nadir_gap_deg) = match sonar.kind {

@@ -5,6 +5,7 @@ use std::path::PathBuf;
 use clap::{Args, Parser, Subcommand};
 use clap_complete::Shell;
 
+use crate::alias::LISTED_DEFAULT;
 use crate::bounds;
 use crate::dive::RankBy;
 
@@ -77,6 +78,9 @@ pub enum Command {
         /// Folder for lines.json, lines.csv and lines.png (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
+        /// Also mark the segments that run over remap regions (runs the analysis of `remap`, which takes longer)
+        #[arg(long)]
+        mark_remap: bool,
         /// What orders the ranking, in place of the dive file's
         #[arg(long, value_enum, value_name = "KEY")]
         rank_by: Option<RankBy>,
@@ -112,6 +116,25 @@ pub enum Command {
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
     },
+    /// Find the ground that looks like other ground within the error bounds
+    ///
+    /// Lists the look-alikes, most dangerous first: how many landmarks agree, how far apart the two grounds lie, by how
+    /// much all errors would have to shrink before they separate, which landmark tells them apart and how far it is, and
+    /// which lines run over them. Rows and grids are summed up by their periods. With --out, writes lookalikes.json,
+    /// lookalikes.csv, lookalikes.png, lookalikes-panels.png and, when the map is on the Earth, lookalikes.geojson.
+    Lookalikes {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Longest separation at which landmarks are compared, metres [default: twice the sonar's horizontal reach]
+        #[arg(long, value_name = "METRES", value_parser = separation)]
+        separation_m: Option<f64>,
+        /// Most look-alikes to list; the others are counted
+        #[arg(long, value_name = "NUMBER", default_value_t = LISTED_DEFAULT as u32, value_parser = clap::value_parser!(u32).range(1..=10_000))]
+        listed: u32,
+    },
     /// Map how far the vehicle must run, from every cell of the search area and on every heading, until a guaranteed fix
     ///
     /// From the centre of each start cell a straight run on each heading is solved, lost in the whole search area, and the
@@ -134,6 +157,19 @@ pub enum Command {
         #[arg(long, value_name = "METRES", value_parser = longest_run)]
         longest_run_m: Option<f64>,
     },
+    /// Find the seabed that deserves more mapping before the dive: where, why, and what it buys
+    ///
+    /// Runs the area map, joins the cells that fail the requirement into regions, and finds the cause of each by running
+    /// the map again with one thing changed at a time: narrower landmark boxes, perfect dead reckoning, a perfect sonar.
+    /// For each region it then looks for the re-survey quality that cures it, and runs the map with that quality to see
+    /// what it buys. With --out, writes remap.json, remap.csv, remap.geojson and remap.png. Keys: section [remap].
+    Remap {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the four files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+    },
     /// Print a completion script for a shell
     Completions {
         /// The shell
@@ -146,6 +182,14 @@ fn spacing(text: &str) -> Result<f64, String> {
     match text.parse::<f64>() {
         Ok(spacing) if (0.1..=10_000.0).contains(&spacing) => Ok(spacing),
         _ => Err("accepted: a distance from 0.1 to 10000 m, such as 10".to_owned()),
+    }
+}
+
+/// Parses the longest separation of landmarks.
+fn separation(text: &str) -> Result<f64, String> {
+    match text.parse::<f64>() {
+        Ok(separation) if (1.0..=10_000.0).contains(&separation) => Ok(separation),
+        _ => Err("accepted: a distance from 1 to 10000 m, such as 150".to_owned()),
     }
 }
 

@@ -4,6 +4,8 @@
 
 mod area;
 mod args;
+mod lookalikes;
+mod remap;
 mod run;
 mod terminal;
 

@@ -7,7 +7,10 @@ use clap::{CommandFactory, Parser};
 
 use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
+use super::lookalikes::{lookalikes, mark_look_alikes};
+use super::remap::{mark_remap_regions, refuse_huge, remap};
 use super::terminal::{print_notices, print_result, progress_bar};
+use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
@@ -53,9 +56,14 @@ fn run(arguments: &Arguments) -> Result<Exit> {
     }
     match &arguments.command {
         Command::Check { dive } => check(dive, common),
-        Command::Lines { dive, out, rank_by, draws, require } => {
-            let asked =
-                LinesOptions { out: out.as_deref(), rank_by: *rank_by, draws: *draws, require: *require };
+        Command::Lines { dive, out, mark_remap, rank_by, draws, require } => {
+            let asked = LinesOptions {
+                out: out.as_deref(),
+                mark_remap: *mark_remap,
+                rank_by: *rank_by,
+                draws: *draws,
+                require: *require,
+            };
             lines(dive, &asked, common)
         }
         Command::Trace { dive, line, from_m, draw, corridor_m, out } => {
@@ -67,6 +75,10 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             trace(dive, &request, out.as_deref(), common)
         }
+        Command::Lookalikes { dive, out, separation_m, listed } => {
+            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            lookalikes(dive, &request, out.as_deref(), common)
+        }
         Command::Area { dive, out, cell_m, headings, longest_run_m } => {
             let asked = AreaRequest {
                 out: out.as_deref(),
@@ -76,6 +88,7 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             };
             area(dive, &asked, common)
         }
+        Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
@@ -108,6 +121,7 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
 /// What `lines` was asked beyond the dive file.
 struct LinesOptions<'a> {
     out: Option<&'a Path>,
+    mark_remap: bool,
     rank_by: Option<RankBy>,
     draws: Option<u32>,
     require: Option<f64>,
@@ -124,12 +138,19 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     let setup = Setup::new(&dive);
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
     print_notices(&assess::line_notices(&setup), common.quiet);
+    if asked.mark_remap {
+        refuse_huge(&setup)?;
+    }
     if let Some(out) = asked.out {
         export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
-    let report = assess::score_lines(&setup, &|| bar.inc(1));
+    let mut report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
+    mark_look_alikes(&setup, &mut report, common);
+    if asked.mark_remap {
+        mark_remap_regions(&setup, &mut report, common);
+    }
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
         let files = [

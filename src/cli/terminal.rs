@@ -45,3 +45,12 @@ pub(super) fn progress_bar_over(count: usize, what: &str, quiet: bool) -> Progre
         .expect("the template is valid");
     ProgressBar::with_draw_target(Some(count as u64), target).with_style(style)
 }
+
+/// A progress bar over straight runs, whose number grows as an analysis finds out what to run next; drawn as
+/// [`progress_bar`].
+pub(super) fn runs_bar(quiet: bool) -> ProgressBar {
+    let target = if quiet { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
+    let style = ProgressStyle::with_template("{bar:30} {pos}/{len} runs so far planned")
+        .expect("the template is fixed and valid");
+    ProgressBar::with_draw_target(Some(0), target).with_style(style)
+}

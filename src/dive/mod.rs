@@ -95,6 +95,23 @@ pub struct AreaOptions {
     pub longest_run_m: f64,
 }
 
+/// How the remap analysis judges cells and what a re-survey can reach.
+#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+pub struct RemapOptions {
+    /// Side of a start cell, metres, above 0.
+    pub cell_m: f64,
+    /// Share of the headings that must have a guaranteed fix within the required distance for a cell to pass, above 0 to 1.
+    pub pass_share: f64,
+    /// Share of the cells of a region that must pass for the region to count as cured, above 0 to 1.
+    pub cured_share: f64,
+    /// Fewest cells of a region, at least 1.
+    pub smallest_region_cells: usize,
+    /// Half-width of a landmark's box that a re-survey can reach at best, metres, at least 0.
+    pub resurvey_half_width_m: f64,
+    /// Number of regions, largest first, for which cure and gain are computed.
+    pub gain_regions: usize,
+}
+
 /// One input file and the fingerprint of its bytes.
 #[derive(Clone, Debug, PartialEq, serde::Serialize)]
 pub struct InputFile {
@@ -131,6 +148,8 @@ pub struct Dive {
     pub scoring: Scoring,
     /// How the area map is cut up.
     pub area: AreaOptions,
+    /// How the remap analysis judges cells.
+    pub remap: RemapOptions,
     /// Slices of the heading-bias interval that the solver takes one by one, at least 1.
     pub heading_slices: usize,
     /// Detections that may be strays and landmarks that may be missed.

@@ -120,6 +120,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         start: Start { search_area, scatter_m },
         scoring: settings.scoring?,
         area: settings.area?,
+        remap: settings.remap?,
         heading_slices: settings.heading_slices?,
         budget: settings.budget?,
         nothing_seen_inside,

@@ -3,7 +3,7 @@
 use std::path::PathBuf;
 
 use super::section::Document;
-use super::{AreaOptions, Budget, ErrorShape, RankBy, Scoring};
+use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -35,6 +35,7 @@ pub(super) struct Settings {
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
     pub area: Option<AreaOptions>,
+    pub remap: Option<RemapOptions>,
     pub heading_slices: Option<usize>,
     pub budget: Option<Budget>,
 }
@@ -74,6 +75,7 @@ impl Settings {
         let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
         let scoring = scoring(doc, f);
         let area = area(doc, f);
+        let remap = remap(doc, f);
         let heading_slices = match doc.number("dead_reckoning", "heading_slices", f) {
             Some(given) => Some(given as usize),
             None => dead_reckoning.map(default_slices),
@@ -103,6 +105,7 @@ impl Settings {
             scatter_m,
             scoring,
             area,
+            remap,
             heading_slices,
             budget,
         }
@@ -318,11 +321,15 @@ fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> 
 /// `tests/suite/tightness.rs`): wider slices fix later and report larger areas, narrower ones gain little for their time.
 const SLICE_DEG: f64 = 1.0;
 
-/// As many slices as keep each within [`SLICE_DEG`].
+/// Most slices unless told otherwise: with an unknown heading, slices of 5° find a fix hardly later than slices of 1° and
+/// in a twentieth of the time (measured, `tests/suite/slices.rs`).
+const SLICES_MAX: f64 = 72.0;
+
+/// As many slices as keep each within [`SLICE_DEG`], up to [`SLICES_MAX`].
 fn default_slices(dead_reckoning: DeadReckoning) -> usize {
     // The allowance keeps a bias that is a whole number of slices from asking for one more by rounding.
     let slices = 2.0 * dead_reckoning.heading_bias_rad.to_degrees() / SLICE_DEG - 1e-9;
-    slices.ceil().clamp(1.0, 720.0) as usize
+    slices.ceil().clamp(1.0, SLICES_MAX) as usize
 }
 
 fn budget(doc: &Document<'_>, f: &mut Findings) -> Option<Budget> {
@@ -336,6 +343,24 @@ fn area(doc: &Document<'_>, f: &mut Findings) -> Option<AreaOptions> {
     let headings = doc.number("area", "headings", f);
     let longest = doc.number("area", "longest_run_m", f);
     Some(AreaOptions { cell_m: cell?, headings: headings? as usize, longest_run_m: longest? })
+}
+
+fn remap(doc: &Document<'_>, f: &mut Findings) -> Option<RemapOptions> {
+    let number = |name: &str, f: &mut Findings| doc.number("remap", name, f);
+    let cell = number("cell_m", f);
+    let pass = number("pass_share", f);
+    let cured = number("cured_share", f);
+    let smallest = number("smallest_region_cells", f);
+    let half_width = number("resurvey_half_width_m", f);
+    let regions = number("gain_regions", f);
+    Some(RemapOptions {
+        cell_m: cell?,
+        pass_share: pass?,
+        cured_share: cured?,
+        smallest_region_cells: smallest? as usize,
+        resurvey_half_width_m: half_width?,
+        gain_regions: regions? as usize,
+    })
 }
 
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {

@@ -4,7 +4,7 @@ use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
 /// Columns every row has.
-const COLUMNS: [&str; 36] = [
+const COLUMNS: [&str; 38] = [
     "line",
     "line_rank",
     "segment",
@@ -41,6 +41,8 @@ const COLUMNS: [&str; 36] = [
     "required_fix_m",
     "fix_size_m",
     "seed",
+    "look_alikes",
+    "remap_regions",
 ];
 
 /// Columns that exist only when guaranteed distances were computed.
@@ -130,8 +132,15 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
         report.parameters.required_fix_m.to_string(),
         report.parameters.fix_size_m.to_string(),
         report.provenance.seed.to_string(),
+        numbers(&segment.look_alikes),
+        numbers(&segment.remap_regions),
     ]);
     row
+}
+
+/// Numbers with blanks between.
+fn numbers(numbers: &[usize]) -> String {
+    numbers.iter().map(usize::to_string).collect::<Vec<_>>().join(" ")
 }
 
 /// The shortest text that reads back as the same number; empty for none.

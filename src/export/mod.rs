@@ -6,12 +6,16 @@ mod area;
 mod csv;
 mod files;
 mod json;
+mod lookalikes;
+mod remap;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
 pub use csv::LinesCsv;
 pub use files::{prepare, write_all};
 pub use json::{LinesJson, TraceJson, check_json};
+pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
+pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
 pub use table::{check_text, lines_table, trace_table};
 
 use std::path::PathBuf;

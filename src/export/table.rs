@@ -266,7 +266,7 @@ fn share(estimate: Estimate) -> String {
     }
 }
 
-fn per_cent(share: f64) -> String {
+pub(super) fn per_cent(share: f64) -> String {
     format!("{:.1}", share * 100.0)
 }
 
@@ -274,16 +274,16 @@ pub(super) fn metres(value: Option<f64>) -> String {
     value.map_or_else(none, |value| format!("{value:.0}"))
 }
 
-fn none() -> String {
+pub(super) fn none() -> String {
     "none".to_owned()
 }
 
-fn short(value: f64) -> String {
+pub(super) fn short(value: f64) -> String {
     // The shortest text that reads back as the same number.
     value.to_string()
 }
 
 /// A name without control characters, which a terminal would obey.
-fn printable(name: &str) -> String {
+pub(super) fn printable(name: &str) -> String {
     name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect()
 }

@@ -46,6 +46,18 @@ pub(super) fn certain_sightings(scene: &Scene<'_>, plan: &Plan, bounds: &Bounds)
     found
 }
 
+/// Number of landmarks that every admissible dive along `plan` is certain to have detected after `within_m`.
+pub fn certain_landmarks(scene: &Scene<'_>, plan: &Plan, bounds: &Bounds, within_m: f64) -> usize {
+    let mut numbers: Vec<usize> = certain_sightings(scene, plan, bounds)
+        .into_iter()
+        .filter(|sighting| sighting.window.hi() <= within_m)
+        .map(|sighting| sighting.landmark)
+        .collect();
+    numbers.sort_unstable();
+    numbers.dedup();
+    numbers.len()
+}
+
 /// What all sightings from one straight piece of the track have in common. Nothing here depends on where the piece
 /// starts or ends, so it serves all pieces on one heading.
 #[derive(Clone, Copy, Debug)]

@@ -32,6 +32,7 @@ mod unseen;
 mod watch;
 
 pub use backward::{SHRINK_M, SWEEPS_MAX, Sweeps};
+pub use certain::certain_landmarks;
 pub use composed::{ComposedOutcome, ComposedRun};
 pub use corridor::{CorridorGrain, CorridorInterval};
 pub use feasible::{Feasible, State};

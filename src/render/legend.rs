@@ -9,7 +9,14 @@ use super::scene::Rect;
 use super::text;
 
 /// Draws the legend from `top` down in `column`; returns where it ends.
-pub(super) fn draw(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale, findings: &[Finding]) -> f64 {
+pub(super) fn draw(
+    sheet: &mut Sheet,
+    column: Rect,
+    top: f64,
+    scale: &Scale,
+    findings: &[Finding],
+    [has_look_alikes, has_regions]: [bool; 2],
+) -> f64 {
     let sizes = sheet.sizes;
     let k = sizes.k;
     let (heading, note) = match scale.quantity {
@@ -59,7 +66,31 @@ pub(super) fn draw(sheet: &mut Sheet, column: Rect, top: f64, scale: &Scale, fin
     let label = text::fit("landmark (its box, where that is larger)", sizes.small(), label_room(column, k));
     let top = middle - sizes.small().height_px() / 2.0;
     sheet.scene.text((label_left(column, k), top), &label, sizes.small(), SOFT_INK);
-    y + pitch
+    y += pitch;
+    if has_look_alikes {
+        y = mark(sheet, column, y, pitch, "look-alike ground and its number");
+    }
+    if has_regions {
+        y = mark(sheet, column, y, pitch, "remap region (r) and its number");
+    }
+    y
+}
+
+/// The bracket beside marked ground; returns where the row ends.
+fn mark(sheet: &mut Sheet, column: Rect, top: f64, pitch: f64, label: &str) -> f64 {
+    let (k, font) = (sheet.sizes.k, sheet.sizes.small());
+    let middle = top + pitch / 2.0;
+    let (left, right) = (column.left + 4.0 * k, column.left + swatch_width(k));
+    let points = vec![
+        (left, middle - 3.0 * k),
+        (left, middle + 1.0 * k),
+        (right, middle + 1.0 * k),
+        (right, middle - 3.0 * k),
+    ];
+    sheet.scene.stroke(points, crate::interval::larger(1.0, 1.5 * k), INK);
+    let label = text::fit(label, font, label_room(column, k));
+    sheet.scene.text((label_left(column, k), middle - font.height_px() / 2.0), &label, font, SOFT_INK);
+    top + pitch
 }
 
 fn no_fix_label(quantity: Quantity) -> &'static str {

@@ -9,10 +9,10 @@ use super::scene::{Px, Rect, Scene};
 use super::text::Font;
 use super::{ChartSize, RenderError, legend, ranking, text};
 use crate::interval::larger;
-use crate::report::{ChartLandmark, LineReport, LinesReport};
+use crate::report::{ChartLandmark, LineReport, LinesReport, SegmentReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
-const BOX_LEAST_PX: f64 = 4.0;
+pub(super) const BOX_LEAST_PX: f64 = 4.0;
 /// Widest label over the width of the frame.
 const LABEL_SHARE: f64 = 0.2;
 
@@ -53,9 +53,13 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
             before = Some((path, finding));
         }
     }
-    draw_names(&mut sheet, &frame, report, ribbon.half());
+    let mut taken = draw_names(&mut sheet, &frame, report, ribbon.half());
+    let has_look_alikes =
+        draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::LOOK_ALIKES);
+    let has_regions = draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::REMAP_REGIONS);
     draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
-    let legend_bottom = legend::draw(&mut sheet, column, column.top, &scale, &findings);
+    let legend_bottom =
+        legend::draw(&mut sheet, column, column.top, &scale, &findings, [has_look_alikes, has_regions]);
     let rest = Rect::new(column.left, legend_bottom + 22.0 * k, column.right, column.bottom);
     ranking::draw(&mut sheet, rest, report);
     Ok(sheet.scene)
@@ -132,7 +136,7 @@ fn track_px(frame: &MapFrame, line: &LineReport) -> Vec<Px> {
 }
 
 /// An arrow before the start of each line, and its name at a free place near by.
-fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_width: f64) {
+fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_width: f64) -> Taken {
     let (k, font) = (sheet.sizes.k, sheet.sizes.heading());
     let mut taken = Taken::new(frame.rect.grown(-4.0 * k), half_width);
     taken.dots = report.landmarks.iter().map(|mark| frame.px(mark.position)).collect();
@@ -160,6 +164,90 @@ fn draw_names(sheet: &mut Sheet, frame: &MapFrame, report: &LinesReport, half_wi
         sheet.scene.text((place.left + 3.0 * k, place.top + 1.0 * k), &name, font, INK);
         taken.rects.push(place);
     }
+    taken
+}
+
+/// A kind of ground that is marked beside the lines.
+#[derive(Clone, Copy)]
+struct Mark {
+    numbers: fn(&SegmentReport) -> &[usize],
+    /// Before each number.
+    prefix: &'static str,
+    /// 1 to starboard of the line, −1 to port.
+    side: f64,
+}
+
+impl Mark {
+    const LOOK_ALIKES: Self = Self { numbers: |segment| &segment.look_alikes, prefix: "", side: 1.0 };
+    const REMAP_REGIONS: Self = Self { numbers: |segment| &segment.remap_regions, prefix: "r", side: -1.0 };
+}
+
+/// A thin bracket beside each stretch over marked ground, with its numbers; returns whether there is any. A number that
+/// finds no place is left out: the bracket stays, and the CSV has it.
+fn draw_marks(
+    sheet: &mut Sheet,
+    frame: &MapFrame,
+    report: &LinesReport,
+    half_width: f64,
+    taken: &mut Taken,
+    mark: Mark,
+) -> bool {
+    let mut has_any = false;
+    for line in &report.lines {
+        for run in line.segments.chunk_by(|a, b| (mark.numbers)(a) == (mark.numbers)(b)) {
+            if (mark.numbers)(&run[0]).is_empty() {
+                continue;
+            }
+            has_any = true;
+            let mut path: Vec<Px> = Vec::new();
+            for point in run.iter().flat_map(|segment| frame.path(&segment.path)) {
+                if path.last() != Some(&point) {
+                    path.push(point);
+                }
+            }
+            let numbers: Vec<String> =
+                (mark.numbers)(&run[0]).iter().map(|number| format!("{}{number}", mark.prefix)).collect();
+            bracket(sheet, &path, half_width * mark.side, &numbers.join(", "), taken);
+        }
+    }
+    has_any
+}
+
+/// A line beside `path`, on its right for a positive `half_width` of the ribbon and on its left for a negative one, with
+/// ends turned towards it, and a label at its middle.
+fn bracket(sheet: &mut Sheet, path: &[Px], half_width: f64, label: &str, taken: &mut Taken) {
+    let k = sheet.sizes.k;
+    let (aside, hook) = (half_width + (5.0 * k).copysign(half_width), half_width + k.copysign(half_width));
+    let at = |index: usize, by: f64| {
+        let (before, after) = (path[index.saturating_sub(1)], path[smaller_index(index + 1, path.len() - 1)]);
+        let (dx, dy) = (after.0 - before.0, after.1 - before.1);
+        let length = larger(libm::hypot(dx, dy), 1e-9);
+        (path[index].0 - dy / length * by, path[index].1 + dx / length * by)
+    };
+    if path.len() < 2 {
+        return;
+    }
+    let mut points = vec![at(0, hook)];
+    points.extend((0..path.len()).map(|index| at(index, aside)));
+    points.push(at(path.len() - 1, hook));
+    sheet.scene.stroke(points, larger(1.0, 1.5 * k), INK);
+    let font = sheet.sizes.small();
+    let middle = at(path.len() / 2, aside);
+    let on_line = path[path.len() / 2];
+    let away = (middle.0 - on_line.0, middle.1 - on_line.1);
+    let room = (text::width(label, font) + 4.0 * k, font.height_px());
+    if let Some((place, leader)) = taken.label(middle, away, 4.0 * k, room) {
+        if let Some((from, to)) = leader {
+            sheet.scene.stroke(vec![from, to], larger(1.0, k), SOFT_INK);
+            taken.leaders.push((from, to));
+        }
+        sheet.scene.text((place.left + 2.0 * k, place.top), label, font, INK);
+        taken.rects.push(place);
+    }
+}
+
+fn smaller_index(a: usize, b: usize) -> usize {
+    if a < b { a } else { b }
 }
 
 /// Name of a line as the map shows it. A name that must be cut begins with its rank, so that two long names with the

@@ -14,9 +14,13 @@ mod colours;
 mod furniture;
 mod legend;
 mod lines;
+mod lookalike_panels;
+mod lookalikes;
 mod nice;
+mod pattern;
 mod place;
 mod ranking;
+mod remap;
 mod ribbon;
 mod scene;
 mod text;
@@ -25,7 +29,7 @@ mod trace;
 pub use colours::{CLASSES, ramp};
 pub use scene::{PlacedText, Rect};
 
-use crate::report::{AreaReport, LinesReport, TraceReport};
+use crate::report::{AreaReport, LinesReport, LookAlikesReport, RemapReport, TraceReport};
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
@@ -168,4 +172,64 @@ pub fn trace_png(report: &TraceReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`trace_png`].
 pub fn trace_layout(report: &TraceReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(trace::scene(report, size)?.texts)
+}
+
+/// Draws the most dangerous look-alikes on the map: both grounds outlined, joined and numbered, with a list beside it.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or there are neither landmarks nor lines.
+pub fn lookalikes_png(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&lookalikes::scene(report, size)?, size)
+}
+
+/// The texts of [`lookalikes_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`lookalikes_png`].
+pub fn lookalikes_layout(
+    report: &LookAlikesReport,
+    size: &ChartSize,
+) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(lookalikes::scene(report, size)?.texts)
+}
+
+/// Draws the worst look-alikes one by one, ground 2 laid over ground 1.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn.
+pub fn lookalike_panels_png(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&lookalike_panels::scene(report, size)?, size)
+}
+
+/// The texts of [`lookalike_panels_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`lookalike_panels_png`].
+pub fn lookalike_panels_layout(
+    report: &LookAlikesReport,
+    size: &ChartSize,
+) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(lookalike_panels::scene(report, size)?.texts)
+}
+
+/// Draws the regions that deserve more mapping, patterned by cause and numbered by gain, with the list of them.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or the search area has no finite corner.
+pub fn remap_png(report: &RemapReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&remap::scene(report, size)?, size)
+}
+
+/// The texts of [`remap_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`remap_png`].
+pub fn remap_layout(report: &RemapReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(remap::scene(report, size)?.texts)
 }

@@ -181,7 +181,7 @@ fn choose(events: &[TraceEvent]) -> Vec<&TraceEvent> {
 }
 
 /// Columns and rows that give `count` frames the largest squares in `area`.
-fn raster(count: usize, area: Rect) -> (usize, usize) {
+pub(super) fn raster(count: usize, area: Rect) -> (usize, usize) {
     let side = |columns: usize| {
         let rows = count.div_ceil(columns);
         smaller(area.width() / columns as f64, area.height() / rows as f64)
@@ -191,7 +191,7 @@ fn raster(count: usize, area: Rect) -> (usize, usize) {
 }
 
 /// The map frame of a panel: as wide as its column leaves room for, beside its northing labels.
-fn panel_frame(sheet: &Sheet, extent: Extent, cell: Rect) -> MapFrame {
+pub(super) fn panel_frame(sheet: &Sheet, extent: Extent, cell: Rect) -> MapFrame {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let at = |gutter: f64| {
         let rect = Rect { left: cell.left + gutter, ..cell };
@@ -261,7 +261,7 @@ fn cross(scene: &mut Scene, (x, y): Px, k: f64) {
     }
 }
 
-fn clipped_stroke(
+pub(super) fn clipped_stroke(
     scene: &mut Scene,
     frame: &MapFrame,
     points: &[Px],

@@ -3,8 +3,18 @@
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
 mod area;
+mod lookalikes;
+mod remap;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
+pub use lookalikes::{
+    ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,
+    RegularLayout, TellTale,
+};
+pub use remap::{
+    CauseShare, GeographicOutline, LineOverRegions, REMAP_STATEMENT, RegionOutline, RegionStretch,
+    RemapCause, RemapRegion, RemapReport, Resurvey, TOO_FEW_LANDMARKS_NOTE,
+};
 
 use serde::Serialize;
 
@@ -243,6 +253,11 @@ pub struct SegmentReport {
     /// Guaranteed fix distance from here.
     #[serde(skip_serializing_if = "Option::is_none")]
     pub guaranteed: Option<GuaranteedFix>,
+    /// Numbers of the listed look-alikes (as `lookalikes` lists them) over whose ground the segment runs, ascending.
+    pub look_alikes: Vec<usize>,
+    /// Numbers of the remap regions that the segment runs over; empty when none or not asked.
+    #[serde(skip_serializing_if = "Vec::is_empty")]
+    pub remap_regions: Vec<usize>,
 }
 
 /// Ambiguity against distance run, over all segment starts and dives of a line (*estimated*).

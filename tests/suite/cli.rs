@@ -7,7 +7,7 @@ use sha2::{Digest, Sha256};
 
 use crate::support::program::{Ran, Workplace, project};
 
-const COMMANDS: [&str; 4] = ["check", "lines", "trace", "completions"];
+const COMMANDS: [&str; 5] = ["check", "lines", "trace", "lookalikes", "completions"];
 
 #[test]
 fn help_teaches() {

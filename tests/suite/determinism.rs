@@ -40,3 +40,15 @@ fn an_area_map_of_the_demo_does_not_depend_on_threads() {
     let files = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json"];
     compare("area", &["--cell-m", "60", "--headings", "8"], &files);
 }
+
+#[test]
+fn look_alikes_of_the_demo_do_not_depend_on_threads() {
+    let files = [
+        "lookalikes-panels.png",
+        "lookalikes.csv",
+        "lookalikes.geojson",
+        "lookalikes.json",
+        "lookalikes.png",
+    ];
+    compare("lookalikes", &[], &files);
+}

@@ -3,6 +3,7 @@
 #![allow(clippy::disallowed_methods, reason = "oracles are written plainly; the ban is for the program")]
 
 mod adversary;
+mod alias;
 mod area;
 mod backward;
 mod cli;
@@ -22,6 +23,7 @@ mod one_dimension;
 mod oracle;
 mod projection;
 mod readme;
+mod remap;
 mod render;
 #[path = "support/reports.rs"]
 mod reports;

@@ -23,10 +23,13 @@ const TESTS: &str = "cargo test --release";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 3] = [
+const PICTURES: [(&str, &str); 6] = [
     ("reports/lines.png", "demo-out/lines.png"),
     ("reports/trace.png", "demo-out/trace.png"),
+    ("reports/lookalikes.png", "demo-out/lookalikes.png"),
+    ("reports/lookalikes-panels.png", "demo-out/lookalikes-panels.png"),
     ("reports/area-best.png", "demo-out/area-best.png"),
+    ("reports/remap.png", "demo-out/remap.png"),
 ];
 
 /// A fenced block: language, file name (may be empty), text.
@@ -78,6 +81,7 @@ static README: LazyLock<Readme> = LazyLock::new(|| {
     let mut made = on_disk.clone();
     for (part, text) in [
         ("demo ranking", printed("lines demo-data/dive.toml")),
+        ("demo look-alikes", printed("lookalikes demo-data/dive.toml")),
         ("example ranking", printed("lines mydive.toml")),
         ("keys", keys_table()),
     ] {
@@ -142,10 +146,12 @@ fn keys_table() -> String {
     table
 }
 
-/// The text from one heading or sentence to the next heading.
+/// The text from one heading or sentence to the next heading or table of columns.
 fn section<'a>(text: &'a str, start: &str) -> &'a str {
     let from = text.find(start).unwrap_or_else(|| panic!("no \"{start}\"")) + start.len();
-    let length = text[from..].find("\n## ").unwrap_or(text.len() - from);
+    let rest = &text[from..];
+    let ends = ["\n## ", "\nColumns of `"].map(|end| rest.find(end).unwrap_or(rest.len()));
+    let length = ends[0].min(ends[1]);
     &text[from..from + length]
 }
 
@@ -190,10 +196,27 @@ fn every_command_of_the_readme_runs() {
     }
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
     let scores = ["lines.csv", "lines.json", "lines.png"];
-    let area = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json"];
-    let demo = area.iter().chain(&scores).chain(&["trace.json", "trace.png"]);
-    let mut all: Vec<String> = demo.map(|name| format!("demo-out/{name}")).collect();
+    let others = [
+        "area-best.png",
+        "area-share.png",
+        "area-worst.png",
+        "area.csv",
+        "area.json",
+        "lookalikes-panels.png",
+        "lookalikes.csv",
+        "lookalikes.geojson",
+        "lookalikes.json",
+        "lookalikes.png",
+        "remap.csv",
+        "remap.geojson",
+        "remap.json",
+        "remap.png",
+        "trace.json",
+        "trace.png",
+    ];
+    let mut all: Vec<String> = scores.iter().chain(&others).map(|name| format!("demo-out/{name}")).collect();
     all.extend(scores.iter().map(|name| format!("results/{name}")));
+    all.sort();
     assert_eq!(names, all);
 }
 
@@ -335,22 +358,31 @@ fn every_listed_column_name_is_read() {
 }
 
 #[test]
-fn columns_of_the_scores_are_those_written() {
-    for (title, file) in [
-        ("\nColumns of `lines.csv`:", "demo-out/lines.csv"),
-        ("\nColumns of `area.csv`, one row", "demo-out/area.csv"),
-    ] {
-        let part = section(&README.on_disk, title);
-        // The next list of columns belongs to another file.
-        let end = part.get(1..).and_then(|rest| rest.find("\nColumns of")).map_or(part.len(), |at| at + 1);
-        let listed: Vec<String> = rows(&part[..end]).iter().flat_map(|row| quoted(&row[0])).collect();
-        let mut reader = csv::Reader::from_reader(README.outputs[file].as_slice());
+fn columns_of_the_files_are_those_written() {
+    for file in ["lines.csv", "area.csv", "lookalikes.csv"] {
+        let heading = format!("\nColumns of `{file}`");
+        let table = section(&README.on_disk, &heading);
+        // The tables of several files stand in one section.
+        let table = table.split("\nColumns of `").next().expect("the beginning");
+        let listed: Vec<String> = rows(table).iter().flat_map(|row| quoted(&row[0])).collect();
+        let mut reader = csv::Reader::from_reader(README.outputs[&format!("demo-out/{file}")].as_slice());
         let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
         let (listed_set, written_set): (BTreeSet<_>, BTreeSet<_>) =
             (listed.iter().collect(), written.iter().collect());
         assert_eq!(listed_set, written_set, "{file}");
         assert_eq!(listed.len(), written.len(), "{file}");
     }
+}
+
+#[test]
+fn columns_of_the_regions_are_those_written() {
+    let listed: Vec<String> = rows(section(&README.on_disk, "\nColumns of `remap.csv`:"))
+        .iter()
+        .flat_map(|row| quoted(&row[0]))
+        .collect();
+    let mut reader = csv::Reader::from_reader(README.outputs["demo-out/remap.csv"].as_slice());
+    let written: Vec<String> = reader.headers().expect("a header").iter().map(str::to_owned).collect();
+    assert_eq!(listed, written);
 }
 
 #[test]
@@ -380,7 +412,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "area", "trace", "completions"] {
+    for command in ["", "check", "lines", "area", "trace", "lookalikes", "remap", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()

@@ -96,12 +96,14 @@ pub fn area(setup: &Setup<'_>, options: &AreaOptions, tick: &(dyn Fn(usize) + Sy
 }
 
 /// The headings, radians clockwise from grid north.
-fn headings_rad(options: &AreaOptions) -> Vec<f64> {
+pub(super) fn headings_rad(options: &AreaOptions) -> Vec<f64> {
     let count = options.headings;
     (0..count).map(|k| std::f64::consts::TAU * k as f64 / count as f64).collect()
 }
 
-fn outcomes(
+/// What is guaranteed of the runs from the cells `places` of `grid`: cell by cell, in the order of the headings. `tick`
+/// as in [`area`].
+pub(super) fn outcomes(
     setup: &Setup<'_>,
     options: &AreaOptions,
     grid: &AreaGrid,

@@ -34,7 +34,7 @@
 //! *Cost.* At 100 landmarks per km² and runs of 600 m a start has about four sightings before its fix, and groups hold three
 //! to five starts. A third of the time goes into candidates for the first two and three sightings, whose number grows with
 //! the number of landmarks (1500 pairs per group at 10⁴, 14 000 at 10⁵); the rest, which does not grow, into sightings,
-//! their sets, and the cells that decide. So ten times the landmarks cost about five times as much per start
+//! their sets, and the cells that decide. So ten times the landmarks cost about six times as much per start
 //! (`tests/bench/area.rs`). To grow more slowly, the proof that no other chain is left would have to begin from a choice
 //! that is rarer than a pair: every pair that explains two sightings has to be looked at once.
 //!

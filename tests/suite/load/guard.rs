@@ -28,7 +28,13 @@ fn every_number_outside_its_range_is_refused_by_name() {
         let scene = match super::DIVE.lines().find(|l| l.starts_with(&format!("{} ", key.name))) {
             Some(line) => Scene::new().swap(line, &bad),
             None => {
-                Scene::new().swap(&format!("[{}]\n", key.section), &format!("[{}]\n{bad}\n", key.section))
+                let header = format!("[{}]\n", key.section);
+                if super::DIVE.contains(&header) {
+                    Scene::new().swap(&header, &format!("{header}{bad}\n"))
+                } else {
+                    // A table that the sound dive file leaves out goes to its top level's end, before the others.
+                    Scene::new().swap("[map]\n", &format!("{header}{bad}\n[map]\n"))
+                }
             }
         };
         let text = scene.errors();

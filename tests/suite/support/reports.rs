@@ -131,6 +131,8 @@ pub fn line(
                 detections_ahead: (count - segments.len()) * 2,
                 estimated: finding(segments.len(), count),
                 guaranteed: None,
+                look_alikes: Vec::new(),
+                remap_regions: Vec::new(),
             });
             along += length;
         }

@@ -1,0 +1,75 @@
+//! The command `remap`.
+
+use std::path::Path;
+
+use anyhow::{Context, Result, bail};
+
+use super::args::Common;
+use super::run::{Exit, read, say_written, warning};
+use super::terminal::{print_notices, print_result, runs_bar};
+use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
+use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
+use crate::render::{self, ChartSize};
+use crate::report::{LinesReport, RemapReport};
+
+/// Files that `remap` writes.
+const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
+
+pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
+    let dive = read(path, common)?;
+    print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
+    let setup = Setup::new(&dive);
+    refuse_huge(&setup)?;
+    if let Some(out) = out {
+        export::prepare(out, &FILES, common.force)?;
+    }
+    let report = analyse(&setup, common);
+    let json = RemapJson.bytes(&report)?;
+    if let Some(out) = out {
+        let files = [
+            (FILES[0], json.clone()),
+            (FILES[1], RemapCsv.bytes(&report)?),
+            (FILES[2], RemapGeoJson.bytes(&report)?),
+            (FILES[3], render::remap_png(&report, &ChartSize::default())?),
+        ];
+        export::write_all(out, &files, common.force)?;
+        say_written(out, &FILES, common);
+    }
+    let text = if common.json { json } else { export::remap_table(&report).into_bytes() };
+    print_result(&text).context("standard output")?;
+    if report.undecided {
+        let text = "some runs are undecided: the solver ran out of its cell budget; they count as runs without a fix; raise \
+                    scoring.cell_budget to decide them"
+            .to_owned();
+        print_notices([&warning(text)], common.quiet);
+        return Ok(Exit::Undecided);
+    }
+    Ok(Exit::Done)
+}
+
+/// Marks the segments of `lines` that run over remap regions.
+pub(super) fn mark_remap_regions(setup: &Setup<'_>, lines: &mut LinesReport, common: &Common) {
+    assess::mark_segments(lines, &analyse(setup, common));
+}
+
+fn analyse(setup: &Setup<'_>, common: &Common) -> RemapReport {
+    let bar = runs_bar(common.quiet);
+    let report = assess::remap(setup, &|progress| match progress {
+        RemapProgress::Planned(runs) => bar.inc_length(runs as u64),
+        RemapProgress::Done(runs) => bar.inc(runs as u64),
+    });
+    bar.finish_and_clear();
+    report
+}
+
+/// Refuses a map with more runs than are computed.
+pub(super) fn refuse_huge(setup: &Setup<'_>) -> Result<()> {
+    let starts = assess::area_starts(setup, &assess::remap_area_options(setup.dive));
+    if starts > AREA_STARTS_MAX {
+        bail!(
+            "remap: {starts} runs (start cells times headings), and at most {AREA_STARTS_MAX} are computed; choose larger \
+             cells (remap.cell_m), fewer headings (area.headings), or a smaller start.search_area"
+        );
+    }
+    Ok(())
+}
