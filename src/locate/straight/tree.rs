@@ -61,6 +61,8 @@ pub(super) struct Tree<'a, 'f> {
     first: &'a Chains,
     /// By landmark: the first chain that ends with it, while a list is lengthened.
     heads: Vec<u32>,
+    /// The landmarks that have one, bit by bit: small enough to stay in the nearest cache.
+    marks: Vec<u64>,
 }
 
 impl<'a, 'f> Tree<'a, 'f> {
@@ -77,6 +79,7 @@ impl<'a, 'f> Tree<'a, 'f> {
             outcomes,
             first: &first,
             heads: vec![NONE; all.field.points.len()],
+            marks: vec![0; all.field.points.len() / 64 + 1],
         };
         let members = (0..tree.runs.len()).collect();
         tree.branch(members, 0, &Chains::new(0));
@@ -184,14 +187,16 @@ impl<'a, 'f> Tree<'a, 'f> {
                 // Chains by last landmark, as linked lists.
                 let mut after = Vec::with_capacity(before.len());
                 for number in 0..before.len() {
-                    let head = &mut self.heads[before.chain(number)[depth - 1] as usize];
+                    let last = before.chain(number)[depth - 1] as usize;
+                    let head = &mut self.heads[last];
                     after.push(*head);
                     *head = number as u32;
+                    self.marks[last / 64] |= 1 << (last % 64);
                 }
-                let heads = &self.heads;
+                let (heads, marks) = (&self.heads, &self.marks);
                 let found = field.pairs.for_each(
                     &widest,
-                    |first| heads[first as usize] != NONE,
+                    |first| marks[first as usize / 64] >> (first % 64) & 1 == 1,
                     |first, second| {
                         let mut number = heads[first as usize];
                         while number != NONE {
@@ -205,7 +210,9 @@ impl<'a, 'f> Tree<'a, 'f> {
                     },
                 );
                 for number in 0..before.len() {
-                    self.heads[before.chain(number)[depth - 1] as usize] = NONE;
+                    let last = before.chain(number)[depth - 1] as usize;
+                    self.heads[last] = NONE;
+                    self.marks[last / 64] = 0;
                 }
                 found
             };
@@ -330,14 +337,11 @@ impl<'a, 'f> Tree<'a, 'f> {
                 let here = run.sightings[chains.length - 1].landmark as u32;
                 let around = run.steps[chains.length - 1].around;
                 let windows = self.terms.window_count();
-                let mut candidates: Vec<u32> = (0..chains.len())
-                    .map(|number| chains.chain(number))
-                    .filter(|chain| (0..windows).any(|window| run.keeps(self.field, chain, window)))
-                    .map(|chain| chain[chains.length - 1])
-                    .collect();
-                candidates.sort_unstable();
-                candidates.dedup();
-                if self.field.are_apart(here, there, around, &candidates) {
+                let last = (0..chains.len()).map(|number| chains.chain(number)[chains.length - 1]);
+                let explains = |number: usize| {
+                    (0..windows).any(|window| run.keeps(self.field, chains.chain(number), window))
+                };
+                if self.field.are_apart(here, there, around, last, explains) {
                     return true;
                 }
                 let mut cells = Vec::new();
