@@ -18,7 +18,8 @@ use crate::track::plan::Plan;
 /// Tracks at the rim of the descent scatter, beside the planned one.
 const RIM_TRACKS: usize = 6;
 
-/// With fewer certain detections than this, look-alikes are put down to too few landmarks.
+/// With fewer certain detections than this, look-alikes are put down to too few landmarks: two ranges and bearings are one
+/// constellation that is likely to occur twice.
 pub(super) const FEW_DETECTIONS: usize = 3;
 
 /// The tracks that stand for the descent scatter.

@@ -5,7 +5,7 @@ use std::path::Path;
 use anyhow::{Context, Result, bail};
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, warning};
+use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
 use crate::export::{self, AreaCsv, AreaJson, Exporter};
@@ -66,11 +66,7 @@ pub(super) fn area(path: &Path, asked: &AreaRequest<'_>, common: &Common) -> Res
     let text = if common.json { json()? } else { export::area_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.is_undecided() {
-        let text = "some runs are undecided: the solver ran out of its cell budget; they count as runs without a fix; raise \
-                    scoring.cell_budget to decide them"
-            .to_owned();
-        print_notices([&warning(text)], common.quiet);
-        return Ok(Exit::Undecided);
+        return Ok(undecided_runs(common));
     }
     Ok(Exit::Done)
 }

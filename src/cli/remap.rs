@@ -5,7 +5,7 @@ use std::path::Path;
 use anyhow::{Context, Result, bail};
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, warning};
+use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
@@ -38,11 +38,7 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
     let text = if common.json { json } else { export::remap_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.undecided {
-        let text = "some runs are undecided: the solver ran out of its cell budget; they count as runs without a fix; raise \
-                    scoring.cell_budget to decide them"
-            .to_owned();
-        print_notices([&warning(text)], common.quiet);
-        return Ok(Exit::Undecided);
+        return Ok(undecided_runs(common));
     }
     Ok(Exit::Done)
 }

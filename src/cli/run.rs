@@ -230,6 +230,15 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     Ok(if report.undecided { Exit::Undecided } else { Exit::Done })
 }
 
+/// Says that some runs of a map are undecided, and how to exit.
+pub(super) fn undecided_runs(common: &Common) -> Exit {
+    let text = "some runs are undecided: the solver ran out of its cell budget; they count as runs without a fix; raise \
+                scoring.cell_budget to decide them"
+        .to_owned();
+    print_notices([&warning(text)], common.quiet);
+    Exit::Undecided
+}
+
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
 }

@@ -8,7 +8,7 @@ use fixability::detect::{DrawnErrors, simulate};
 use fixability::dive::{AreaOptions, Dive, ErrorShape};
 use fixability::export::{AreaCsv, AreaJson, Exporter};
 use fixability::frame::LocalPoint;
-use fixability::locate::{StraightOutcome, StraightRuns, steps};
+use fixability::locate::{Bounds, StraightOutcome, StraightRuns, steps};
 use fixability::map::Landmark;
 use fixability::render::{AreaChart, ChartSize, Rect, area_layout, area_png, ramp};
 use fixability::report::{AreaReport, Cause, NoFixCounts, RunOutcome};
@@ -17,6 +17,7 @@ use fixability::vehicle::SonarKind;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::guarantee::scaled;
 use crate::support::program::{Workplace, project};
 
 fn read(path: &str) -> Dive {
@@ -223,19 +224,9 @@ fn shrunken(dive: &Dive, share: f64) -> Dive {
         landmark.half_width_east_m *= share;
         landmark.half_width_north_m *= share;
     }
-    let (d, s) = (&mut small.dead_reckoning, &mut small.sonar);
-    for error in [
-        &mut d.scale_error,
-        &mut d.heading_bias_rad,
-        &mut d.heading_noise_rad,
-        &mut d.drift_mps,
-        &mut s.range_error_m,
-        &mut s.range_error_fraction,
-        &mut s.bearing_error_rad,
-        &mut s.altitude_error_m,
-    ] {
-        *error *= share;
-    }
+    let (dead_reckoning, sonar, heading_slices) = (dive.dead_reckoning, dive.sonar, dive.heading_slices);
+    let bounds = scaled(Bounds { dead_reckoning, sonar, heading_slices }, share);
+    (small.dead_reckoning, small.sonar) = (bounds.dead_reckoning, bounds.sonar);
     small
 }
 

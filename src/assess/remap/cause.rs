@@ -4,17 +4,13 @@ use rayon::prelude::*;
 
 use super::Run;
 use crate::assess::Setup;
+use crate::assess::guarantee::FEW_DETECTIONS;
 use crate::dive::Dive;
 use crate::interval::{larger, smaller};
 use crate::locate::certain_landmarks;
 use crate::report::{Cause, RemapCause, RunOutcome};
 use crate::track::plan::Plan;
 use crate::vehicle::DeadReckoning;
-
-/// Landmarks that must be certain to be detected, beyond those that the budgets of strays and misses may take away,
-/// before look-alike ground is blamed: two ranges and bearings are one constellation that is likely to occur twice, and
-/// the same limit is used for lines.
-const ENOUGH_LANDMARKS: usize = 3;
 
 /// The headings of one cell, counted.
 #[derive(Clone, Copy, Debug, Default, PartialEq, Eq)]
@@ -120,7 +116,8 @@ pub(super) fn causes(run: &Run<'_>, places: &[(usize, usize)], tallies: &[Tally]
 fn few_landmarks(run: &Run<'_>, tight: &Dive, places: &[(usize, usize)]) -> Vec<bool> {
     let setup = Setup::new(tight);
     let (scene, bounds) = (setup.scene(), setup.bounds());
-    let enough = ENOUGH_LANDMARKS + usize::from(tight.budget.strays) + usize::from(tight.budget.misses);
+    // Beyond those that the budgets of strays and misses may take away.
+    let enough = FEW_DETECTIONS + usize::from(tight.budget.strays) + usize::from(tight.budget.misses);
     places
         .par_iter()
         .map(|&(column, row)| {
