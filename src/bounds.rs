@@ -70,6 +70,8 @@ pub enum Kind {
     Crs,
     /// `true` or `false`.
     Flag,
+    /// A calendar date.
+    Date,
 }
 
 /// Whether a key must be given.
@@ -132,6 +134,13 @@ use Need::{Default, Required, Without};
 /// All keys of the dive file, in the order of the documentation.
 pub const KEYS: &[Key] = &[
     key("", "name", Kind::Text, Required, "Title of the dive, printed on every output."),
+    key(
+        "",
+        "issued",
+        Kind::Date,
+        Without("no date on the outputs, and the same input gives the same bytes"),
+        "Date of issue, printed on every output.",
+    ),
     key("map", "landmarks", Kind::File, Required, "Landmarks: CSV or GeoJSON points."),
     key("map", "crs", Kind::Crs, Required, "Coordinate system of the landmark file."),
     key(
@@ -177,6 +186,13 @@ pub const KEYS: &[Key] = &[
         Range::closed(0.0, 11_500.0, "m"),
         Default("0"),
         "Depth of the seabed, for the scale between true metres down there and grid metres.",
+    ),
+    key(
+        "map",
+        "surveyed",
+        Kind::Date,
+        Without("the outputs say that the age of the map is not stated"),
+        "Date on which the landmarks were surveyed; of several surveys, the oldest.",
     ),
     key(
         "map",
@@ -540,6 +556,7 @@ impl Key {
             Kind::Files => "a list of file names in quotes, relative to the dive file".into(),
             Kind::Crs => "\"EPSG:4326\" (latitude and longitude), the \"EPSG:…\" code of a projected grid, or \"local\" (plain metres)".into(),
             Kind::Flag => "true or false".into(),
+            Kind::Date => "a date as year-month-day, such as 2026-05-31".into(),
         }
     }
 }

@@ -115,7 +115,12 @@ impl<'a> Setup<'a> {
             inputs: dive.inputs.clone(),
             seed: dive.scoring.seed,
             generator: crate::detect::GENERATOR,
+            issued: dive.issued.map(|date| date.to_string()),
+            surveyed: dive.surveyed.map(|date| date.to_string()),
+            map_age_days: dive.issued.zip(dive.surveyed).map(|(issued, surveyed)| (issued - surveyed).whole_days()),
             coordinate_system: dive.frame.name(),
+            epsg: dive.frame.epsg(),
+            frame: dive.frame.clone(),
             caution: crate::report::CAUTION,
         }
     }

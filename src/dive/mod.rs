@@ -11,6 +11,8 @@ mod widen;
 
 use std::path::PathBuf;
 
+use time::Date;
+
 use crate::frame::{Frame, LocalPoint};
 use crate::map::Landmark;
 use crate::problem::Notice;
@@ -126,6 +128,10 @@ pub struct InputFile {
 pub struct Dive {
     /// Title from the dive file.
     pub name: String,
+    /// Date of issue, if the dive file states one.
+    pub issued: Option<Date>,
+    /// Date of the survey behind the map, if the dive file states one.
+    pub surveyed: Option<Date>,
     /// The dive file.
     pub path: PathBuf,
     /// The working frame.

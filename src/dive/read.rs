@@ -109,6 +109,8 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
     }
     Some(Dive {
         name: settings.name?,
+        issued: settings.issued,
+        surveyed: settings.surveyed,
         path: path.to_path_buf(),
         frame: site.frame,
         landmarks,

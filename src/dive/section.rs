@@ -5,6 +5,8 @@
 
 use std::path::{Path, PathBuf};
 
+use time::Date;
+use time::format_description::well_known::Iso8601;
 use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
@@ -282,6 +284,22 @@ impl<'a> Document<'a> {
                 None
             }
         }
+    }
+
+    /// A date, or none. Dates are dates of the calendar in quotes or as TOML has them, without time of day.
+    pub(super) fn date(&self, section: &str, name: &str, findings: &mut Findings) -> Option<Date> {
+        let key = bounds::find(section, name);
+        let value = self.lookup(key, findings)?;
+        let text = match value.get_ref() {
+            DeValue::String(text) => text.trim().to_owned(),
+            DeValue::Datetime(date) => date.to_string(),
+            _ => String::new(),
+        };
+        let date = Date::parse(&text, &Iso8601::DATE).ok();
+        if date.is_none() {
+            self.wrong(key, value, "is not a date", findings);
+        }
+        date
     }
 
     /// A file name, or none.

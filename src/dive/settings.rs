@@ -2,6 +2,8 @@
 
 use std::path::PathBuf;
 
+use time::Date;
+
 use super::section::Document;
 use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring};
 use crate::frame::{Crs, Frame};
@@ -13,6 +15,8 @@ use crate::vehicle::{DeadReckoning, Sonar, SonarKind, Vehicle};
 #[derive(Debug)]
 pub(super) struct Settings {
     pub name: Option<String>,
+    pub issued: Option<Date>,
+    pub surveyed: Option<Date>,
     pub landmarks: Option<PathBuf>,
     pub map_crs: Option<Crs>,
     pub working: Option<Frame>,
@@ -43,6 +47,7 @@ pub(super) struct Settings {
 impl Settings {
     pub(super) fn read(doc: &Document<'_>, f: &mut Findings) -> Self {
         let name = doc.text("", "name", f);
+        let (issued, surveyed) = dates(doc, f);
         let landmarks = doc.file("map", "landmarks", f);
         let map_crs = doc.crs("map", "crs", f);
         let working = working(doc, map_crs.as_ref(), f);
@@ -83,6 +88,8 @@ impl Settings {
         let budget = budget(doc, f);
         Self {
             name,
+            issued,
+            surveyed,
             landmarks,
             map_crs,
             working,
@@ -110,6 +117,21 @@ impl Settings {
             budget,
         }
     }
+}
+
+/// Dates of issue and of the survey.
+fn dates(doc: &Document<'_>, f: &mut Findings) -> (Option<Date>, Option<Date>) {
+    let issued = doc.date("", "issued", f);
+    let surveyed = doc.date("map", "surveyed", f);
+    if let (Some(issued), Some(surveyed)) = (issued, surveyed)
+        && surveyed > issued
+    {
+        f.problem(
+            doc.problem("map", "surveyed", format!("{surveyed} is after the date of issue, {issued}"))
+                .accepted("a date not after `issued`"),
+        );
+    }
+    (issued, surveyed)
 }
 
 fn working(doc: &Document<'_>, map_crs: Option<&Crs>, f: &mut Findings) -> Option<Frame> {

@@ -19,7 +19,7 @@ pub use remap::{
 use serde::Serialize;
 
 use crate::dive::{InputFile, RankBy};
-use crate::frame::LocalPoint;
+use crate::frame::{Frame, LocalPoint};
 
 /// The caution every output carries.
 pub const CAUTION: &str = "Planning aid, not for navigation. A fix is unambiguous only while the stated error bounds hold and the map is as described. No statement that ground is clear of objects. The vehicle's safety case, local regulations and qualified personnel decide.";
@@ -41,8 +41,22 @@ pub struct Provenance {
     pub seed: u64,
     /// Name of the generator.
     pub generator: &'static str,
+    /// Date of issue as year-month-day; none unless the dive file states it.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub issued: Option<String>,
+    /// Date of the survey behind the map as year-month-day; none unless the dive file states it.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub surveyed: Option<String>,
+    /// Days from the survey to the issue; none unless both dates are stated.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    pub map_age_days: Option<i64>,
     /// Working frame in words: `WGS 84 / UTM zone 31N (EPSG:32631)` or `local metres`.
     pub coordinate_system: String,
+    /// EPSG code of the working frame; none for local metres.
+    pub epsg: Option<u16>,
+    /// The working frame itself, for charts and files that show latitude and longitude.
+    #[serde(skip)]
+    pub frame: Frame,
     /// The caution text.
     pub caution: &'static str,
 }

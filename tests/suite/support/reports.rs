@@ -1,7 +1,7 @@
 //! Invented report values for charts and exporters: seeded scenes, no solver behind them.
 
 use fixability::dive::{ErrorShape, InputFile, RankBy};
-use fixability::frame::LocalPoint;
+use fixability::frame::{Frame, LocalPoint};
 use fixability::report::{
     CAUTION, ChartLandmark, CorridorReport, Estimate, EstimatedFix, GuaranteedFix, Hindsight, HindsightEvent,
     LineReport, LinesReport, Parameters, ProfilePoint, Provenance, SegmentReport, TraceEvent, TraceReport,
@@ -30,7 +30,12 @@ pub fn provenance(schema: &'static str) -> Provenance {
         inputs: vec![input("dive.toml", "4f"), input("landmarks.csv", "9a"), input("lines.csv", "77")],
         seed: 20_261_201,
         generator: "ChaCha8",
+        issued: None,
+        surveyed: None,
+        map_age_days: None,
         coordinate_system: "WGS 84 / UTM zone 31N (EPSG:32631)".to_owned(),
+        epsg: Some(32_631),
+        frame: Frame::from_epsg(32_631).expect("a projected code"),
         caution: CAUTION,
     }
 }
