@@ -202,6 +202,7 @@ fn every_command_of_the_readme_runs() {
         "area-worst.png",
         "area.csv",
         "area.json",
+        "area.tif",
         "lookalikes-panels.png",
         "lookalikes.csv",
         "lookalikes.geojson",
