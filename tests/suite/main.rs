@@ -12,6 +12,7 @@ mod craters;
 mod demo;
 mod determinism;
 mod export;
+mod gis;
 mod guarantee;
 mod intervals;
 mod layers;
