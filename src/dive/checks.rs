@@ -4,12 +4,16 @@ use std::collections::BTreeMap;
 
 use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
+use time::Date;
 
+use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources, bounding};
 use crate::frame::LocalPoint;
+use crate::input::InputText;
 use crate::interval::larger;
 use crate::map::Landmark;
+use crate::map::read::LandmarkFile;
 use crate::problem::{Findings, Problem};
 use crate::track::Line;
 use crate::units::{bearing_words, count_words, length_words};
@@ -215,6 +219,57 @@ pub(super) fn meet(site: &Site, lines: &[Line], sonar: &Sonar, findings: &mut Fi
         .accepted("lines within sonar reach of the mapped area")
         .advice("check the coordinate systems of both files, and for swapped axes"),
     );
+}
+
+/// Leaves out landmarks surveyed before `oldest`. They may still be there, so the warning says what that means.
+pub(super) fn leave_out_old(
+    document: &Document<'_>,
+    file: &mut LandmarkFile,
+    oldest: Date,
+    input: Option<&InputText>,
+    findings: &mut Findings,
+) {
+    let all = file.rows.len();
+    let undated = file.rows.iter().filter(|row| row.surveyed.is_none()).count();
+    if undated == all {
+        let what = "has no effect: no landmark has a survey date of its own (column or property surveyed)";
+        findings
+            .problem(document.problem("map", "oldest_survey", what).advice("remove it, or add the dates"));
+        return;
+    }
+    let (old, kept): (Vec<_>, Vec<_>) = std::mem::take(&mut file.rows)
+        .into_iter()
+        .partition(|row| row.surveyed.is_some_and(|date| date < oldest));
+    file.rows = kept;
+    let name = input.map(|input| input.name.as_path());
+    if !old.is_empty() {
+        findings.warn(
+            name,
+            format!(
+                "{} of {all} surveyed before {oldest} left out: {}; where they are still there, each detection of one is \
+                 a stray, so allow for them in budget.strays",
+                count_words(old.len(), "landmark"),
+                joined(old.iter().map(|row| row.label()).collect())
+            ),
+        );
+    }
+    if undated > 0 {
+        findings.warn(name, format!("{} without a survey date kept", count_words(undated, "landmark")));
+    }
+}
+
+/// Says what a common shift of the map means.
+pub(super) fn common_shift(shift_m: f64, findings: &mut Findings) {
+    if shift_m > 0.0 {
+        findings.inform(
+            None,
+            format!(
+                "common shift of the whole map of up to {}: it cannot be found from relative positions, so no fix removes it; \
+                 add it to every absolute position; descent scatter and search area are widened by it",
+                length_words(shift_m)
+            ),
+        );
+    }
 }
 
 /// Says what few, coincident or overlapping landmarks mean.
