@@ -546,6 +546,27 @@ pub const KEYS: &[Key] = &[
         Default("20"),
         "Number of regions, largest first, for which cure and gain are computed.",
     ),
+    key(
+        "suggest",
+        "listed",
+        Kind::Whole(Range::closed(1.0, 100.0, "")),
+        Default("5"),
+        "Most dive points and headings to suggest.",
+    ),
+    number(
+        "suggest",
+        "lead_m",
+        Range::closed(0.0, 10_000.0, "m"),
+        Default("50"),
+        "How far a suggested line goes on after its guaranteed fix; it is at least `scoring.required_fix_m` long where the search area allows.",
+    ),
+    number(
+        "sensitivity",
+        "factor",
+        Range { low: 0.0, above_low: false, high: 1.0, below_high: true, unit: "" },
+        Default("0.5"),
+        "Each error bound is multiplied by this, one at a time and all together.",
+    ),
 ];
 
 /// The row of a key.

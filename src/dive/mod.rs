@@ -2,12 +2,15 @@
 
 mod area;
 mod checks;
+mod improve;
 mod read;
 mod section;
 mod settings;
 mod site;
 mod swath;
 mod widen;
+
+pub use improve::ErrorBound;
 
 use std::path::PathBuf;
 
@@ -128,6 +131,15 @@ pub struct RemapOptions {
     pub gain_regions: usize,
 }
 
+/// What `suggest` lists.
+#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+pub struct SuggestOptions {
+    /// Most suggestions to list, at least 1.
+    pub listed: usize,
+    /// How far an exported line goes on after the guaranteed fix, metres, at least 0.
+    pub lead_m: f64,
+}
+
 /// One input file and the fingerprint of its bytes.
 #[derive(Clone, Debug, PartialEq, serde::Serialize)]
 pub struct InputFile {
@@ -172,6 +184,10 @@ pub struct Dive {
     pub area: AreaOptions,
     /// How the remap analysis judges cells.
     pub remap: RemapOptions,
+    /// What `suggest` lists.
+    pub suggest: SuggestOptions,
+    /// Factor by which `sensitivity` multiplies each error bound, at least 0 and below 1.
+    pub improvement_factor: f64,
     /// Slices of the heading-bias interval that the solver takes one by one, at least 1.
     pub heading_slices: usize,
     /// Detections that may be strays and landmarks that may be missed.
@@ -182,6 +198,8 @@ pub struct Dive {
     pub inputs: Vec<InputFile>,
     /// What was understood and what to watch, for `check` and for standard error.
     pub notices: Vec<Notice>,
+    /// The bounds before they were widened for the grid.
+    stated: improve::Stated,
 }
 
 impl Dive {

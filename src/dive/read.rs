@@ -2,6 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
+use super::improve::Stated;
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
@@ -93,7 +94,8 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
             half_width_north_m: grid.half_width_m(north),
         })
         .collect();
-    let dead_reckoning = grid.dead_reckoning(settings.dead_reckoning?);
+    let stated = Stated { grid, dead_reckoning: settings.dead_reckoning?, sonar };
+    let dead_reckoning = grid.dead_reckoning(stated.dead_reckoning);
     let widened_sonar = grid.sonar(sonar);
 
     let uncertainty_statement = match settings.declared {
@@ -128,11 +130,14 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         scoring: settings.scoring?,
         area: settings.area?,
         remap: settings.remap?,
+        suggest: settings.suggest?,
+        improvement_factor: settings.improvement_factor?,
         heading_slices: settings.heading_slices?,
         budget: settings.budget?,
         nothing_seen_inside,
         inputs,
         notices: std::mem::take(&mut findings.notices),
+        stated,
     })
 }
 

@@ -5,7 +5,7 @@ use std::path::PathBuf;
 use time::Date;
 
 use super::section::Document;
-use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring};
+use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring, SuggestOptions};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -43,6 +43,8 @@ pub(super) struct Settings {
     pub scoring: Option<Scoring>,
     pub area: Option<AreaOptions>,
     pub remap: Option<RemapOptions>,
+    pub suggest: Option<SuggestOptions>,
+    pub improvement_factor: Option<f64>,
     pub heading_slices: Option<usize>,
     pub budget: Option<Budget>,
 }
@@ -87,6 +89,8 @@ impl Settings {
         let scoring = scoring(doc, f);
         let area = area(doc, f);
         let remap = remap(doc, f);
+        let suggest = suggest(doc, f);
+        let improvement_factor = doc.number("sensitivity", "factor", f);
         let heading_slices = match doc.number("dead_reckoning", "heading_slices", f) {
             Some(given) => Some(given as usize),
             None => dead_reckoning.map(default_slices),
@@ -122,6 +126,8 @@ impl Settings {
             scoring,
             area,
             remap,
+            suggest,
+            improvement_factor,
             heading_slices,
             budget,
         }
@@ -398,6 +404,12 @@ fn remap(doc: &Document<'_>, f: &mut Findings) -> Option<RemapOptions> {
         resurvey_half_width_m: half_width?,
         gain_regions: regions? as usize,
     })
+}
+
+fn suggest(doc: &Document<'_>, f: &mut Findings) -> Option<SuggestOptions> {
+    let listed = doc.number("suggest", "listed", f);
+    let lead = doc.number("suggest", "lead_m", f);
+    Some(SuggestOptions { listed: listed? as usize, lead_m: lead? })
 }
 
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {

@@ -5,6 +5,8 @@
 mod area;
 mod lookalikes;
 mod remap;
+mod sensitivity;
+mod suggest;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
 pub use lookalikes::{
@@ -15,6 +17,11 @@ pub use remap::{
     CauseShare, GeographicOutline, LineOverRegions, REMAP_STATEMENT, RegionOutline, RegionStretch,
     RemapCause, RemapRegion, RemapReport, Resurvey, TOO_FEW_LANDMARKS_NOTE,
 };
+pub use sensitivity::{
+    BoundValue, GuaranteedChange, GuaranteedFigures, ImprovedBound, SENSITIVITY_STATEMENT, SensitivityLine,
+    SensitivityReport, SensitivityVerdict, ZeroBound,
+};
+pub use suggest::{CauseCount, SUGGEST_STATEMENT, SuggestReport, SuggestedStart, Suggestion};
 
 use serde::Serialize;
 
