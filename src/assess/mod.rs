@@ -29,7 +29,7 @@ use crate::frame::LocalPoint;
 use crate::locate::cell::Cell;
 use crate::locate::{Bounds, Silence, Solver, SolverMap};
 use crate::map::Landmark;
-use crate::report::{ChartLandmark, Parameters, Provenance};
+use crate::report::{ChartLandmark, LandmarksReport, MapLandmark, Parameters, Provenance};
 use crate::track::plan::Plan;
 use crate::vehicle::SonarKind;
 
@@ -140,6 +140,21 @@ impl<'a> Setup<'a> {
                 half_width_north_m: landmark.half_width_north_m,
             })
             .collect()
+    }
+
+    /// The landmarks as understood.
+    pub fn landmarks_report(&self) -> LandmarksReport {
+        let landmark = |landmark: &Landmark| MapLandmark {
+            id: landmark.id.clone(),
+            position: landmark.position,
+            half_width_east_m: landmark.half_width_east_m,
+            half_width_north_m: landmark.half_width_north_m,
+        };
+        LandmarksReport {
+            provenance: self.provenance("fixability.landmarks"),
+            landmark_uncertainty: self.dive.uncertainty_statement.clone(),
+            landmarks: self.dive.landmarks.iter().map(landmark).collect(),
+        }
     }
 
     /// Every parameter in force.
