@@ -60,7 +60,8 @@ impl<'a> Setup<'a> {
             vehicle: self.dive.vehicle,
             dead_reckoning: self.dive.dead_reckoning,
             sonar: self.dive.sonar,
-            scatter_m: self.dive.start.scatter_m,
+            scatter_m: self.dive.start.scatter_on_map_m(),
+            gone_chance: self.dive.gone_chance,
         }
     }
 
@@ -199,6 +200,8 @@ impl<'a> Setup<'a> {
             nothing_seen: self.silence.is_some(),
             search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
             scatter_m: dive.start.scatter_m,
+            common_shift_m: dive.start.common_shift_m,
+            gone_chance: dive.gone_chance,
             fix_size_m: scoring.fix_size_m,
             required_fix_m: scoring.required_fix_m,
             segment_m: scoring.segment_m,

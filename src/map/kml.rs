@@ -1,10 +1,12 @@
 //! Landmarks from KML points. Always WGS 84.
 //!
-//! *Values.* The `ExtendedData` of a placemark may hold the identifier and the uncertainty under the names of the columns of
+//! *Values.* The `ExtendedData` of a placemark may hold the identifier, the uncertainty and the date of survey under the names of the columns of
 //! [`super::csv`]; without an identifier there, the placemark's `name` counts, then its `id` attribute. Several points of one
 //! placemark are landmarks of their own.
 
-use super::csv::{BOTH, EAST, ID, NORTH};
+use time::Date;
+
+use super::csv::{BOTH, EAST, ID, NORTH, SURVEYED};
 use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
 use crate::frame::Crs;
@@ -53,6 +55,7 @@ pub(super) fn read(
         }
         let mut problems = Vec::new();
         let uncertainty_m = uncertainty(input, placemark, &mut problems);
+        let surveyed = surveyed(input, placemark, &mut problems);
         let id = id(input, placemark, &mut problems);
         let mut of_placemark = Vec::new();
         for (i, point) in points.iter().enumerate() {
@@ -70,6 +73,7 @@ pub(super) fn read(
                 id,
                 position,
                 uncertainty_m,
+                surveyed,
             }));
         }
         if problems.is_empty() {
@@ -157,12 +161,27 @@ fn uncertainty(input: &InputText, placemark: &Placemark, problems: &mut Vec<Prob
     }
 }
 
+fn surveyed(input: &InputText, placemark: &Placemark, problems: &mut Vec<Problem>) -> Option<Date> {
+    let datum = value(input, placemark, &SURVEYED, problems)?;
+    let date = units::parse_date(&datum.text);
+    if date.is_none() {
+        problems.push(
+            Problem::new(&input.name, format!("\"{}\" is not a date", datum.text))
+                .line(datum.line)
+                .place(format!("{}, data {}", placemark.place(), datum.name))
+                .accepted(format!("{}, or empty when it is not known", bounds::DATE_FORM)),
+        );
+    }
+    date
+}
+
 /// Names the data that mean nothing here, each once.
 fn report_unknown_data(input: &InputText, placemarks: &[Placemark], findings: &mut Findings) {
     let mut names: Vec<&str> = Vec::new();
     for datum in placemarks.iter().flat_map(|placemark| &placemark.data) {
         let name = normal(&datum.name);
-        let is_known = [ID, BOTH, EAST, NORTH].iter().any(|column| column.names.contains(&name.as_str()));
+        let is_known =
+            [ID, BOTH, EAST, NORTH, SURVEYED].iter().any(|column| column.names.contains(&name.as_str()));
         if !is_known && !names.contains(&datum.name.as_str()) {
             names.push(&datum.name);
         }

@@ -138,6 +138,10 @@ pub struct Parameters {
     pub search_area_km2: f64,
     /// Descent scatter radius, m.
     pub scatter_m: f64,
+    /// Largest common shift of the whole map, m; it adds to every absolute position.
+    pub common_shift_m: f64,
+    /// Chance that a landmark of the map is gone, in simulated dives, 0 to 1.
+    pub gone_chance: f64,
     /// Fix size, m.
     pub fix_size_m: f64,
     /// Required fix distance, m.

@@ -80,7 +80,8 @@ fn names_with_markup_and_references_stay_text() {
 #[test]
 fn extended_data_hold_identifier_and_uncertainty() {
     let data = "<ExtendedData><Data name=\"Contact ID\"><value> K1 </value></Data>\
-        <Data name=\"uncertainty_m\"><value>3.5</value></Data><Data name=\"depth\"><value>31</value></Data></ExtendedData>";
+        <Data name=\"uncertainty_m\"><value>3.5</value></Data><Data name=\"depth\"><value>31</value></Data>\
+        <Data name=\"Survey date\"><value>2026-05-31</value></Data></ExtendedData>";
     let schema = "<ExtendedData><SchemaData schemaUrl=\"#s\"><SimpleData name=\"uncertainty_east_m\">1</SimpleData>\
         <SimpleData name=\"uncertainty_north_m\">4</SimpleData></SchemaData></ExtendedData>";
     let multi = "<Placemark id=\"m7\"><MultiGeometry><Point><coordinates>3.0080,55.9461</coordinates></Point>\
@@ -115,6 +116,12 @@ fn extended_data_hold_identifier_and_uncertainty() {
         &refused("<SimpleData name=\"uncertainty_east_m\">1</SimpleData>", ""),
         &[
             "reef.kml:5: placemark 2: the uncertainties do not fit together; accepted: uncertainty_m for both axes",
+        ],
+    );
+    holds(
+        &refused("2026-05-31", "31.5.2026"),
+        &[
+            "reef.kml:4: placemark 1, data Survey date: \"31.5.2026\" is not a date; accepted: a date as year-month-day",
         ],
     );
     holds(
