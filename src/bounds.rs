@@ -196,6 +196,27 @@ pub const KEYS: &[Key] = &[
     ),
     key(
         "map",
+        "oldest_survey",
+        Kind::Date,
+        Without("landmarks of any age are used"),
+        "Landmarks with an own survey date before this one are left out, counted in a warning.",
+    ),
+    number(
+        "map",
+        "gone_chance",
+        Range { low: 0.0, above_low: false, high: 1.0, below_high: true, unit: "" },
+        Default("0"),
+        "Chance that a mapped landmark is no longer there, drawn for each landmark and simulated dive; needs budget.misses to guarantee anything.",
+    ),
+    number(
+        "map",
+        "common_shift_m",
+        Range::closed(0.0, 10_000.0, "m"),
+        Default("0"),
+        "Largest shift of the whole map against the Earth. It cannot be found from relative positions: it widens the start, and adds to every absolute position.",
+    ),
+    key(
+        "map",
         "complete_inside",
         Kind::File,
         Without("no area"),
@@ -577,7 +598,7 @@ impl Key {
             Kind::Files => "a list of file names in quotes, relative to the dive file".into(),
             Kind::Crs => "\"EPSG:4326\" (latitude and longitude), the \"EPSG:…\" code of a projected grid, or \"local\" (plain metres)".into(),
             Kind::Flag => "true or false".into(),
-            Kind::Date => "a date as year-month-day, such as 2026-05-31".into(),
+            Kind::Date => crate::units::DATE_FORM.into(),
         }
     }
 }

@@ -13,7 +13,7 @@ use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
-use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
+use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::LinesReport;
@@ -141,8 +141,12 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         refuse_huge(&setup)?;
     }
+    let mut names = vec!["lines.json", "lines.csv", "lines.png"];
+    if !dive.frame.is_local() {
+        names.extend(["lines.geojson", "recommended.gpx"]);
+    }
     if let Some(out) = asked.out {
-        export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
+        export::prepare(out, &names, common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
@@ -153,13 +157,19 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     }
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
-        let files = [
-            ("lines.json", json.clone()),
-            ("lines.csv", LinesCsv.bytes(&report)?),
-            ("lines.png", render::lines_png(&report, &ChartSize::default())?),
+        let mut files = vec![
+            (names[0], json.clone()),
+            (names[1], LinesCsv.bytes(&report)?),
+            (names[2], render::lines_png(&report, &ChartSize::default())?),
         ];
+        if dive.frame.is_local() {
+            say_local_metres(&["lines.geojson", "recommended.gpx"], common);
+        } else {
+            files.push((names[3], LinesGeoJson.bytes(&report)?));
+            files.push((names[4], RecommendedGpx.bytes(&report)?));
+        }
         export::write_all(out, &files, common.force)?;
-        say_written(out, &files.map(|(name, _)| name), common);
+        say_written(out, &names, common);
     }
     let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
@@ -241,6 +251,16 @@ pub(super) fn undecided_runs(common: &Common) -> Exit {
 
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
+}
+
+/// Says which files are not written because the map is in local metres.
+pub(super) fn say_local_metres(names: &[&str], common: &Common) {
+    let verb = if names.len() == 1 { "is" } else { "are" };
+    let text = format!(
+        "{} {verb} not written: such files hold latitude and longitude, and this map is in local metres",
+        names.join(", ")
+    );
+    print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
 }
 
 /// Names the files written.

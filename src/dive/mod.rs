@@ -18,6 +18,7 @@ use std::path::PathBuf;
 use time::Date;
 
 use crate::frame::{Frame, LocalPoint};
+use crate::interval::up;
 use crate::map::Landmark;
 use crate::problem::Notice;
 use crate::track::Line;
@@ -58,6 +59,19 @@ pub struct Start {
     pub search_area: Vec<LocalPoint>,
     /// Radius of the descent scatter about the planned start of a line, metres, at least 0.
     pub scatter_m: f64,
+    /// Largest common shift of the whole map against the Earth, metres, at least 0.
+    pub common_shift_m: f64,
+}
+
+impl Start {
+    /// How far the vehicle may lie from its planned place *on the map*: descent scatter and common shift together, metres.
+    ///
+    /// *Guarantee.* Rounded up. Seen from a map that is shifted as a whole, every place on the Earth is shifted the other
+    /// way; relative positions do not change, so a shift acts as more scatter and as nothing else. `search_area` has
+    /// grown by the shift already.
+    pub fn scatter_on_map_m(&self) -> f64 {
+        if self.common_shift_m > 0.0 { up(self.scatter_m + self.common_shift_m) } else { self.scatter_m }
+    }
 }
 
 /// What may go wrong with detections in one run and still be covered.
@@ -153,6 +167,8 @@ pub struct Dive {
     pub landmarks: Vec<Landmark>,
     /// How landmark uncertainty was declared and turned into bounds, in words with the factor used.
     pub uncertainty_statement: String,
+    /// Chance that a landmark of the map is gone, for simulated dives, from 0 to below 1.
+    pub gone_chance: f64,
     /// The candidate lines.
     pub lines: Vec<Line>,
     /// How the vehicle moves.
@@ -185,4 +201,11 @@ pub struct Dive {
     pub notices: Vec<Notice>,
     /// The bounds before they were widened for the grid.
     stated: improve::Stated,
+}
+
+impl Dive {
+    /// Whether a landmark that is certainly inside the swath is certain to be detected.
+    pub fn is_detection_certain(&self) -> bool {
+        self.sonar.detection_chance >= 1.0 && self.gone_chance <= 0.0
+    }
 }
