@@ -109,6 +109,9 @@ pub const GRID_METRES: Range = Range::closed(-1e8, 1e8, "m");
 /// Range of an uncertainty.
 pub const UNCERTAINTY: Range = Range::closed(0.0, 10_000.0, "m");
 
+/// How dates are written.
+pub const DATE_FORM: &str = "a date as year-month-day, such as 2026-05-31";
+
 const fn number(
     section: &'static str,
     name: &'static str,
@@ -598,7 +601,7 @@ impl Key {
             Kind::Files => "a list of file names in quotes, relative to the dive file".into(),
             Kind::Crs => "\"EPSG:4326\" (latitude and longitude), the \"EPSG:…\" code of a projected grid, or \"local\" (plain metres)".into(),
             Kind::Flag => "true or false".into(),
-            Kind::Date => crate::units::DATE_FORM.into(),
+            Kind::Date => DATE_FORM.into(),
         }
     }
 }

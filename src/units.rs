@@ -145,9 +145,6 @@ pub fn count_words(n: usize, one: &str) -> String {
     if n == 1 { format!("1 {one}") } else { format!("{n} {one}s") }
 }
 
-/// How dates are written.
-pub const DATE_FORM: &str = "a date as year-month-day, such as 2026-05-31";
-
 /// A date of the calendar as year-month-day (ISO 8601-1, extended format).
 pub fn parse_date(text: &str) -> Option<Date> {
     // The standard also has week and ordinal dates; the form in the message is the only one accepted.

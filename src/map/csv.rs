@@ -90,7 +90,7 @@ fn date(table: &Table, row: &Row, column: usize, problems: &mut Vec<Problem>) ->
             Problem::new(&table.file, format!("\"{text}\" is not a date"))
                 .line(row.line)
                 .place(table.place(column))
-                .accepted(format!("{}, or empty when it is not known", units::DATE_FORM)),
+                .accepted(format!("{}, or empty when it is not known", bounds::DATE_FORM)),
         );
     }
     date

@@ -96,7 +96,7 @@ fn surveyed(
     let date = value.as_str().and_then(units::parse_date);
     if date.is_none() {
         problems
-            .push(problem(format!("property surveyed: {value} is not a date")).accepted(units::DATE_FORM));
+            .push(problem(format!("property surveyed: {value} is not a date")).accepted(bounds::DATE_FORM));
     }
     date
 }
