@@ -18,7 +18,7 @@
 //! beyond it the map may end, and a line that leaves it is refused by `lines`.
 //!
 //! *Alternatives.* The list takes the best candidate, then the best of those that are an alternative to all taken: dive
-//! points far enough apart, or headings far apart.
+//! points whose discs do not overlap and that lie at least twice the sonar's reach apart, so that the sonar sees other ground.
 
 use std::collections::BTreeMap;
 use std::f64::consts::TAU;
@@ -35,18 +35,17 @@ use crate::order::{larger, smaller};
 use crate::report::{
     AreaGrid, Cause, CauseCount, RunOutcome, SUGGEST_STATEMENT, SuggestReport, SuggestedStart, Suggestion,
 };
-use crate::track::plan::{Plan, direction, wrap};
+use crate::track::plan::{Plan, direction};
 
 /// Starts on the outer ring: twice the offset tracks of `guarantee.rs`.
 const OUTER_STARTS: usize = 12;
 /// Starts on the inner ring, at half the radius, between those of the outer one.
 const INNER_STARTS: usize = 6;
-/// Headings that differ by so much are alternatives from any dive point, degrees.
-const APART_DEG: f64 = 90.0;
-/// Dive points are alternatives when they are so many cells of the area map apart, and their discs do not overlap.
-const APART_CELLS: f64 = 4.0;
 /// What is kept free between a disc and the edge of the search area, metres: more than coordinates in a file are rounded.
 const INSET_M: f64 = 1.0;
+/// What is kept free beside it for each metre of common shift: the search area has grown by a square of the shift, so an
+/// oblique edge of it by up to √2 times the shift, and `lines` checks the area before it grew.
+const SHIFT_ROOM: f64 = 0.5;
 /// Least length of an exported line after the guaranteed fix, metres, for the same reason.
 const RUN_OUT_M: f64 = 1.0;
 /// Candidates solved at once. A constant, so that the result does not depend on the number of threads.
@@ -55,7 +54,7 @@ const BATCH: usize = 64;
 /// The search: the area map's cells, finer where the scatter disc is smaller than a cell, down to half of them.
 pub fn suggest_area_options(dive: &Dive) -> AreaOptions {
     let cell_m = dive.area.cell_m;
-    let scatter_m = dive.start.scatter_m;
+    let scatter_m = dive.start.scatter_on_map_m();
     let cell_m = if scatter_m > 0.0 { scatter_m.clamp(0.5 * cell_m, cell_m) } else { cell_m };
     AreaOptions { cell_m, ..dive.area }
 }
@@ -69,7 +68,9 @@ pub fn suggest(setup: &Setup<'_>, search: &AreaOptions, tick: &(dyn Fn(usize) + 
     let outcomes = outcomes(setup, search, &grid, &places, &headings_rad, tick);
     let hull = SearchHull::new(&dive.start.search_area);
     let cells = Cells { grid, places: &places, numbers: numbers(&grid, &places), outcomes: &outcomes };
-    let discs = cells.discs(&hull, dive.start.scatter_m);
+    let scatter_m = dive.start.scatter_on_map_m();
+    let room = Room { hull: &hull, margin_m: scatter_m + SHIFT_ROOM * dive.start.common_shift_m + INSET_M };
+    let discs = cells.discs(scatter_m, &room);
     let judged: Vec<Judged> = discs
         .par_iter()
         .flat_map_iter(|(place, disc)| {
@@ -79,7 +80,6 @@ pub fn suggest(setup: &Setup<'_>, search: &AreaOptions, tick: &(dyn Fn(usize) + 
     let mut tally = Tally::default();
     let mut coarse: Vec<Candidate> = judged.into_iter().filter_map(|judged| tally.count(judged)).collect();
     let with_fix = coarse.len();
-    let room = Room { hull: &hull, margin_m: dive.start.scatter_m + INSET_M };
     coarse.retain(|candidate| {
         room.is_enough(grid_centre(&cells, candidate), headings_rad[candidate.heading], candidate.fix_m)
     });
@@ -87,7 +87,7 @@ pub fn suggest(setup: &Setup<'_>, search: &AreaOptions, tick: &(dyn Fn(usize) + 
     coarse.sort_by(|a, b| a.fix_m.total_cmp(&b.fix_m).then((a.place, a.heading).cmp(&(b.place, b.heading))));
     let mut list = List {
         taken: Vec::new(),
-        apart_m: larger(2.0 * dive.start.scatter_m, APART_CELLS * dive.area.cell_m),
+        apart_m: larger(2.0 * scatter_m, 2.0 * dive.sonar.reach_m()),
         most: dive.suggest.listed,
     };
     let refiner = Refiner { setup, search, headings_rad: &headings_rad, cells: &cells };
@@ -102,9 +102,9 @@ pub fn suggest(setup: &Setup<'_>, search: &AreaOptions, tick: &(dyn Fn(usize) + 
         options: dive.suggest,
         search: *search,
         statement: SUGGEST_STATEMENT,
-        start_pattern: pattern_in_words(dive.start.scatter_m),
+        scatter_m,
+        start_pattern: pattern_in_words(scatter_m),
         apart_m: list.apart_m,
-        apart_deg: APART_DEG,
         grid,
         cells: places.len(),
         dive_points: discs.len(),
@@ -147,7 +147,7 @@ fn grid_centre(cells: &Cells<'_>, candidate: &Candidate) -> LocalPoint {
 
 impl Cells<'_> {
     /// The dive points whose disc lies inside the search area, each with the cells in its disc.
-    fn discs(&self, hull: &SearchHull, scatter_m: f64) -> Vec<(usize, Vec<usize>)> {
+    fn discs(&self, scatter_m: f64, room: &Room<'_>) -> Vec<(usize, Vec<usize>)> {
         let reach = (scatter_m / self.grid.cell_m).floor() as isize;
         let within = |(columns, rows): &(isize, isize)| {
             libm::hypot(*columns as f64, *rows as f64) * self.grid.cell_m <= scatter_m
@@ -160,7 +160,7 @@ impl Cells<'_> {
             .into_par_iter()
             .filter_map(|place| {
                 let (column, row) = self.places[place];
-                if hull.inside_m(self.grid.centre(column, row)) < scatter_m + INSET_M {
+                if room.hull.inside_m(self.grid.centre(column, row)) < room.margin_m {
                     return None;
                 }
                 let disc: Option<Vec<usize>> = steps
@@ -282,12 +282,8 @@ struct List {
 }
 
 impl List {
-    fn is_alternative(&self, at: LocalPoint, heading_rad: f64) -> bool {
-        self.taken.iter().all(|taken| {
-            // The allowance keeps headings that are a quarter turn apart from missing it by rounding.
-            let is_turned = wrap(taken.heading_rad - heading_rad).abs().to_degrees() >= APART_DEG - 1e-9;
-            is_turned || taken.at.distance_m(at) >= self.apart_m
-        })
+    fn is_alternative(&self, at: LocalPoint) -> bool {
+        self.taken.iter().all(|taken| taken.at.distance_m(at) >= self.apart_m)
     }
 }
 
@@ -328,7 +324,7 @@ impl Refiner<'_> {
                 if best_m.is_some_and(|best_m| next.fix_m > best_m) {
                     break;
                 }
-                if list.is_alternative(grid_centre(self.cells, next), self.headings_rad[next.heading]) {
+                if list.is_alternative(grid_centre(self.cells, next)) {
                     batch.push(**next);
                 }
                 rest.next();
@@ -337,7 +333,7 @@ impl Refiner<'_> {
                 let best = open.iter().enumerate().min_by(|a, b| a.1.order(b.1)).map(|(number, _)| number);
                 let Some(best) = best else { break };
                 list.taken.push(open.swap_remove(best));
-                open.retain(|found| list.is_alternative(found.at, found.heading_rad));
+                open.retain(|found| list.is_alternative(found.at));
                 continue;
             }
             solved += batch.len();
@@ -358,7 +354,7 @@ impl Refiner<'_> {
     fn solve(&self, runs: &StraightRuns<'_>, candidate: Candidate) -> Result<Found, Cause> {
         let at = grid_centre(self.cells, &candidate);
         let heading_rad = self.headings_rad[candidate.heading];
-        let mut starts = pattern(at, self.setup.dive.start.scatter_m);
+        let mut starts = pattern(at, self.setup.dive.start.scatter_on_map_m());
         let outcomes = runs.solve(heading_rad, &starts);
         let mut fixes = Vec::with_capacity(outcomes.len());
         for found in outcomes {
@@ -369,7 +365,7 @@ impl Refiner<'_> {
         }
         let (column, row) = self.cells.places[candidate.place];
         let headings = self.headings_rad.len();
-        let scatter_m = self.setup.dive.start.scatter_m;
+        let scatter_m = self.setup.dive.start.scatter_on_map_m();
         let reach = (scatter_m / self.cells.grid.cell_m).floor() as usize;
         for near_row in row.saturating_sub(reach)..=row + reach {
             for near_column in column.saturating_sub(reach)..=column + reach {
@@ -475,7 +471,7 @@ fn verdict(report: &SuggestReport) -> String {
     if report.dive_points == 0 {
         return format!(
             "no dive point: a scatter disc of {} m radius about a cell centre fits nowhere inside the search area",
-            report.parameters.scatter_m
+            report.scatter_m
         );
     }
     if report.landmarks.is_empty() {
