@@ -14,6 +14,7 @@ mod determinism;
 mod edge_cases;
 mod export;
 mod guarantee;
+mod heavy;
 mod intervals;
 mod layers;
 mod load;
