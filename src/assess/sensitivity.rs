@@ -82,7 +82,7 @@ pub fn sensitivity(setup: &Setup<'_>, factor: f64, tick: &(dyn Fn() + Sync)) -> 
                 words: bound.words(),
                 key: bound.key(),
                 unit: bound.unit(),
-                rank: 0,
+                rank: None,
                 present: value(dive),
                 improved: value(&improved),
                 change: change(&present.lines.concat(), &after.lines.concat(), required_m),
@@ -97,7 +97,7 @@ pub fn sensitivity(setup: &Setup<'_>, factor: f64, tick: &(dyn Fn() + Sync)) -> 
         if place > 0 && by_gain(&singles[place - 1].0.change, &singles[place].0.change).is_ne() {
             rank = place + 1;
         }
-        singles[place].0.rank = rank;
+        singles[place].0.rank = helps(&singles[place].0.change).then_some(rank);
     }
     let all_bounds: Vec<ErrorBound> = singles.iter().map(|(row, _)| row.bound).collect();
     let (_, mut all) = improve(&all_bounds);
@@ -269,8 +269,7 @@ fn verdict(
     all_together: &GuaranteedChange,
 ) -> SensitivityVerdict {
     let required_m = setup.dive.scoring.required_fix_m;
-    let first: Vec<&ImprovedBound> =
-        bounds.iter().filter(|row| row.rank == 1 && helps(&row.change)).collect();
+    let first: Vec<&ImprovedBound> = bounds.iter().filter(|row| row.rank == Some(1)).collect();
     let names = first.iter().map(|row| row.words).collect::<Vec<_>>().join(", ");
     let text = match first.as_slice() {
         _ if setup.dive.sonar.detection_chance < 1.0 && setup.dive.budget.misses == 0 => {

@@ -110,7 +110,7 @@ fn row(
         line.to_owned(),
         bound.map_or(ALL, |bound| bound.words).to_owned(),
         of_bound(&|bound| bound.key.to_owned()),
-        of_bound(&|bound| bound.rank.to_string()),
+        of_bound(&|bound| rank(bound)),
         report.factor.to_string(),
         of_bound(&|bound| bound.unit.to_owned()),
         of_bound(&|bound| bound.present.stated.to_string()),
@@ -171,7 +171,7 @@ pub fn sensitivity_table(report: &SensitivityReport) -> String {
     for bound in &report.bounds {
         let value = |value: f64| format!("{} {}", rounded(value), bound.unit);
         row(
-            bound.rank.to_string(),
+            rank(bound),
             bound.words,
             value(bound.present.stated),
             value(bound.improved.stated),
@@ -202,6 +202,11 @@ pub fn sensitivity_table(report: &SensitivityReport) -> String {
         "Guaranteed figures only. Budgets of strays and misses, descent scatter and detection chance stay as they are.\n",
     );
     text
+}
+
+/// Its place; nothing for a bound that changes nothing.
+fn rank(bound: &ImprovedBound) -> String {
+    bound.rank.map(|rank| rank.to_string()).unwrap_or_default()
 }
 
 /// A stated value for reading: at most four decimals.

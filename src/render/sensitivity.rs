@@ -156,7 +156,7 @@ fn draw_rows(sheet: &mut Sheet, area: Rect, report: &SensitivityReport) {
         .bounds
         .iter()
         .map(|bound| Row {
-            rank: bound.rank.to_string(),
+            rank: bound.rank.map_or_else(|| "–".to_owned(), |rank| rank.to_string()),
             words: bound.words,
             values: format!(
                 "± {} to ± {} {}",

@@ -412,7 +412,7 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "area", "trace", "lookalikes", "remap", "completions"] {
+    for command in ["", "check", "lines", "area", "trace", "lookalikes", "remap", "suggest", "sensitivity", "completions"] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()
