@@ -272,7 +272,9 @@ fn the_bound_that_matters_comes_first() {
             .set("bearing_error_deg", "0.02")
             .set("altitude_error_m", "0.01")
     };
-    let cases: [(ErrorBound, f64, Vec<(&'static str, &'static str)>); 4] = [
+    /// Keys and values that replace tiny ones.
+    type Keys = Vec<(&'static str, &'static str)>;
+    let cases: [(ErrorBound, f64, Keys); 4] = [
         (ErrorBound::LandmarkBoxes, 2.2, vec![]),
         (ErrorBound::RangeConstant, 0.01, vec![("range_error_m", "4")]),
         (ErrorBound::HeadingNoise, 0.01, vec![("heading_noise_deg", "4")]),
