@@ -14,6 +14,8 @@ mod json;
 mod landmarks;
 mod lookalikes;
 mod remap;
+mod sensitivity;
+mod suggest;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
@@ -25,6 +27,8 @@ pub use json::{LinesJson, TraceJson, check_json};
 pub use landmarks::LandmarksGeoJson;
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
+pub use sensitivity::{SensitivityCsv, SensitivityJson, sensitivity_table};
+pub use suggest::{SuggestCsv, SuggestGeoJson, SuggestGpx, SuggestJson, SuggestLinesCsv, suggest_table};
 pub use table::{check_text, lines_table, trace_table};
 
 use std::path::PathBuf;
