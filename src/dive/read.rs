@@ -219,12 +219,13 @@ fn read_files(path: &Path, source: Source<'_>, findings: &mut Findings) -> Optio
         }
     }
     refuse_without_effect(&document, landmark_input.as_ref(), &line_inputs, findings);
-    let sources = Sources {
+    let mut sources = Sources {
         dive_file: path.to_path_buf(),
         landmark_file: settings.landmarks.clone()?,
         landmarks: landmarks?,
         lines,
     };
+    checks::plain_names(&mut sources, findings);
     checks::identifiers(&sources, findings);
     if let Some(rows) = checks::missing_uncertainty(&sources, &settings) {
         for problem in rows {

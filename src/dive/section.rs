@@ -224,6 +224,10 @@ impl<'a> Document<'a> {
             self.wrong(key, value, "is empty", findings);
             return None;
         }
+        if text.trim().contains(char::is_control) {
+            self.wrong(key, value, "holds a line end or another control character", findings);
+            return None;
+        }
         if let Kind::Choice(words) = key.kind
             && !words.contains(&text.as_ref())
         {

@@ -16,6 +16,7 @@ mod export;
 mod gis;
 mod guarantee;
 mod heavy;
+mod hostile;
 mod intervals;
 mod layers;
 mod load;
