@@ -31,7 +31,8 @@ const TEXT_MAX: usize = 2000;
 /// so that nothing in a file can steer a terminal or split a message, and what is longer than [`TEXT_MAX`] is cut visibly.
 pub fn printable(text: &str) -> String {
     let is_plain = |c: char| {
-        !c.is_control() && !matches!(c, '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}')
+        !c.is_control()
+            && !matches!(c, '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}')
     };
     let mut out = String::new();
     for (i, c) in text.chars().enumerate() {

@@ -5,7 +5,7 @@
 //! Names of elements count without their prefix. Styles, views and times are passed over; other geometry is counted.
 //!
 //! *What is refused.* A document type declaration (so there are no entities to expand), any other root than `kml`, another
-//! encoding than UTF-8, and elements nested deeper than [`DEPTH_MAX`] or with more attributes than [`ATTRIBUTES_MAX`].
+//! encoding than UTF-8, and elements nested deeper than [`DEPTH_MAX`] or with more attributes than [`super::xml::ATTRIBUTES_MAX`].
 //!
 //! [`OGC_KML`]: crate::bibliography::OGC_KML
 
@@ -15,7 +15,7 @@ use quick_xml::reader::Reader;
 
 use super::InputText;
 use super::kml_text::{Located, tuples};
-use super::xml::{ATTRIBUTES_MAX, DEPTH_MAX, Lines, has_too_many_attributes};
+use super::xml::{DEPTH_MAX, Lines, check_attributes};
 use crate::problem::{Findings, Problem, ProblemList};
 
 pub use super::kml_text::Tuple;
@@ -229,8 +229,8 @@ impl<'a> Parser<'a> {
             }
             self.has_root = true;
         }
-        if has_too_many_attributes(start) {
-            return Err(self.refuse(line, format!("an element has more than {ATTRIBUTES_MAX} attributes")));
+        if let Err(what) = check_attributes(start) {
+            return Err(self.refuse(line, what));
         }
         if self.open.len() >= DEPTH_MAX {
             return Err(self.refuse(line, format!("elements are nested deeper than {DEPTH_MAX}")));

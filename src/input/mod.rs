@@ -206,6 +206,12 @@ impl BadRows {
         }
     }
 
+    /// Adds a row of `file` with one problem, which is only made when it is kept.
+    pub fn add_with(&mut self, file: &Path, make: impl FnOnce() -> Problem) {
+        self.problems.push_with(file, make);
+        self.rows += 1;
+    }
+
     /// The first problem, if there is one.
     pub fn first(&self) -> Option<&Problem> {
         self.problems.first()

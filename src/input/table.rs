@@ -96,21 +96,20 @@ impl Table {
                 blank += 1;
             } else if record.iter().any(|f| f.contains('\n')) {
                 // An unclosed quotation mark would swallow every row up to the next one without a trace.
-                misfits.add([
-                    Problem::new(file, "a field runs over more than one line")
-                        .line(line)
-                        .accepted("fields that end on their line")
-                        .advice("close the quotation mark, or double it inside a field"),
-                ]);
+                misfits.add([Problem::new(file, "a field runs over more than one line")
+                    .line(line)
+                    .accepted("fields that end on their line")
+                    .advice("close the quotation mark, or double it inside a field")]);
             } else if record.len() != width {
-                misfits.add([
-                    Problem::new(file, format!("the row has {} fields, the header {width}", record.len()))
-                        .line(line)
-                        .accepted(format!("{width} fields"))
-                        .advice(
-                            "quote fields that contain the separator; with decimal commas, separate by semicolons",
-                        ),
-                ]);
+                misfits.add([Problem::new(
+                    file,
+                    format!("the row has {} fields, the header {width}", record.len()),
+                )
+                .line(line)
+                .accepted(format!("{width} fields"))
+                .advice(
+                    "quote fields that contain the separator; with decimal commas, separate by semicolons",
+                )]);
             } else {
                 lines.push(line);
                 for field in &record {
@@ -259,7 +258,12 @@ fn find_columns(
         }
         if hits.len() > 1 {
             hits.sort_unstable();
-            let twice = hits.iter().take(NAMES_SHOWN).map(|i| shortened(&header[*i])).collect::<Vec<_>>().join("\" and \"");
+            let twice = hits
+                .iter()
+                .take(NAMES_SHOWN)
+                .map(|i| shortened(&header[*i]))
+                .collect::<Vec<_>>()
+                .join("\" and \"");
             findings.problem(
                 Problem::new(file, format!("the columns \"{twice}\" mean the same"))
                     .line(1)

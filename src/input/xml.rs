@@ -21,9 +21,19 @@ pub const ATTRIBUTES_MAX: usize = 64;
 /// (common practice).
 pub const NAMESPACES_MAX: usize = 64;
 
-/// Whether an element has more attributes than are read. Counted without comparing them to each other.
-pub fn has_too_many_attributes(start: &BytesStart<'_>) -> bool {
-    start.attributes().with_checks(false).take(ATTRIBUTES_MAX + 1).count() > ATTRIBUTES_MAX
+/// Refuses an element with more attributes than are read, or with one that is ill-formed or stands twice.
+///
+/// # Errors
+/// What is wrong, to follow the name of the file.
+pub fn check_attributes(start: &BytesStart<'_>) -> Result<(), String> {
+    // Counted first and without the search for repeated ones, which compares each with all others.
+    if start.attributes().with_checks(false).take(ATTRIBUTES_MAX + 1).count() > ATTRIBUTES_MAX {
+        return Err(format!("an element has more than {ATTRIBUTES_MAX} attributes"));
+    }
+    match start.attributes().find_map(Result::err) {
+        Some(error) => Err(format!("is not well-formed XML: {error}")),
+        None => Ok(()),
+    }
 }
 
 /// Line numbers of byte offsets that come in growing order.
@@ -77,8 +87,8 @@ pub fn guard(input: &InputText) -> Result<(), Box<Problem>> {
                 if depth >= DEPTH_MAX {
                     return refuse(format!("elements are nested deeper than {DEPTH_MAX}"), "");
                 }
-                if has_too_many_attributes(start) {
-                    return refuse(format!("an element has more than {ATTRIBUTES_MAX} attributes"), "");
+                if let Err(what) = check_attributes(start) {
+                    return refuse(what, "");
                 }
                 let mut attributes = start.attributes();
                 let declared = attributes.with_checks(false).flatten();

@@ -9,9 +9,9 @@ use time::Date;
 use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
 use crate::frame::Crs;
+use crate::input::InputText;
 use crate::input::position::{COORDINATE_COLUMNS, PositionCheck, PositionColumns};
 use crate::input::table::{Column, Row, Table};
-use crate::input::InputText;
 use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 

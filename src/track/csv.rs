@@ -5,9 +5,9 @@
 
 use super::read::{LineFile, LineRows, ReadOptions, WaypointRow};
 use crate::frame::Crs;
+use crate::input::InputText;
 use crate::input::position::{COORDINATE_COLUMNS, PositionCheck, PositionColumns};
 use crate::input::table::{Column, Table};
-use crate::input::InputText;
 use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 

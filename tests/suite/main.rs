@@ -43,3 +43,4 @@ mod support;
 #[path = "support/template.rs"]
 mod template;
 mod tightness;
+mod trees;

@@ -8,12 +8,12 @@ use serde_json::Value;
 /// Crates that build or look for code in other languages.
 const BUILDERS: [&str; 7] = ["bindgen", "cc", "cmake", "nasm-rs", "pkg-config", "system-deps", "vcpkg"];
 
-/// Names in the first column of the tables under a heading of DEVELOPERS.md.
+/// Names in the first column of the table under a heading of DEVELOPERS.md.
 fn listed(heading: &str) -> BTreeSet<String> {
     let text = include_str!("../../../DEVELOPERS.md");
     let start = text.find(heading).unwrap_or_else(|| panic!("no {heading:?} in DEVELOPERS.md"));
     let section = &text[start + heading.len()..];
-    let section = &section[..section.find("\n## ").unwrap_or(section.len())];
+    let section = &section[..section.find("\n##").unwrap_or(section.len())];
     section
         .lines()
         .filter_map(|line| line.strip_prefix("| `"))
@@ -36,37 +36,42 @@ fn every_direct_dependency_has_its_reason() {
     assert_eq!(listed("\n### Of tests and benchmarks\n"), names("dev-dependencies"));
 }
 
-/// The packages that the program is made of on this platform: those of tests and benchmarks are left out.
-fn tree() -> Vec<Value> {
-    let rustc = Command::new("rustc").arg("-vV").output().unwrap();
-    let about = String::from_utf8(rustc.stdout).unwrap();
-    let host = about.lines().find_map(|line| line.strip_prefix("host: ")).unwrap();
+fn cargo(arguments: &[&str]) -> String {
     let output = Command::new(env!("CARGO"))
-        .args(["metadata", "--offline", "--locked", "--format-version", "1", "--filter-platform", host])
+        .args(arguments)
+        .args(["--offline", "--locked"])
         .current_dir(env!("CARGO_MANIFEST_DIR"))
         .output()
         .unwrap();
     assert!(output.status.success(), "{}", String::from_utf8_lossy(&output.stderr));
-    let all: Value = serde_json::from_slice(&output.stdout).unwrap();
-    let by_id = |list: &Value| -> BTreeMap<String, Value> {
-        let list = list.as_array().unwrap().iter();
-        list.map(|entry| (entry["id"].as_str().unwrap().to_owned(), entry.clone())).collect()
-    };
-    let (packages, nodes) = (by_id(&all["packages"]), by_id(&all["resolve"]["nodes"]));
-    let mut open = vec![all["resolve"]["root"].as_str().unwrap().to_owned()];
-    let mut seen = BTreeSet::new();
-    while let Some(id) = open.pop() {
-        if !seen.insert(id.clone()) {
-            continue;
-        }
-        for dependency in nodes[&id]["deps"].as_array().unwrap() {
-            let kinds = dependency["dep_kinds"].as_array().unwrap();
-            if kinds.iter().any(|kind| kind["kind"] != "dev") {
-                open.push(dependency["pkg"].as_str().unwrap().to_owned());
-            }
-        }
-    }
-    seen.iter().map(|id| packages[id].clone()).collect()
+    String::from_utf8(output.stdout).unwrap()
+}
+
+/// The packages that the program is made of on this platform: those of tests and benchmarks are left out.
+fn tree() -> Vec<Value> {
+    let text = cargo(&["tree", "--edges", "normal,build", "--prefix", "none", "--format", "{p}"]);
+    let held: BTreeSet<(&str, &str)> = text
+        .lines()
+        .filter_map(|line| {
+            let (name, rest) = line.split_once(" v")?;
+            Some((name, rest.split(' ').next()?))
+        })
+        .collect();
+    let rustc = Command::new("rustc").arg("-vV").output().unwrap();
+    let about = String::from_utf8(rustc.stdout).unwrap();
+    let host = about.lines().find_map(|line| line.strip_prefix("host: ")).unwrap();
+    let all = cargo(&["metadata", "--format-version", "1", "--filter-platform", host]);
+    let all: Value = serde_json::from_str(&all).unwrap();
+    let text = |package: &Value, key: &str| package[key].as_str().unwrap().to_owned();
+    let packages: Vec<Value> = all["packages"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .filter(|p| held.contains(&(text(p, "name").as_str(), text(p, "version").as_str())))
+        .cloned()
+        .collect();
+    assert_eq!(packages.len(), held.len());
+    packages
 }
 
 #[test]

@@ -83,7 +83,10 @@ fn control_characters_and_other_encodings_are_refused_with_their_line() {
 #[test]
 fn the_byte_of_an_encoding_error_is_counted_with_the_byte_order_mark() {
     let text = refused(Format::Csv, b"\xEF\xBB\xBFid,lat\n\xFF", PLAIN);
-    holds(&text, &["case.csv:2: byte 11 (0xFF) is not UTF-8 text; accepted: UTF-8 text; save the file as UTF-8"]);
+    holds(
+        &text,
+        &["case.csv:2: byte 11 (0xFF) is not UTF-8 text; accepted: UTF-8 text; save the file as UTF-8"],
+    );
 }
 
 #[test]
@@ -91,53 +94,50 @@ fn control_characters_spelled_as_escapes_do_not_reach_names_or_messages() {
     let json = r#"{"type":"Feature","id":"\u001b[2J\u0000","properties":{"uncertainty_m":1},"geometry":{"type":"Point","coordinates":[3.0016,55.9459]}}"#;
     let text = refused(Format::GeoJson, json, Way { in_dive: Some("landmarks"), ..PLAIN });
     holds(&text, &[r#"feature 1: the name "\u{1b}[2J\u{0}" holds a control character; accepted: printable"#]);
-    let toml = include_str!("corpus/dive.toml").replace("\"Trial\"", "\"a\\u001b[2J\"");
-    holds(&refused(Format::Toml, &toml, PLAIN), &["dive.toml:1: key name: ", "holds a line end or another control"]);
-    let toml = toml.replace("\"reef.csv\"", "\"\\u001b[2Jreef\\n.csv\"");
-    holds(&refused(Format::Toml, toml, PLAIN), &[r"\u{1b}[2Jreef\n.csv: no such file"]);
+    let toml = include_str!("corpus/dive.toml");
+    for (text, key) in
+        [("\"Trial\"", "name"), ("\"reef.csv\"", "map.landmarks"), ("\"EPSG:32631\"", "map.crs")]
+    {
+        let toml = toml.replace(text, "\"a\\u001b[2J\"");
+        let words = format!("key {key}: \"a\\u001b[2J\" holds a line end or another control character");
+        holds(&refused(Format::Toml, toml, PLAIN), &[&words]);
+    }
 }
 
 #[test]
 fn numbers_of_a_million_digits() {
     let digits = "9".repeat(1_000_000);
-    let short = |text: &str| {
-        for line in text.lines() {
-            assert!(line.len() < 5000, "a message of {} bytes", line.len());
-        }
+    let kml = |x: &str| {
+        format!("<kml><Placemark><Point><coordinates>{x},2.0</coordinates></Point></Placemark></kml>")
     };
     for (format, text, words) in [
-        (Format::Csv, format!("lat,lon\n{digits},2\n"), "\" is not a finite number"),
+        (Format::Csv, format!("lat,lon\n{digits},2\n"), "case.csv:2: column lat: \"99999"),
         (Format::Csv, format!("lat,lon\n1.{digits},x\n"), "\"x\" is not a number"),
         (
             Format::GeoJson,
             format!("{{\"type\":\"Point\",\"coordinates\":[{digits},2]}}"),
-            "is not valid JSON: number out of range",
+            "case.geojson:1: character 1000031: is not valid JSON: number out of range",
         ),
         (
             Format::Gpx,
             format!("<gpx version=\"1.1\"><rte><rtept lat=\"{digits}\" lon=\"2\"/></rte></gpx>"),
-            "is not a finite number",
+            "case.gpx:1: rtept 1, attribute lat: \"99999",
         ),
-        (
-            Format::Kml,
-            format!("<kml><Placemark><Point><coordinates>{digits}.0,2.0</coordinates></Point></Placemark></kml>"),
-            "is not a finite number",
-        ),
+        (Format::Kml, kml(&format!("{digits}.0")), "is not a finite number"),
     ] {
-        let text = refused(format, text, PLAIN);
-        holds(&text, &[if words.starts_with('"') { &words[1..] } else { words }]);
-        short(&text);
+        holds(&refused(format, text, PLAIN), &[words]);
     }
+    sound(Format::Csv, format!("lat,lon\n1.{digits},2\n").as_bytes(), "a million decimals");
+    sound(Format::Kml, kml(&format!("1.{digits}")).as_bytes(), "a million decimals");
     // A dive file may not be that long, so a number of 200 000 digits has to do.
-    for number in [&digits[..200_000], &format!("0.{}", &digits[..200_000])] {
-        let toml = include_str!("corpus/dive.toml").replace("= 1.5", &format!("= 1.5\nturn = {number}"));
-        short(&refused(Format::Toml, toml, PLAIN));
+    for (number, words) in [
+        (digits[..200_000].to_owned(), "dive.toml:10: key vehicle.speed_mps: 99999"),
+        (format!("{}.5", &digits[..200_000]), "dive.toml:10: key vehicle.speed_mps: 99999"),
+        (format!("1.{}e9", &digits[..200_000]), "dive.toml:10: key vehicle.speed_mps: 1.9999"),
+    ] {
         let toml = include_str!("corpus/dive.toml").replace("= 1.5", &format!("= {number}"));
-        sound(Format::Toml, toml.as_bytes(), "a long number");
+        holds(&refused(Format::Toml, toml, PLAIN), &[words]);
     }
-    let toml = include_str!("corpus/dive.toml").replace("= 1.5", &format!("= {}", &digits[..200_000]));
-    holds(&refused(Format::Toml, toml, PLAIN), &["key vehicle.speed_mps: ", "… is not a finite number in range"]
-        .map(|words| if words.starts_with('…') { "99…" } else { words }));
 }
 
 #[test]
@@ -173,10 +173,13 @@ fn what_stands_twice_is_refused() {
         &["case.geojson:1: character ", "the name \"uncertainty_m\" stands twice in one object"],
     );
     let toml = include_str!("corpus/dive.toml").replace("= 1.5", "= 1.5\nspeed_mps = 2");
-    holds(&refused(Format::Toml, toml, PLAIN), &["dive.toml:12: \"speed_mps = 2\": duplicate key"]);
-    holds(&refused(Format::Csv, "lat,lon,Latitude\n1,2,3\n", PLAIN), &["\"lat\" and \"Latitude\" mean the same"]);
+    holds(&refused(Format::Toml, toml, PLAIN), &["dive.toml:11: \"speed_mps = 2\": duplicate key"]);
+    holds(
+        &refused(Format::Csv, "lat,lon,Latitude\n1,2,3\n", PLAIN),
+        &["\"lat\" and \"Latitude\" mean the same"],
+    );
     let gpx = "<gpx version=\"1.1\"><rte><rtept lat=\"1\" lat=\"2\" lon=\"2\"/></rte></gpx>";
-    holds(&refused(Format::Gpx, gpx, PLAIN), &["case.gpx: is not valid GPX"]);
+    holds(&refused(Format::Gpx, gpx, PLAIN), &["case.gpx:1: is not well-formed XML: "]);
     let kml = "<kml><Placemark id=\"a\" id=\"b\"><Point><coordinates>1.5,2.5</coordinates></Point></Placemark></kml>";
     holds(&refused(Format::Kml, kml, PLAIN), &["case.kml:1: is not well-formed XML"]);
 }
@@ -244,11 +247,18 @@ fn gpx_and_kml_limit_levels_attributes_and_namespaces() {
             &["an element has more than 64 attributes"],
         );
         let levels = "<a>".repeat(65);
-        holds(&refused(format, format!("{root}>{levels}{end}"), PLAIN), &["elements are nested deeper than 64"]);
+        holds(
+            &refused(format, format!("{root}>{levels}{end}"), PLAIN),
+            &["elements are nested deeper than 64"],
+        );
     }
     let namespaces = many(&|i| format!("<a xmlns:b{i}=\"c\"/>"));
     holds(
-        &refused(Format::Gpx, format!("<gpx version=\"1.1\"><extensions>{namespaces}</extensions></gpx>"), PLAIN),
+        &refused(
+            Format::Gpx,
+            format!("<gpx version=\"1.1\"><extensions>{namespaces}</extensions></gpx>"),
+            PLAIN,
+        ),
         &["more than 64 namespaces are declared"],
     );
 }
@@ -258,7 +268,7 @@ fn gpx_and_kml_limit_levels_attributes_and_namespaces() {
 fn gpx_with_a_hundred_thousand_bad_points() {
     let points = "\n<wpt lat=\"x\" lon=\"2\"/>".repeat(100_000);
     let text = refused(Format::Gpx, format!("<gpx version=\"1.1\">{points}</gpx>"), PLAIN);
-    holds(&text, &["case.gpx:51: wpt 50, attribute lat: \"x\" is not a number", "and 99951 more problems"]);
+    holds(&text, &["case.gpx:50: wpt 49, attribute lat: \"x\" is not a number", "and 99951 more problems"]);
 }
 
 /// A tag without an end was searched for its end from every other one.
@@ -271,9 +281,11 @@ fn gpx_tags_without_an_end() {
 /// Lines were counted, and words compared, for every fault.
 #[test]
 fn toml_with_sixty_thousand_faults() {
-    holds(&refused(Format::Toml, "=\n".repeat(60_000), PLAIN), &["dive.toml:50: \"=\": ", "and 59950 more problems"]);
-    let keys: String = (0..20_000).map(|i| format!("speeed{i}=1\n")).collect();
-    holds(&refused(Format::Toml, keys, PLAIN), &["dive.toml:1: key speeed0: ", "and 19950 more problems"]);
+    // Three faults of each line but the first: no key, no value, and the same key again.
+    let text = refused(Format::Toml, "=\n".repeat(60_000), PLAIN);
+    holds(&text, &["dive.toml:17: \"=\": ", "and 179949 more problems"]);
+    let keys: String = (0..15_000).map(|i| format!("speeed{i}=1\n")).collect();
+    holds(&refused(Format::Toml, keys, PLAIN), &["dive.toml:1: key speeed0: ", "and 14950 more problems"]);
     holds(&refused(Format::Toml, format!("{}=1", "n".repeat(200_000)), PLAIN), &["key nnnnn"]);
 }
 
@@ -301,7 +313,10 @@ fn csv_with_a_million_bad_rows_counts_them_all() {
 fn csv_with_a_million_columns() {
     let columns: String = (0..1_000_000).map(|i| format!(",c{i}")).collect();
     let text = refused(Format::Csv, format!("lat,lon{columns}\n1,2\n"), PLAIN);
-    holds(&text, &["columns not used: c0, c1, ", " and 999960 more", "the row has 2 fields, the header 1000002"]);
+    holds(
+        &text,
+        &["columns not used: c0, c1, ", " and 999960 more", "the row has 2 fields, the header 1000002"],
+    );
 }
 
 #[test]
@@ -316,7 +331,7 @@ fn csv_of_one_line_of_200_megabytes() {
 }
 
 fn one_endless_line(size: usize) {
-    for piece in ["x", "x,", "\"", "9,9;"] {
+    for piece in ["a", "a,", "\"", "9,9;"] {
         let text = piece.repeat(size / piece.len());
         let start = std::time::Instant::now();
         let cost = super::measured(Format::Csv, text.as_bytes(), PLAIN).unwrap();

@@ -104,7 +104,11 @@ fn the_files_to_start_from_are_sound() {
                 .map(|way| fault(format, bytes, way).expect("no fault").reading)
                 .collect();
             let is_sound = readings.iter().any(|reading| reading.accepted);
-            assert!(is_sound, "{format:?} {i}: {:#?}", readings.iter().map(|r| &r.messages).collect::<Vec<_>>());
+            assert!(
+                is_sound,
+                "{format:?} {i}: {:#?}",
+                readings.iter().map(|r| &r.messages).collect::<Vec<_>>()
+            );
         }
     }
 }

@@ -144,8 +144,21 @@ fn change(bytes: &mut Vec<u8>, format: Format, sources: &[&[u8]], rng: &mut ChaC
         13 => {
             let at = rng.random_range(0..=bytes.len());
             let broken: &[&[u8]] = &[
-                b"\xFF", b"\xC0\x80", b"\xED\xA0\x80", b"\xF4\x90\x80\x80", b"\xC3", b"\0", b"\x1B[2J", b"\x7F",
-                b"\xEF\xBB\xBF", b"\xFF\xFE", b"\xE2\x80\xAE", b"\xC2\xA0", b"\xE2\x80\xA8", b"\x1A", b"PK\x03\x04",
+                b"\xFF",
+                b"\xC0\x80",
+                b"\xED\xA0\x80",
+                b"\xF4\x90\x80\x80",
+                b"\xC3",
+                b"\0",
+                b"\x1B[2J",
+                b"\x7F",
+                b"\xEF\xBB\xBF",
+                b"\xFF\xFE",
+                b"\xE2\x80\xAE",
+                b"\xC2\xA0",
+                b"\xE2\x80\xA8",
+                b"\x1A",
+                b"PK\x03\x04",
             ];
             bytes.splice(at..at, pick(rng, broken).iter().copied());
         }
@@ -197,7 +210,9 @@ fn brackets(format: Format, rng: &mut ChaCha8Rng) -> (&'static str, &'static str
             rng,
             &[("[", "]"), ("{\"a\":", "}"), ("{\"type\":\"GeometryCollection\",\"geometries\":[", "]}")],
         ),
-        Format::Gpx => *pick(rng, &[("<extensions>", "</extensions>"), ("<a>", "</a>"), ("<b c=\"d\">", "</b>")]),
+        Format::Gpx => {
+            *pick(rng, &[("<extensions>", "</extensions>"), ("<a>", "</a>"), ("<b c=\"d\">", "</b>")])
+        }
         Format::Kml => {
             *pick(rng, &[("<Folder>", "</Folder>"), ("<MultiGeometry>", "</MultiGeometry>"), ("<a>", "</a>")])
         }
