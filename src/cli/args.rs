@@ -8,6 +8,7 @@ use clap_complete::Shell;
 use crate::alias::LISTED_DEFAULT;
 use crate::bounds;
 use crate::dive::RankBy;
+use crate::render::{ChartSize, Paper};
 
 /// What `--help` teaches after the options.
 const EXIT_CODES: &str = "\
@@ -54,6 +55,19 @@ pub struct Common {
     /// Threads to use; results do not depend on it [default: all cores]
     #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..))]
     pub threads: Option<u16>,
+    /// Paper of the charts, landscape
+    #[arg(long, global = true, value_enum, value_name = "PAPER", default_value = "a4")]
+    pub paper: Paper,
+    /// Resolution of the charts, dots per inch
+    #[arg(long, global = true, value_name = "NUMBER", default_value_t = 150, value_parser = clap::value_parser!(u32).range(150..=300))]
+    pub dpi: u32,
+}
+
+impl Common {
+    /// The size of every chart.
+    pub(super) fn chart_size(&self) -> ChartSize {
+        ChartSize::paper(self.paper, self.dpi)
+    }
 }
 
 /// The commands.

@@ -9,7 +9,7 @@ use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
-use crate::render::{self, ChartSize};
+use crate::render;
 use crate::report::{LinesReport, RemapReport};
 
 /// Files that `remap` writes.
@@ -30,7 +30,7 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
             (FILES[0], json.clone()),
             (FILES[1], RemapCsv.bytes(&report)?),
             (FILES[2], RemapGeoJson.bytes(&report)?),
-            (FILES[3], render::remap_png(&report, &ChartSize::default())?),
+            (FILES[3], render::remap_png(&report, &common.chart_size())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &FILES, common);

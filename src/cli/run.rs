@@ -15,7 +15,7 @@ use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
 use crate::problem::Notice;
-use crate::render::{self, ChartSize};
+use crate::render;
 use crate::report::LinesReport;
 
 /// How the program ends.
@@ -156,7 +156,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         let files = [
             ("lines.json", json.clone()),
             ("lines.csv", LinesCsv.bytes(&report)?),
-            ("lines.png", render::lines_png(&report, &ChartSize::default())?),
+            ("lines.png", render::lines_png(&report, &common.chart_size())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
@@ -214,7 +214,7 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
         let files =
-            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &ChartSize::default())?)];
+            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &common.chart_size())?)];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
     }

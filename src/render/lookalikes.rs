@@ -34,11 +34,12 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
     let bottom = sheet.foot(&report.provenance, &report.parameters, &extra);
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
 
     frame.draw_ground(&mut sheet);
     draw_landmarks(&mut sheet.scene, &frame, &report.landmarks, LANDMARK_PX * larger(1.0, k));
     let mut taken = Taken::new(frame.rect.grown(-4.0 * k), 4.0 * k);
+    taken.dots = report.landmarks.iter().map(|mark| frame.px(mark.position)).collect();
     for line in &report.lines {
         let path = frame.path(&line.path);
         clipped_stroke(&mut sheet.scene, &frame, &path, larger(1.0, 2.0 * k), SOFT_INK);
@@ -58,7 +59,7 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
             draw_number(&mut sheet, &frame, &mut taken, outline, entry.number);
         }
     }
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     let rest = draw_legend(&mut sheet, column);
     draw_list(&mut sheet, Rect { top: rest + 14.0 * k, ..column }, report, drawn);
     Ok(sheet.scene)

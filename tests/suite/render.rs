@@ -88,7 +88,7 @@ fn all_text(texts: &[PlacedText]) -> String {
 #[test]
 fn canvas_has_the_size_asked_for() {
     for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754), (2400, 900)] {
-        let size = ChartSize { width_px, height_px };
+        let size = ChartSize::pixels(width_px, height_px);
         let picture = Picture::decode(&render::lines_png(&reports::four_lines(), &size).unwrap());
         assert_eq!((picture.width, picture.height), (width_px as usize, height_px as usize));
         let picture = Picture::decode(&render::trace_png(&reports::trace(5), &size).unwrap());
@@ -99,10 +99,10 @@ fn canvas_has_the_size_asked_for() {
 #[test]
 fn sizes_that_cannot_be_drawn_are_refused_with_the_reason() {
     let refusal = |width_px, height_px| {
-        let size = ChartSize { width_px, height_px };
+        let size = ChartSize::pixels(width_px, height_px);
         render::lines_png(&reports::four_lines(), &size).unwrap_err().to_string()
     };
-    assert!(refusal(100_000, 100_000).contains("10000000000 pixels, and at most 16000000"));
+    assert!(refusal(100_000, 100_000).contains("10000000000 pixels, and at most 18000000"));
     assert!(refusal(799, 560).contains("at least 800 × 560"));
     assert!(refusal(6000, 1000).contains("3 times its short side"));
     assert!(refusal(0, 0).contains("0 × 0"));
@@ -177,7 +177,7 @@ fn ramp_keeps_its_order_in_grey_and_shows_on_white() {
 #[test]
 fn texts_never_overlap_nor_leave_the_canvas() {
     let sizes = [(1754, 1240), (900, 640), (1240, 1754)]
-        .map(|(width_px, height_px)| ChartSize { width_px, height_px });
+        .map(|(width_px, height_px)| ChartSize::pixels(width_px, height_px));
     for seed in 0..10 {
         let report = reports::random_scene(seed);
         for size in &sizes {
@@ -307,9 +307,9 @@ fn write_pictures() {
     let four = reports::four_lines();
     write("lines.png", render::lines_png(&four, &size).unwrap());
     write("lines-guaranteed.png", render::lines_png(&reports::guaranteed(four.clone()), &size).unwrap());
-    let small = ChartSize { width_px: 900, height_px: 640 };
+    let small = ChartSize::pixels(900, 640);
     write("lines-small.png", render::lines_png(&four, &small).unwrap());
-    let tall = ChartSize { width_px: 1240, height_px: 1754 };
+    let tall = ChartSize::pixels(1240, 1754);
     write("lines-tall.png", render::lines_png(&four, &tall).unwrap());
     for count in [0, 1, 3, 9, 14] {
         let bytes = render::trace_png(&reports::trace(count), &size).unwrap();
