@@ -85,11 +85,11 @@ pub enum Command {
     ///
     /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors
     /// are solved from an unknown start, and the distance until the position is unambiguous is counted. With --out,
-    /// writes lines.json, lines.csv and lines.png.
+    /// writes lines.json, lines.csv, lines.png and profiles.png.
     Lines {
         /// The dive file (TOML)
         dive: PathBuf,
-        /// Folder for lines.json, lines.csv and lines.png (made if missing); without it nothing is written
+        /// Folder for the four files (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
         /// Also mark the segments that run over remap regions (runs the analysis of `remap`, which takes longer)

@@ -18,6 +18,9 @@ use crate::problem::Notice;
 use crate::render;
 use crate::report::LinesReport;
 
+/// Files that `lines` writes.
+const LINES_FILES: [&str; 4] = ["lines.json", "lines.csv", "lines.png", "profiles.png"];
+
 /// How the program ends.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub enum Exit {
@@ -142,7 +145,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         refuse_huge(&setup)?;
     }
     if let Some(out) = asked.out {
-        export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
+        export::prepare(out, &LINES_FILES, common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
@@ -153,13 +156,16 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     }
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
-        let files = [
-            ("lines.json", json.clone()),
-            ("lines.csv", LinesCsv.bytes(&report)?),
-            ("lines.png", render::lines_png(&report, &common.chart_size())?),
+        let size = common.chart_size();
+        let bytes = [
+            json.clone(),
+            LinesCsv.bytes(&report)?,
+            render::lines_png(&report, &size)?,
+            render::profiles_png(&report, &size)?,
         ];
+        let files: Vec<(&str, Vec<u8>)> = LINES_FILES.into_iter().zip(bytes).collect();
         export::write_all(out, &files, common.force)?;
-        say_written(out, &files.map(|(name, _)| name), common);
+        say_written(out, &LINES_FILES, common);
     }
     let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;

@@ -22,6 +22,8 @@ mod lookalikes;
 mod nice;
 mod pattern;
 mod place;
+mod plot;
+mod profile;
 mod ranking;
 mod remap;
 mod ribbon;
@@ -177,6 +179,25 @@ pub fn lines_png(report: &LinesReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`lines_png`].
 pub fn lines_layout(report: &LinesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(lines::scene(report, size)?.texts)
+}
+
+/// Draws one panel for each of the first-ranked lines: guaranteed and estimated fix distance against the place on the line
+/// where the vehicle is lost, and the number of places against the distance run.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or no line has a segment.
+pub fn profiles_png(report: &LinesReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&profile::scene(report, size)?, size)
+}
+
+/// The texts of [`profiles_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`profiles_png`].
+pub fn profiles_layout(report: &LinesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(profile::scene(report, size)?.texts)
 }
 
 /// Which figure of the area map a chart shows.

@@ -95,7 +95,7 @@ fn existing_output_is_refused_without_force_and_left_as_it_was() {
 
     let forced = place.run("lines dive.toml --out out --force").expect(0);
     assert!(forced.stderr.contains("wrote"), "{}", forced.stderr);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "notes.txt"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "notes.txt", "profiles.png"]);
     assert!(place.bytes("out/lines.csv").starts_with(b"line,"));
     assert_eq!(place.bytes("out/notes.txt"), b"mine too");
 
@@ -199,7 +199,7 @@ fn an_unmet_requirement_exits_with_1_and_still_writes() {
     let unmet = place.run("lines dive.toml --require 1 --out out").expect(1);
     assert_eq!(met.stdout, unmet.stdout);
     assert!(unmet.stderr.contains("below the 100.0 % asked for"), "{}", unmet.stderr);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
 }
 
 /// Fewer cells allowed than the first detection needs: the answer is "undecided", never a fix.
@@ -304,7 +304,7 @@ fn names_need_not_be_ascii() {
         Ran::of(place.command(["lines", "größe/dive.toml", "--out", "größe/сюда"]).output().expect("starts"))
             .expect(0);
     assert!(scored.stdout.contains(name), "{}", scored.stdout);
-    assert_eq!(place.names("größe/сюда"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("größe/сюда"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
     let json: serde_json::Value = serde_json::from_slice(&place.bytes("größe/сюда/lines.json")).unwrap();
     assert_eq!((json["dive"].as_str(), json["lines"][0]["name"].as_str()), (Some(title), Some(name)));
     let traced = Ran::of(
