@@ -10,7 +10,9 @@ mod guarantee;
 mod line;
 mod rank;
 mod remap;
+mod sensitivity;
 pub mod statistics;
+mod suggest;
 mod trace;
 
 pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
@@ -19,6 +21,8 @@ pub use line::score_lines;
 pub use remap::{
     RegionIndex, RemapProgress, SurveyGround, mark_segments, remap, remap_area_options, survey_ground,
 };
+pub use sensitivity::{sensitivity, sensitivity_runs};
+pub use suggest::{suggest, suggest_area_options};
 pub use trace::{TraceError, TraceRequest, trace};
 
 use geo::{Contains, Coord, LineString, Polygon, Rect};
@@ -29,7 +33,7 @@ use crate::frame::LocalPoint;
 use crate::locate::cell::Cell;
 use crate::locate::{Bounds, Silence, Solver, SolverMap};
 use crate::map::Landmark;
-use crate::report::{ChartLandmark, Parameters, Provenance};
+use crate::report::{ChartLandmark, LandmarksReport, MapLandmark, Parameters, Provenance};
 use crate::track::plan::Plan;
 use crate::vehicle::SonarKind;
 
@@ -60,7 +64,8 @@ impl<'a> Setup<'a> {
             vehicle: self.dive.vehicle,
             dead_reckoning: self.dive.dead_reckoning,
             sonar: self.dive.sonar,
-            scatter_m: self.dive.start.scatter_m,
+            scatter_m: self.dive.start.scatter_on_map_m(),
+            gone_chance: self.dive.gone_chance,
         }
     }
 
@@ -141,6 +146,21 @@ impl<'a> Setup<'a> {
             .collect()
     }
 
+    /// The landmarks as understood.
+    pub fn landmarks_report(&self) -> LandmarksReport {
+        let landmark = |landmark: &Landmark| MapLandmark {
+            id: landmark.id.clone(),
+            position: landmark.position,
+            half_width_east_m: landmark.half_width_east_m,
+            half_width_north_m: landmark.half_width_north_m,
+        };
+        LandmarksReport {
+            provenance: self.provenance("fixability.landmarks"),
+            landmark_uncertainty: self.dive.uncertainty_statement.clone(),
+            landmarks: self.dive.landmarks.iter().map(landmark).collect(),
+        }
+    }
+
     /// Every parameter in force.
     pub fn parameters(&self) -> Parameters {
         let dive = self.dive;
@@ -184,6 +204,8 @@ impl<'a> Setup<'a> {
             nothing_seen: self.silence.is_some(),
             search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
             scatter_m: dive.start.scatter_m,
+            common_shift_m: dive.start.common_shift_m,
+            gone_chance: dive.gone_chance,
             fix_size_m: scoring.fix_size_m,
             required_fix_m: scoring.required_fix_m,
             segment_m: scoring.segment_m,

@@ -5,12 +5,11 @@ use std::path::Path;
 use anyhow::{Context, Result};
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, warning};
+use super::run::{Exit, read, say_local_metres, say_written, warning};
 use super::terminal::{print_notices, print_result};
 use crate::alias::{self, LookAlikeRequest};
 use crate::assess::Setup;
 use crate::export::{self, Exporter, LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson};
-use crate::problem::Notice;
 use crate::render;
 use crate::report::{LinesReport, LookAlikesReport};
 
@@ -43,8 +42,7 @@ pub(super) fn lookalikes(
             (names[3], render::lookalike_panels_png(&report, &size)?),
         ];
         if dive.frame.is_local() {
-            let text = "lookalikes.geojson is not written: GeoJSON holds latitude and longitude, and this map is in local metres".to_owned();
-            print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
+            say_local_metres(&["lookalikes.geojson"], common);
         } else {
             files.push((names[4], LookAlikesGeoJson.bytes(&report)?));
         }
@@ -71,7 +69,7 @@ fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
 
 /// Marks the segments that run over the most dangerous look-alikes.
 pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport, common: &Common) {
-    let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
+    let request = LookAlikeRequest { listed: MARKED, only_whole: true, ..LookAlikeRequest::default() };
     let found = found(setup, &request);
     // Marks from half a search would look like clear ground elsewhere.
     if found.complete {

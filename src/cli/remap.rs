@@ -5,35 +5,40 @@ use std::path::Path;
 use anyhow::{Context, Result, bail};
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, undecided_runs};
+use super::run::{Exit, read, say_local_metres, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
 use crate::render;
 use crate::report::{LinesReport, RemapReport};
 
-/// Files that `remap` writes.
-const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
-
 pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
     let setup = Setup::new(&dive);
     refuse_huge(&setup)?;
+    let mut names = vec!["remap.json", "remap.csv", "remap.png"];
+    if !dive.frame.is_local() {
+        names.push("remap.geojson");
+    }
     if let Some(out) = out {
-        export::prepare(out, &FILES, common.force)?;
+        export::prepare(out, &names, common.force)?;
     }
     let report = analyse(&setup, common);
     let json = RemapJson.bytes(&report)?;
     if let Some(out) = out {
-        let files = [
-            (FILES[0], json.clone()),
-            (FILES[1], RemapCsv.bytes(&report)?),
-            (FILES[2], RemapGeoJson.bytes(&report)?),
-            (FILES[3], render::remap_png(&report, &common.chart_size())?),
+        let mut files = vec![
+            (names[0], json.clone()),
+            (names[1], RemapCsv.bytes(&report)?),
+            (names[2], render::remap_png(&report, &common.chart_size())?),
         ];
+        if dive.frame.is_local() {
+            say_local_metres(&["remap.geojson"], common);
+        } else {
+            files.push((names[3], RemapGeoJson.bytes(&report)?));
+        }
         export::write_all(out, &files, common.force)?;
-        say_written(out, &FILES, common);
+        say_written(out, &names, common);
     }
     let text = if common.json { json } else { export::remap_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;

@@ -9,17 +9,16 @@ use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
+use super::sensitivity::sensitivity;
+use super::suggest::suggest;
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
-use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
+use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
 use crate::render;
 use crate::report::LinesReport;
-
-/// Files that `lines` writes.
-const LINES_FILES: [&str; 4] = ["lines.json", "lines.csv", "lines.png", "profiles.png"];
 
 /// How the program ends.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -79,7 +78,11 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Lookalikes { dive, out, separation_m, listed } => {
-            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            let request = LookAlikeRequest {
+                separation_max_m: *separation_m,
+                listed: *listed as usize,
+                only_whole: false,
+            };
             lookalikes(dive, &request, out.as_deref(), common)
         }
         Command::Area { dive, out, cell_m, headings, longest_run_m } => {
@@ -92,6 +95,8 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             area(dive, &asked, common)
         }
         Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
+        Command::Suggest { dive, out, listed } => suggest(dive, out.as_deref(), *listed, common),
+        Command::Sensitivity { dive, out, factor } => sensitivity(dive, out.as_deref(), *factor, common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);
@@ -144,8 +149,12 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         refuse_huge(&setup)?;
     }
+    let mut names = vec!["lines.json", "lines.csv", "lines.png", "profiles.png"];
+    if !dive.frame.is_local() {
+        names.extend(["lines.geojson", "recommended.gpx"]);
+    }
     if let Some(out) = asked.out {
-        export::prepare(out, &LINES_FILES, common.force)?;
+        export::prepare(out, &names, common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
@@ -157,15 +166,20 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
         let size = common.chart_size();
-        let bytes = [
-            json.clone(),
-            LinesCsv.bytes(&report)?,
-            render::lines_png(&report, &size)?,
-            render::profiles_png(&report, &size)?,
+        let mut files = vec![
+            (names[0], json.clone()),
+            (names[1], LinesCsv.bytes(&report)?),
+            (names[2], render::lines_png(&report, &size)?),
+            (names[3], render::profiles_png(&report, &size)?),
         ];
-        let files: Vec<(&str, Vec<u8>)> = LINES_FILES.into_iter().zip(bytes).collect();
+        if dive.frame.is_local() {
+            say_local_metres(&["lines.geojson", "recommended.gpx"], common);
+        } else {
+            files.push((names[4], LinesGeoJson.bytes(&report)?));
+            files.push((names[5], RecommendedGpx.bytes(&report)?));
+        }
         export::write_all(out, &files, common.force)?;
-        say_written(out, &LINES_FILES, common);
+        say_written(out, &names, common);
     }
     let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
@@ -247,6 +261,16 @@ pub(super) fn undecided_runs(common: &Common) -> Exit {
 
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
+}
+
+/// Says which files are not written because the map is in local metres.
+pub(super) fn say_local_metres(names: &[&str], common: &Common) {
+    let verb = if names.len() == 1 { "is" } else { "are" };
+    let text = format!(
+        "{} {verb} not written: such files hold latitude and longitude, and this map is in local metres",
+        names.join(", ")
+    );
+    print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
 }
 
 /// Names the files written.

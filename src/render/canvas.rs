@@ -6,7 +6,7 @@ use plotters::prelude::{BitMapBackend, DrawingBackend, RGBColor, TextStyle};
 
 use super::colours::{Rgb, WHITE};
 use super::scene::{Item, Px, Rect, Scene};
-use super::{ChartSize, RenderError};
+use super::{ChartSize, RenderError, text};
 
 /// Sub-pixels per pixel in each direction.
 const FINE: usize = 2;
@@ -42,7 +42,9 @@ fn draw(backend: &mut Backend<'_>, item: &Item) -> Drawn {
             let top = fine_px(*baseline) - description.get_size() / 2.0;
             let colour = colour_of(*colour);
             let style = TextStyle::from(description).color(&colour);
-            backend.draw_text(text, &style, (round(fine_px(*left)), round(top))).map_err(drawing)
+            backend
+                .draw_text(&text::drawn(text), &style, (round(fine_px(*left)), round(top)))
+                .map_err(drawing)
         }
     }
 }
@@ -168,6 +170,11 @@ mod tests {
                     "Γραμμή ΐ ΰ",
                     "ấ ệ ặ ņ ç",
                     "WWW AVA To. |lij|",
+                    "測線一 測線二",
+                    "קו אחד 12 (א)",
+                    "خط المسح ٣",
+                    "e\u{301}n\u{303}o\u{308}\u{323} Z\u{30c}",
+                    "🌊 ⚓",
                 ] {
                     let mut scene = Scene::default();
                     let rect = scene.text((20.0, 20.0), text, font, (0, 0, 0));

@@ -261,11 +261,11 @@ fn smaller_index(a: usize, b: usize) -> usize {
     if a < b { a } else { b }
 }
 
-/// Name of a line as the map shows it. A name that must be cut begins with its rank, so that two long names with the
-/// same beginning can be told apart in the ranking.
+/// Name of a line as the map shows it. A name that must be cut, or that has letters which cannot be drawn, begins with its
+/// rank, so that two such names can be told apart in the ranking.
 fn map_name(line: &LineReport, font: Font, room: f64) -> String {
     let name = text::printable(&line.name);
-    if text::width(&name, font) <= room {
+    if text::width(&name, font) <= room && text::has_every_letter(&name) {
         name
     } else {
         text::fit(&format!("{}: {name}", line.rank), font, room)

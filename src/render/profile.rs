@@ -244,7 +244,9 @@ fn draw_fix(sheet: &mut Sheet, plot: &Plot, line: &LineReport, common: &Common, 
     }
     plot.draw_edges(sheet, Some(required));
     plot.label_left(sheet, required, &nice::short(common.required_m, 1), ACCENT);
-    plot.label_left(sheet, top - strips / 2.0 - 2.0 * k, "none", INK);
+    // Clear of a label at the plot's upper end.
+    let beside = larger(strips / 2.0 + 2.0 * k, sheet.sizes.small().line_px());
+    plot.label_left(sheet, top - beside, "none", INK);
 }
 
 /// The strip in which a figure is hatched where it has no value.

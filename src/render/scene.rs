@@ -44,7 +44,8 @@ impl Rect {
         self.bottom - self.top
     }
 
-    pub(super) fn centre(&self) -> Px {
+    /// Its centre.
+    pub fn centre(&self) -> (f64, f64) {
         ((self.left + self.right) / 2.0, (self.top + self.bottom) / 2.0)
     }
 

@@ -1,11 +1,17 @@
 //! Text in one compiled-in family: measuring, cutting and wrapping with the font that is drawn.
 //!
 //! The type is DejaVu Sans from the `dejavu` crate, so pictures are the same on every machine and no system font is
-//! looked up.
+//! looked up. It has Latin, Greek, Cyrillic, Hebrew and Arabic letters; a letter that it does not have is drawn as an
+//! empty box. Text that runs from right to left is put in the order in which it is drawn (Unicode Standard Annex 9);
+//! letters are not joined.
 
-use std::sync::Once;
+use std::borrow::Cow;
+use std::sync::{Once, OnceLock};
 
+use ab_glyph::{Font as _, FontRef};
 use plotters::style::{FontDesc, FontFamily, FontStyle, register_font};
+
+use unicode_bidi::{BidiClass, BidiInfo, bidi_class};
 
 use super::scene::{Px, Rect};
 
@@ -72,7 +78,7 @@ fn register() {
 /// Width of `text`, pixels, rounded up to the next half.
 pub(super) fn width(text: &str, font: Font) -> f64 {
     // The library cuts its measure to whole pixels; measuring at four times the size keeps the loss under a quarter.
-    let (quarter_px, _) = font.description(4.0).box_size(text).expect("the font is registered");
+    let (quarter_px, _) = font.description(4.0).box_size(&drawn(text)).expect("the font is registered");
     f64::from(quarter_px) / 4.0 + 0.5
 }
 
@@ -81,9 +87,34 @@ pub(super) fn rect_at((left, top): Px, text: &str, font: Font) -> Rect {
     Rect::new(left, top, left + width(text, font), top + font.height_px())
 }
 
-/// A name as it can be drawn on one line: control characters and runs of white space become one space.
+/// `text` with its letters in the order in which they are drawn, from left to right.
+pub(super) fn drawn(text: &str) -> Cow<'_, str> {
+    let turns = |c: char| matches!(bidi_class(c), BidiClass::R | BidiClass::AL);
+    if text.is_ascii() || !text.chars().any(turns) {
+        return Cow::Borrowed(text);
+    }
+    let info = BidiInfo::new(text, None);
+    Cow::Owned(info.paragraphs.iter().map(|part| info.reorder_line(part, part.range.clone())).collect())
+}
+
+/// Whether the type has every letter of `text`.
+pub(super) fn has_every_letter(text: &str) -> bool {
+    static REGULAR: OnceLock<Option<FontRef<'static>>> = OnceLock::new();
+    let regular = REGULAR.get_or_init(|| FontRef::try_from_slice(dejavu::sans::regular()).ok());
+    // Glyph 0 is the box that stands for a letter that is missing.
+    regular.as_ref().is_some_and(|font| text.chars().all(|c| font.glyph_id(c).0 != 0))
+}
+
+/// Whether a character has no ink and only steers how others are set: directions, joiners, soft hyphens.
+fn only_steers(c: char) -> bool {
+    matches!(c, '\u{ad}' | '\u{61c}' | '\u{200b}'..='\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2060}'..='\u{206f}' | '\u{feff}')
+}
+
+/// A name as it can be drawn on one line: control characters and runs of white space become one space, and characters
+/// without ink are left out.
 pub(super) fn printable(name: &str) -> String {
-    let spaced: String = name.chars().map(|c| if c.is_control() { ' ' } else { c }).collect();
+    let inked = name.chars().filter(|&c| !only_steers(c));
+    let spaced: String = inked.map(|c| if c.is_control() { ' ' } else { c }).collect();
     spaced.split_whitespace().collect::<Vec<_>>().join(" ")
 }
 

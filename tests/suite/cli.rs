@@ -33,6 +33,21 @@ fn help_teaches() {
     }
 }
 
+/// A3 at 200 dots per inch: 420 mm and 297 mm over 25.4 mm.
+#[test]
+fn paper_and_resolution_reach_every_chart() {
+    let place = Workplace::with_small_dive();
+    place.run("lines dive.toml --draws 1 --out out --paper a3 --dpi 200 -q").expect(0);
+    place.run("trace dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
+    place.run("lookalikes dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
+    for name in ["lines.png", "profiles.png", "trace.png", "lookalikes.png", "lookalikes-panels.png"] {
+        let bytes = place.bytes(&format!("out/{name}"));
+        // The size stands in the first chunk of a PNG file, after 16 bytes, most significant byte first.
+        let number = |at: usize| u32::from_be_bytes(bytes[at..at + 4].try_into().unwrap());
+        assert_eq!((number(16), number(20)), (3307, 2339), "{name}");
+    }
+}
+
 #[test]
 fn wrong_command_lines_exit_with_2_and_say_why() {
     let place = Workplace::with_small_dive();
@@ -43,6 +58,8 @@ fn wrong_command_lines_exit_with_2_and_say_why() {
         ("lines dive.toml --require 2", "a share from 0 to 1"),
         ("lines dive.toml --draws 0", "--draws"),
         ("lines dive.toml --threads 0", "--threads"),
+        ("lines dive.toml --dpi 600", "150..=300"),
+        ("lines dive.toml --paper a5", "a4, a3"),
         ("check dive.toml --out x", "--out"),
         ("trace dive.toml --from-m far", "--from-m"),
         ("completions sh", "bash"),
@@ -81,7 +98,7 @@ fn bad_input_exits_with_3_names_every_problem_and_writes_nothing() {
 }
 
 #[test]
-fn existing_output_is_refused_without_force_and_left_as_it_was() {
+fn case_35_existing_output_is_refused_without_force_and_left_as_it_was() {
     let place =
         Workplace::with_small_dive().write("out/lines.csv", "mine").write("out/notes.txt", "mine too");
     let ran = place.run("lines dive.toml --out out").expect(3);
@@ -204,7 +221,7 @@ fn an_unmet_requirement_exits_with_1_and_still_writes() {
 
 /// Fewer cells allowed than the first detection needs: the answer is "undecided", never a fix.
 #[test]
-fn an_exhausted_budget_exits_with_5() {
+fn case_29_an_exhausted_budget_exits_with_5() {
     let place = Workplace::with_small_dive();
     let dive = String::from_utf8(place.bytes("dive.toml")).unwrap() + "cell_budget = 100\n";
     let mut landmarks = String::from("id,easting,northing,uncertainty_m\n");
@@ -239,7 +256,7 @@ fn every_shell_gets_completions() {
 
 /// Like `fixability … | head -1`: the reader goes away, the program stops without a word.
 #[test]
-fn a_closed_pipe_is_no_error() {
+fn case_36_a_closed_pipe_is_no_error() {
     let place = Workplace::new();
     let dive = project("demo-data/dive.toml");
     let dive = dive.to_str().expect("a plain path");
@@ -291,7 +308,7 @@ fn a_trace_shows_the_run_asked_for() {
 }
 
 #[test]
-fn names_need_not_be_ascii() {
+fn case_39_names_need_not_be_ascii() {
     let place = Workplace::with_small_dive();
     let dive = String::from_utf8(place.bytes("dive.toml")).unwrap();
     let lines = String::from_utf8(place.bytes("lines.csv")).unwrap();
@@ -323,7 +340,7 @@ fn place_landmarks() -> Vec<u8> {
 }
 
 #[test]
-fn a_contradicted_dive_names_the_event_and_the_budget_that_explains_it() {
+fn case_22_a_contradicted_dive_names_the_event_and_the_budget_that_explains_it() {
     // Many simulated strays, none of them budgeted: sooner or later nothing explains the detections.
     let place = Workplace::with_small_dive();
     let text = String::from_utf8(place.bytes("dive.toml")).unwrap();
