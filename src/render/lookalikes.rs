@@ -235,7 +235,10 @@ fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[
     let heading =
         if drawn.is_empty() { "No look-alikes beyond the fix size" } else { "Most dangerous first" };
     let mut y = sheet.scene.text((area.left, area.top), heading, sizes.heading(), INK).bottom + 2.0 * k;
-    let note = "by the landmarks that agree, then by the metres of line over the ground";
+    let note = match drawn {
+        [] => "",
+        _ => "by the landmarks that agree, then by the metres of line over the ground",
+    };
     for line in text::wrap(note, sizes.small(), area.width(), 2) {
         sheet.scene.text((area.left, y), &line, sizes.small(), SOFT_INK);
         y += sizes.small().line_px();
@@ -259,10 +262,13 @@ fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[
     }
     let layouts = drawn[..listed].iter().filter(|entry| entry.kind != LookAlikeKind::Pair).count();
     let more = report.found - report.within_fix_size - report.in_layouts - (listed - layouts);
-    let rest = format!(
-        "and {more} more pairs; {} shifts of rows and grids; {} no farther apart than the fix size",
-        report.in_layouts, report.within_fix_size
-    );
+    let rest = match drawn {
+        [] => format!("{} no farther apart than the fix size", report.within_fix_size),
+        _ => format!(
+            "and {more} more pairs; {} shifts of rows and grids; {} no farther apart than the fix size",
+            report.in_layouts, report.within_fix_size
+        ),
+    };
     for line in text::wrap(&rest, sizes.small(), area.width(), 2) {
         sheet.scene.text((area.left, y), &line, sizes.small(), SOFT_INK);
         y += sizes.small().line_px();

@@ -215,15 +215,15 @@ fn panel(sheet: &mut Sheet, cell: Rect, line: &LineReport, common: &Common) {
 fn in_words(line: &LineReport, common: &Common) -> String {
     let required = nice::short(common.required_m, 1);
     let per_cent = |share: f64| nice::short(100.0 * share, 1);
-    let mut pieces = Vec::new();
+    let mut pieces: Vec<String> = Vec::new();
     if let Some(guaranteed) = &line.guaranteed {
         let share = per_cent(guaranteed.within_required_share);
-        pieces.push(format!("fix within {required} m guaranteed on {share} % of the line"));
+        pieces.push(format!("guaranteed on {share} % of the line"));
     }
     if let Some(share) = line.estimated.within_required_share.value {
         pieces.push(format!("estimated in {} % of runs", per_cent(share)));
     }
-    pieces.join(", ")
+    format!("fix within {required} m: {}", pieces.join(", "))
 }
 
 fn draw_fix(sheet: &mut Sheet, plot: &Plot, line: &LineReport, common: &Common, strips: f64) {

@@ -11,7 +11,8 @@ use std::sync::{Once, OnceLock};
 use ab_glyph::{Font as _, FontRef};
 use plotters::style::{FontDesc, FontFamily, FontStyle, register_font};
 
-use unicode_bidi::{BidiClass, BidiInfo, bidi_class};
+use unicode_bidi::{BidiClass, BidiInfo, Level, bidi_class};
+use unicode_normalization::UnicodeNormalization as _;
 
 use super::scene::{Px, Rect};
 
@@ -93,7 +94,10 @@ pub(super) fn drawn(text: &str) -> Cow<'_, str> {
     if text.is_ascii() || !text.chars().any(turns) {
         return Cow::Borrowed(text);
     }
-    let info = BidiInfo::new(text, None);
+    // A line that has letters from left to right, such as the foot, is set from left to right; a name of letters from
+    // right to left alone is set from right to left, so that a cut shows at its end.
+    let base = text.chars().any(|c| bidi_class(c) == BidiClass::L).then(Level::ltr);
+    let info = BidiInfo::new(text, base);
     Cow::Owned(info.paragraphs.iter().map(|part| info.reorder_line(part, part.range.clone())).collect())
 }
 
@@ -113,7 +117,8 @@ fn only_steers(c: char) -> bool {
 /// A name as it can be drawn on one line: control characters and runs of white space become one space, and characters
 /// without ink are left out.
 pub(super) fn printable(name: &str) -> String {
-    let inked = name.chars().filter(|&c| !only_steers(c));
+    // A letter and its accent become one letter where there is one: the type sets accents of their own badly.
+    let inked = name.nfc().filter(|&c| !only_steers(c));
     let spaced: String = inked.map(|c| if c.is_control() { ' ' } else { c }).collect();
     spaced.split_whitespace().collect::<Vec<_>>().join(" ")
 }
