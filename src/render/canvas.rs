@@ -174,7 +174,7 @@ mod tests {
                     "קו אחד 12 (א)",
                     "خط المسح ٣",
                     "e\u{301}n\u{303}o\u{308}\u{323} Z\u{30c}",
-                    "🌊 ⚓",
+                    "🌊 ⚓ boat",
                 ] {
                     let mut scene = Scene::default();
                     let rect = scene.text((20.0, 20.0), text, font, (0, 0, 0));

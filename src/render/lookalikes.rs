@@ -7,7 +7,7 @@ use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
 use super::lines::{draw_landmarks, draw_surround, fit_frame};
 use super::place::Taken;
 use super::scene::{Px, Rect, Scene};
-use super::text;
+use super::text::{self, Font};
 use super::trace::clipped_stroke;
 use super::{ChartSize, RenderError, nice};
 use crate::frame::LocalPoint;
@@ -18,6 +18,8 @@ use crate::report::{LookAlike, LookAlikeKind, LookAlikesReport};
 const DRAWN: usize = 9;
 /// Least size of landmarks, pixels.
 const LANDMARK_PX: f64 = 4.0;
+/// Widest identifier of a landmark over the width of its line.
+pub(super) const IDENTIFIER_SHARE: f64 = 0.35;
 /// How far outlines stay off their landmarks, pixels.
 const OUTLINE_PX: f64 = 9.0;
 
@@ -255,7 +257,8 @@ fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[
         let left = area.left + 30.0 * k;
         let title = text::fit(&title(entry), sizes.body(), area.right - left);
         sheet.scene.text((left, y), &title, sizes.body(), INK);
-        let details = text::fit(&details(entry), sizes.small(), area.right - left);
+        let room = area.right - left;
+        let details = text::fit(&details(entry, sizes.small(), room), sizes.small(), room);
         sheet.scene.text((left, y + sizes.body().line_px()), &details, sizes.small(), SOFT_INK);
         y += pitch;
         listed += 1;
@@ -291,12 +294,13 @@ pub(super) fn title(entry: &LookAlike) -> String {
     }
 }
 
-/// What else there is to say.
-fn details(entry: &LookAlike) -> String {
+/// What else there is to say; a long identifier leaves room for the figures.
+fn details(entry: &LookAlike, font: Font, room: f64) -> String {
     let tell = entry.nearest_tell_tale().map_or_else(
         || "nothing tells them apart".to_owned(),
         |tell| {
-            format!("told by {}, {} m on", text::printable(&tell.landmark), nice::metres(tell.from_edge_m))
+            let landmark = text::fit(&text::printable(&tell.landmark), font, room * IDENTIFIER_SHARE);
+            format!("told by {landmark}, {} m on", nice::metres(tell.from_edge_m))
         },
     );
     let breaks = scale_in_words(entry.break_scale);

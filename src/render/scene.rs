@@ -203,7 +203,7 @@ impl Scene {
             font,
             colour,
         });
-        self.texts.push(PlacedText { text: text.to_owned(), rect, em_px: font.em_px });
+        self.texts.push(PlacedText { text: text::without_steering(text), rect, em_px: font.em_px });
         rect
     }
 

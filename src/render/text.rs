@@ -13,6 +13,7 @@ use plotters::style::{FontDesc, FontFamily, FontStyle, register_font};
 
 use unicode_bidi::{BidiClass, BidiInfo, Level, bidi_class};
 use unicode_normalization::UnicodeNormalization as _;
+use unicode_normalization::char::is_combining_mark;
 
 use super::scene::{Px, Rect};
 
@@ -26,10 +27,15 @@ const LINE_PER_EM: f64 = 2384.0 / 2048.0;
 const ASCENT_EM: f64 = 1.02;
 /// Lowest ink of the same letters under the baseline, in em.
 const DESCENT_EM: f64 = 0.3;
+/// How far an accent of its own may reach beyond the end of a line, in em.
+const ACCENT_EM: f64 = 0.4;
 /// Distance of baselines in a block, in em.
 const LEADING_EM: f64 = 1.34;
 /// A space at which no line is broken.
 const NO_BREAK: char = '\u{a0}';
+/// Start and end of text that is ordered by itself (first strong isolate, pop directional isolate).
+const ISOLATE: char = '\u{2068}';
+const ISOLATE_END: char = '\u{2069}';
 /// Units that stay with their number.
 const UNITS: [&str; 4] = ["m", "m/s", "km²", "%"];
 /// What stands for text that was cut.
@@ -80,7 +86,9 @@ fn register() {
 pub(super) fn width(text: &str, font: Font) -> f64 {
     // The library cuts its measure to whole pixels; measuring at four times the size keeps the loss under a quarter.
     let (quarter_px, _) = font.description(4.0).box_size(&drawn(text)).expect("the font is registered");
-    f64::from(quarter_px) / 4.0 + 0.5
+    // Accents of their own have no width and reach beyond their letter.
+    let accents = if text.chars().any(is_combining_mark) { ACCENT_EM * font.em_px } else { 0.0 };
+    f64::from(quarter_px) / 4.0 + 0.5 + accents
 }
 
 /// The rectangle `text` fills when its upper left corner is at `(left, top)`.
@@ -88,17 +96,25 @@ pub(super) fn rect_at((left, top): Px, text: &str, font: Font) -> Rect {
     Rect::new(left, top, left + width(text, font), top + font.height_px())
 }
 
-/// `text` with its letters in the order in which they are drawn, from left to right.
+/// `text` with its letters in the order in which they are drawn, from left to right, without what only steers them.
 pub(super) fn drawn(text: &str) -> Cow<'_, str> {
-    let turns = |c: char| matches!(bidi_class(c), BidiClass::R | BidiClass::AL);
-    if text.is_ascii() || !text.chars().any(turns) {
+    if text.is_ascii() || !text.chars().any(runs_left) {
         return Cow::Borrowed(text);
     }
-    // A line that has letters from left to right, such as the foot, is set from left to right; a name of letters from
-    // right to left alone is set from right to left, so that a cut shows at its end.
-    let base = text.chars().any(|c| bidi_class(c) == BidiClass::L).then(Level::ltr);
-    let info = BidiInfo::new(text, base);
-    Cow::Owned(info.paragraphs.iter().map(|part| info.reorder_line(part, part.range.clone())).collect())
+    // Sentences of the charts run from left to right; a name within is isolated (see `printable`).
+    let info = BidiInfo::new(text, Some(Level::ltr()));
+    let lines = info.paragraphs.iter().map(|part| info.reorder_line(part, part.range.clone()));
+    Cow::Owned(lines.map(|line| without_steering(&line)).collect())
+}
+
+/// Whether a letter belongs to a script that runs from right to left.
+fn runs_left(c: char) -> bool {
+    matches!(bidi_class(c), BidiClass::R | BidiClass::AL)
+}
+
+/// `text` without the characters that have no ink.
+pub(super) fn without_steering(text: &str) -> String {
+    text.chars().filter(|&c| !only_steers(c)).collect()
 }
 
 /// Whether the type has every letter of `text`.
@@ -106,7 +122,7 @@ pub(super) fn has_every_letter(text: &str) -> bool {
     static REGULAR: OnceLock<Option<FontRef<'static>>> = OnceLock::new();
     let regular = REGULAR.get_or_init(|| FontRef::try_from_slice(dejavu::sans::regular()).ok());
     // Glyph 0 is the box that stands for a letter that is missing.
-    regular.as_ref().is_some_and(|font| text.chars().all(|c| font.glyph_id(c).0 != 0))
+    regular.as_ref().is_some_and(|font| text.chars().all(|c| only_steers(c) || font.glyph_id(c).0 != 0))
 }
 
 /// Whether a character has no ink and only steers how others are set: directions, joiners, soft hyphens.
@@ -115,12 +131,18 @@ fn only_steers(c: char) -> bool {
 }
 
 /// A name as it can be drawn on one line: control characters and runs of white space become one space, and characters
-/// without ink are left out.
+/// without ink are left out. A name with letters that run from right to left is isolated and kept on one line, so that
+/// it does not turn the numbers beside it around.
 pub(super) fn printable(name: &str) -> String {
     // A letter and its accent become one letter where there is one: the type sets accents of their own badly.
     let inked = name.nfc().filter(|&c| !only_steers(c));
     let spaced: String = inked.map(|c| if c.is_control() { ' ' } else { c }).collect();
-    spaced.split_whitespace().collect::<Vec<_>>().join(" ")
+    let words: Vec<&str> = spaced.split_whitespace().collect();
+    if spaced.chars().any(runs_left) {
+        format!("{ISOLATE}{}{ISOLATE_END}", words.join(&NO_BREAK.to_string()))
+    } else {
+        words.join(" ")
+    }
 }
 
 /// `text` if it is at most `room` pixels wide, else as much of it as fits with an ellipsis, so that the cut shows.
@@ -174,4 +196,28 @@ pub(super) fn wrap_pieces<'a>(
         }
     }
     lines.iter().map(|line| fit(line, font, room)).collect()
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    /// Numbers beside a name from right to left keep their order and their side (Unicode Standard Annex 9, isolates), and
+    /// a cut shows at the end of the name, which is its left.
+    #[test]
+    fn names_from_right_to_left_leave_their_neighbours_alone() {
+        let name = printable("\u{202e}קו 13");
+        assert_eq!(drawn(&format!("told by {name}, 40 m on")), "told by 13\u{a0}וק, 40 m on");
+        assert_eq!(drawn(&format!("{name}  ·  issued 2026")), "13\u{a0}וק  ·  issued 2026");
+        let font = Font { em_px: 16.0, bold: false };
+        let long = fit(&printable(&"קו ".repeat(40)), font, 100.0);
+        assert!(long.ends_with(ELLIPSIS) && drawn(&long).starts_with(ELLIPSIS), "{:?}", drawn(&long));
+        assert!(width(&long, font) <= 100.0);
+    }
+
+    #[test]
+    fn accents_are_composed_and_what_has_no_ink_is_left_out() {
+        assert_eq!(printable("e\u{301}\tn\u{303}\u{200b}\n x"), "é ñ x");
+        assert!(has_every_letter("Å é Ж β קו خط") && !has_every_letter("測線"));
+    }
 }

@@ -41,7 +41,7 @@ fn paper_and_resolution_reach_every_chart() {
     place.run("trace dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
     place.run("lookalikes dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
     for name in ["lines.png", "profiles.png", "trace.png", "lookalikes.png", "lookalikes-panels.png"] {
-        let bytes = place.bytes(&format!("out/{name}"));
+        let bytes = place.bytes(format!("out/{name}"));
         // The size stands in the first chunk of a PNG file, after 16 bytes, most significant byte first.
         let number = |at: usize| u32::from_be_bytes(bytes[at..at + 4].try_into().unwrap());
         assert_eq!((number(16), number(20)), (3307, 2339), "{name}");

@@ -47,7 +47,7 @@ fn dive(seed: u64) -> Dive {
         _ => Frame::local(),
     };
     dive.uncertainty_statement = NAMES[rng.random_range(0..NAMES.len())].repeat(3);
-    if seed % 2 == 0 {
+    if seed.is_multiple_of(2) {
         dive.issued = time::Date::from_ordinal_date(2026, 335).ok();
         dive.surveyed = time::Date::from_ordinal_date(2026, 60).ok();
     }

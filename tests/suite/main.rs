@@ -14,6 +14,7 @@ mod demo;
 mod determinism;
 mod edge_cases;
 mod export;
+mod gis;
 mod guarantee;
 mod heavy;
 mod intervals;

@@ -19,7 +19,7 @@ use crate::support::program::{Ran, Workplace, project};
 /// Set to 1 to write the made parts of the README and `reports/` instead of failing.
 const WRITE: &str = "FIXABILITY_WRITE_REPORTS";
 const MAIN_JOB: &str = "cargo run --release -- lines demo-data/dive.toml --out demo-out";
-const TESTS: &str = "cargo test --release";
+const TESTS: &str = "tests/run";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
@@ -202,6 +202,7 @@ fn every_command_of_the_readme_runs() {
         "area-worst.png",
         "area.csv",
         "area.json",
+        "area.tif",
         "lookalikes-panels.png",
         "lookalikes.csv",
         "lookalikes.geojson",
