@@ -117,7 +117,10 @@ impl<'a> Setup<'a> {
             generator: crate::detect::GENERATOR,
             issued: dive.issued.map(|date| date.to_string()),
             surveyed: dive.surveyed.map(|date| date.to_string()),
-            map_age_days: dive.issued.zip(dive.surveyed).map(|(issued, surveyed)| (issued - surveyed).whole_days()),
+            map_age_days: dive
+                .issued
+                .zip(dive.surveyed)
+                .map(|(issued, surveyed)| (issued - surveyed).whole_days()),
             coordinate_system: dive.frame.name(),
             epsg: dive.frame.epsg(),
             frame: dive.frame.clone(),

@@ -5,7 +5,7 @@ use std::path::Path;
 use anyhow::{Context, Result};
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, warning};
+use super::run::{Exit, OutputFile, read, warning, write};
 use super::terminal::{print_notices, print_result};
 use crate::alias::{self, LookAlikeRequest};
 use crate::assess::Setup;
@@ -17,6 +17,10 @@ use crate::report::{LinesReport, LookAlikesReport};
 /// Most dangerous look-alikes that `lines` marks: one digit each, so that the chart can be read.
 const MARKED: usize = 9;
 
+/// Files that `lookalikes` writes; the last one only when the map is on the Earth.
+const FILES: [&str; 5] =
+    ["lookalikes.json", "lookalikes.csv", "lookalikes.png", "lookalikes-panels.png", "lookalikes.geojson"];
+
 pub(super) fn lookalikes(
     path: &Path,
     request: &LookAlikeRequest,
@@ -25,46 +29,55 @@ pub(super) fn lookalikes(
 ) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
-    let mut names = vec!["lookalikes.json", "lookalikes.csv", "lookalikes.png", "lookalikes-panels.png"];
-    if !dive.frame.is_local() {
-        names.push("lookalikes.geojson");
-    }
     if let Some(out) = out {
-        export::prepare(out, &names, common.force)?;
+        let left_out = usize::from(dive.frame.is_local());
+        export::prepare(out, &FILES[..FILES.len() - left_out], common.force)?;
     }
     let report = found(&Setup::new(&dive), request);
-    let json = LookAlikesJson.bytes(&report)?;
     if let Some(out) = out {
-        let size = ChartSize::default();
-        let mut files = vec![
-            (names[0], json.clone()),
-            (names[1], LookAlikesCsv.bytes(&report)?),
-            (names[2], render::lookalikes_png(&report, &size)?),
-            (names[3], render::lookalike_panels_png(&report, &size)?),
-        ];
         if dive.frame.is_local() {
             let text = "lookalikes.geojson is not written: GeoJSON holds latitude and longitude, and this map is in local metres".to_owned();
             print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
-        } else {
-            files.push((names[4], LookAlikesGeoJson.bytes(&report)?));
         }
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &names, common);
+        write(out, &files(&report, &ChartSize::default())?, common)?;
     }
-    let text = if common.json { json } else { export::lookalikes_table(&report).into_bytes() };
+    let text = if common.json {
+        LookAlikesJson.bytes(&report)?
+    } else {
+        export::lookalikes_table(&report).into_bytes()
+    };
     print_result(&text).context("standard output")?;
-    if !report.complete {
-        let text = format!(
-            "more than {} agreeing triangles: the list is not complete; use a shorter --separation-m, or tighter bounds",
-            alias::TRIANGLES_MAX
-        );
-        print_notices([&warning(text)], common.quiet);
-        return Ok(Exit::Undecided);
-    }
-    Ok(Exit::Done)
+    Ok(exit(&report, common))
 }
 
-fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
+/// The files of a list of look-alikes.
+pub(super) fn files(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
+    let mut bytes = vec![
+        LookAlikesJson.bytes(report)?,
+        LookAlikesCsv.bytes(report)?,
+        render::lookalikes_png(report, size)?,
+        render::lookalike_panels_png(report, size)?,
+    ];
+    if !report.frame.is_local() {
+        bytes.push(LookAlikesGeoJson.bytes(report)?);
+    }
+    Ok(FILES.into_iter().zip(bytes).collect())
+}
+
+/// The exit code of `lookalikes`, with the reason on standard error.
+pub(super) fn exit(report: &LookAlikesReport, common: &Common) -> Exit {
+    if report.complete {
+        return Exit::Done;
+    }
+    let text = format!(
+        "more than {} agreeing triangles: the list is not complete; use a shorter --separation-m, or tighter bounds",
+        alias::TRIANGLES_MAX
+    );
+    print_notices([&warning(text)], common.quiet);
+    Exit::Undecided
+}
+
+pub(super) fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
     let head = (setup.provenance("fixability.lookalikes"), setup.parameters(), setup.chart_landmarks());
     alias::look_alikes(setup.dive, request, head)
 }
@@ -72,10 +85,16 @@ fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
 /// Marks the segments that run over the most dangerous look-alikes.
 pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport, common: &Common) {
     let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
-    let found = found(setup, &request);
+    mark(report, &found(setup, &request), common);
+}
+
+/// Marks the segments that run over the most dangerous look-alikes of a list.
+pub(super) fn mark(report: &mut LinesReport, found: &LookAlikesReport, common: &Common) {
     // Marks from half a search would look like clear ground elsewhere.
     if found.complete {
-        alias::mark_lines(report, &found);
+        let mut marked = found.clone();
+        marked.look_alikes.truncate(MARKED);
+        alias::mark_lines(report, &marked);
     } else {
         let text =
             "no segments are marked as look-alike ground: the map has more look-alikes than can be held; \

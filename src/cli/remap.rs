@@ -3,9 +3,10 @@
 use std::path::Path;
 
 use anyhow::{Context, Result, bail};
+use indicatif::ProgressBar;
 
 use super::args::Common;
-use super::run::{Exit, read, say_written, undecided_runs};
+use super::run::{Exit, OutputFile, read, undecided_runs, write};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
@@ -15,6 +16,17 @@ use crate::report::{LinesReport, RemapReport};
 /// Files that `remap` writes.
 const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
 
+/// The files of the remap analysis.
+pub(super) fn files(report: &RemapReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
+    let bytes = [
+        RemapJson.bytes(report)?,
+        RemapCsv.bytes(report)?,
+        RemapGeoJson.bytes(report)?,
+        render::remap_png(report, size)?,
+    ];
+    Ok(FILES.into_iter().zip(bytes).collect())
+}
+
 pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
@@ -23,19 +35,12 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
     if let Some(out) = out {
         export::prepare(out, &FILES, common.force)?;
     }
-    let report = analyse(&setup, common);
-    let json = RemapJson.bytes(&report)?;
+    let report = analyse(&setup, &runs_bar(common.quiet));
     if let Some(out) = out {
-        let files = [
-            (FILES[0], json.clone()),
-            (FILES[1], RemapCsv.bytes(&report)?),
-            (FILES[2], RemapGeoJson.bytes(&report)?),
-            (FILES[3], render::remap_png(&report, &ChartSize::default())?),
-        ];
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &FILES, common);
+        write(out, &files(&report, &ChartSize::default())?, common)?;
     }
-    let text = if common.json { json } else { export::remap_table(&report).into_bytes() };
+    let text =
+        if common.json { RemapJson.bytes(&report)? } else { export::remap_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.undecided {
         return Ok(undecided_runs(common));
@@ -45,11 +50,10 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
 
 /// Marks the segments of `lines` that run over remap regions.
 pub(super) fn mark_remap_regions(setup: &Setup<'_>, lines: &mut LinesReport, common: &Common) {
-    assess::mark_segments(lines, &analyse(setup, common));
+    assess::mark_segments(lines, &analyse(setup, &runs_bar(common.quiet)));
 }
 
-fn analyse(setup: &Setup<'_>, common: &Common) -> RemapReport {
-    let bar = runs_bar(common.quiet);
+pub(super) fn analyse(setup: &Setup<'_>, bar: &ProgressBar) -> RemapReport {
     let report = assess::remap(setup, &|progress| match progress {
         RemapProgress::Planned(runs) => bar.inc_length(runs as u64),
         RemapProgress::Done(runs) => bar.inc(runs as u64),

@@ -118,6 +118,9 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
     Ok(Exit::Done)
 }
 
+/// Files that `lines` writes.
+const LINES_FILES: [&str; 3] = ["lines.json", "lines.csv", "lines.png"];
+
 /// What `lines` was asked beyond the dive file.
 struct LinesOptions<'a> {
     out: Option<&'a Path>,
@@ -142,7 +145,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         refuse_huge(&setup)?;
     }
     if let Some(out) = asked.out {
-        export::prepare(out, &["lines.json", "lines.csv", "lines.png"], common.force)?;
+        export::prepare(out, &LINES_FILES, common.force)?;
     }
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
@@ -151,23 +154,23 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         mark_remap_regions(&setup, &mut report, common);
     }
-    let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
-        let files = [
-            ("lines.json", json.clone()),
-            ("lines.csv", LinesCsv.bytes(&report)?),
-            ("lines.png", render::lines_png(&report, &ChartSize::default())?),
-        ];
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &files.map(|(name, _)| name), common);
+        write(out, &lines_files(&report, &ChartSize::default())?, common)?;
     }
-    let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
+    let text =
+        if common.json { LinesJson.bytes(&report)? } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     Ok(lines_exit(&report, asked.require, common))
 }
 
+/// The files of scored lines.
+pub(super) fn lines_files(report: &LinesReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
+    let bytes = [LinesJson.bytes(report)?, LinesCsv.bytes(report)?, render::lines_png(report, size)?];
+    Ok(LINES_FILES.into_iter().zip(bytes).collect())
+}
+
 /// The exit code of `lines`, with the reason on standard error.
-fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
+pub(super) fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
     if let Some(required) = require {
         let best = report.lines.iter().find(|line| line.rank == 1);
         let reached = best.and_then(|line| line.guaranteed).map_or(0.0, |sum| sum.within_required_share);
@@ -241,6 +244,17 @@ pub(super) fn undecided_runs(common: &Common) -> Exit {
 
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
+}
+
+/// Name and bytes of one output file.
+pub(super) type OutputFile = (&'static str, Vec<u8>);
+
+/// Writes the files of a command and says so.
+pub(super) fn write(out: &Path, files: &[OutputFile], common: &Common) -> Result<()> {
+    export::write_all(out, files, common.force)?;
+    let names: Vec<&str> = files.iter().map(|(name, _)| *name).collect();
+    say_written(out, &names, common);
+    Ok(())
 }
 
 /// Names the files written.
