@@ -3,10 +3,12 @@
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
 mod area;
+mod brief;
 mod lookalikes;
 mod remap;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
+pub use brief::{AbortDistance, BriefReport, Finding, PackFile, Verdict};
 pub use lookalikes::{
     ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,
     RegularLayout, TellTale,
