@@ -109,6 +109,9 @@ pub const GRID_METRES: Range = Range::closed(-1e8, 1e8, "m");
 /// Range of an uncertainty.
 pub const UNCERTAINTY: Range = Range::closed(0.0, 10_000.0, "m");
 
+/// How dates are written.
+pub const DATE_FORM: &str = "a date as year-month-day, such as 2026-05-31";
+
 const fn number(
     section: &'static str,
     name: &'static str,
@@ -193,6 +196,27 @@ pub const KEYS: &[Key] = &[
         Kind::Date,
         Without("the outputs say that the age of the map is not stated"),
         "Date on which the landmarks were surveyed; of several surveys, the oldest.",
+    ),
+    key(
+        "map",
+        "oldest_survey",
+        Kind::Date,
+        Without("landmarks of any age are used"),
+        "Landmarks with an own survey date before this one are left out, counted in a warning.",
+    ),
+    number(
+        "map",
+        "gone_chance",
+        Range { low: 0.0, above_low: false, high: 1.0, below_high: true, unit: "" },
+        Default("0"),
+        "Chance that a mapped landmark is no longer there, drawn for each landmark and simulated dive; needs budget.misses to guarantee anything.",
+    ),
+    number(
+        "map",
+        "common_shift_m",
+        Range::closed(0.0, 10_000.0, "m"),
+        Default("0"),
+        "Largest shift of the whole map against the Earth. It cannot be found from relative positions: it widens the start, and adds to every absolute position.",
     ),
     key(
         "map",
@@ -525,6 +549,27 @@ pub const KEYS: &[Key] = &[
         Default("20"),
         "Number of regions, largest first, for which cure and gain are computed.",
     ),
+    key(
+        "suggest",
+        "listed",
+        Kind::Whole(Range::closed(1.0, 100.0, "")),
+        Default("5"),
+        "Most dive points and headings to suggest.",
+    ),
+    number(
+        "suggest",
+        "lead_m",
+        Range::closed(0.0, 10_000.0, "m"),
+        Default("50"),
+        "How far a suggested line goes on after its guaranteed fix; it is at least `scoring.required_fix_m` long where the search area allows.",
+    ),
+    number(
+        "sensitivity",
+        "factor",
+        Range { low: 0.0, above_low: false, high: 1.0, below_high: true, unit: "" },
+        Default("0.5"),
+        "Each error bound is multiplied by this, one at a time and all together.",
+    ),
 ];
 
 /// The row of a key.
@@ -556,7 +601,7 @@ impl Key {
             Kind::Files => "a list of file names in quotes, relative to the dive file".into(),
             Kind::Crs => "\"EPSG:4326\" (latitude and longitude), the \"EPSG:…\" code of a projected grid, or \"local\" (plain metres)".into(),
             Kind::Flag => "true or false".into(),
-            Kind::Date => "a date as year-month-day, such as 2026-05-31".into(),
+            Kind::Date => DATE_FORM.into(),
         }
     }
 }

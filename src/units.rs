@@ -1,5 +1,8 @@
 //! Numbers and units at the rim: text to numbers, degrees to radians, and how lengths and angles are written.
 
+use time::Date;
+use time::format_description::well_known::Iso8601;
+
 /// Why a text is not a number that can be used.
 #[derive(Clone, Debug, PartialEq, Eq)]
 pub struct NumberFault {
@@ -140,6 +143,17 @@ pub fn position_words(lat_deg: f64, lon_deg: f64) -> String {
 /// `1 landmark`, `2 landmarks`.
 pub fn count_words(n: usize, one: &str) -> String {
     if n == 1 { format!("1 {one}") } else { format!("{n} {one}s") }
+}
+
+/// A date of the calendar as year-month-day (ISO 8601-1, extended format).
+pub fn parse_date(text: &str) -> Option<Date> {
+    // The standard also has week and ordinal dates; the form in the message is the only one accepted.
+    let is_plain = text.len() == 10
+        && text
+            .bytes()
+            .enumerate()
+            .all(|(i, b)| if i == 4 || i == 7 { b == b'-' } else { b.is_ascii_digit() });
+    if is_plain { Date::parse(text, &Iso8601::DATE).ok() } else { None }
 }
 
 #[cfg(test)]

@@ -89,7 +89,6 @@ pub fn look_alikes(
         in_layouts: in_layouts.len(),
         complete,
         look_alikes,
-        frame: dive.frame.clone(),
         landmarks,
         lines: dive
             .lines

@@ -76,7 +76,11 @@ fn share_of(line: &LineReport, is_counted: impl Fn(&SegmentReport) -> bool) -> f
         segments.map(|segment| segment.end_m - segment.start_m).sum()
     };
     let all = length(&mut line.segments.iter());
-    if all > 0.0 { length(&mut line.segments.iter().filter(|segment| is_counted(segment))) / all } else { 0.0 }
+    if all > 0.0 {
+        length(&mut line.segments.iter().filter(|segment| is_counted(segment))) / all
+    } else {
+        0.0
+    }
 }
 
 /// See the head of this file; none when no segment has a guaranteed fix.
@@ -128,7 +132,9 @@ impl Facts<'_> {
                  guaranteed anywhere else on it."
             ),
             Finding::NothingGuaranteed if self.larger.is_some() => {
-                format!("Line {name} ranks first, but no fix within {required} m is guaranteed anywhere on it.")
+                format!(
+                    "Line {name} ranks first, but no fix within {required} m is guaranteed anywhere on it."
+                )
             }
             Finding::NothingGuaranteed => {
                 format!("No line has a guaranteed fix within {required} m, from any place on it.")
@@ -139,7 +145,9 @@ impl Facts<'_> {
     fn figure_means(&self) -> String {
         let (name, required) = (self.name(), self.required());
         match self.finding {
-            Finding::Undecided => format!("of line {name} is undecided; it counts as ground without a guarantee"),
+            Finding::Undecided => {
+                format!("of line {name} is undecided; it counts as ground without a guarantee")
+            }
             Finding::NoLandmarks => "of any line has a guaranteed fix".to_owned(),
             _ => format!("of the length of line {name} has a guaranteed fix within {required} m"),
         }

@@ -24,7 +24,7 @@ pub(super) const FEW_DETECTIONS: usize = 3;
 
 /// The tracks that stand for the descent scatter.
 fn offset_tracks(setup: &Setup<'_>, plan: &Plan) -> Vec<Plan> {
-    let scatter_m = setup.dive.start.scatter_m;
+    let scatter_m = setup.dive.start.scatter_on_map_m();
     let mut tracks = vec![plan.clone()];
     if scatter_m > 0.0 {
         tracks.extend((0..RIM_TRACKS).map(|k| {
@@ -37,7 +37,7 @@ fn offset_tracks(setup: &Setup<'_>, plan: &Plan) -> Vec<Plan> {
 
 /// What the guaranteed figures of a report are true for.
 pub(super) fn terms(setup: &Setup<'_>) -> GuaranteeTerms {
-    let scatter_m = setup.dive.start.scatter_m;
+    let scatter_m = setup.dive.start.scatter_on_map_m();
     let (offset_tracks, offset_pattern) = if scatter_m > 0.0 {
         let pattern = format!(
             "the planned track and {RIM_TRACKS} copies moved by {scatter_m} m, every {:.0} degrees from north",
@@ -53,10 +53,11 @@ pub(super) fn terms(setup: &Setup<'_>) -> GuaranteeTerms {
 /// The guaranteed fix of each start along `plan`.
 pub(super) fn guaranteed_fixes(setup: &Setup<'_>, plan: &Plan, starts_m: &[f64]) -> Vec<GuaranteedFix> {
     let budget = setup.dive.budget;
-    if setup.dive.sonar.detection_chance < 1.0 && budget.misses == 0 {
+    if !setup.dive.is_detection_certain() && budget.misses == 0 {
         let reason = format!(
-            "detection chance {} and a miss budget of 0: no landmark is certain to be detected (set budget.misses)",
-            setup.dive.sonar.detection_chance
+            "detection chance {}, chance {} that a landmark is gone, and a miss budget of 0: no landmark is certain to be \
+             detected (set budget.misses)",
+            setup.dive.sonar.detection_chance, setup.dive.gone_chance
         );
         return vec![without(Cause::DetectionNotCertain, reason, 0); starts_m.len()];
     }

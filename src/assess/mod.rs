@@ -31,7 +31,7 @@ use crate::frame::LocalPoint;
 use crate::locate::cell::Cell;
 use crate::locate::{Bounds, Silence, Solver, SolverMap};
 use crate::map::Landmark;
-use crate::report::{ChartLandmark, Parameters, Provenance};
+use crate::report::{ChartLandmark, LandmarksReport, MapLandmark, Parameters, Provenance};
 use crate::track::plan::Plan;
 use crate::vehicle::SonarKind;
 
@@ -62,7 +62,8 @@ impl<'a> Setup<'a> {
             vehicle: self.dive.vehicle,
             dead_reckoning: self.dive.dead_reckoning,
             sonar: self.dive.sonar,
-            scatter_m: self.dive.start.scatter_m,
+            scatter_m: self.dive.start.scatter_on_map_m(),
+            gone_chance: self.dive.gone_chance,
         }
     }
 
@@ -143,6 +144,21 @@ impl<'a> Setup<'a> {
             .collect()
     }
 
+    /// The landmarks as understood.
+    pub fn landmarks_report(&self) -> LandmarksReport {
+        let landmark = |landmark: &Landmark| MapLandmark {
+            id: landmark.id.clone(),
+            position: landmark.position,
+            half_width_east_m: landmark.half_width_east_m,
+            half_width_north_m: landmark.half_width_north_m,
+        };
+        LandmarksReport {
+            provenance: self.provenance("fixability.landmarks"),
+            landmark_uncertainty: self.dive.uncertainty_statement.clone(),
+            landmarks: self.dive.landmarks.iter().map(landmark).collect(),
+        }
+    }
+
     /// Every parameter in force.
     pub fn parameters(&self) -> Parameters {
         let dive = self.dive;
@@ -186,6 +202,8 @@ impl<'a> Setup<'a> {
             nothing_seen: self.silence.is_some(),
             search_area_km2: Cell::around_points(&dive.start.search_area).area_m2() / 1e6,
             scatter_m: dive.start.scatter_m,
+            common_shift_m: dive.start.common_shift_m,
+            gone_chance: dive.gone_chance,
             fix_size_m: scoring.fix_size_m,
             required_fix_m: scoring.required_fix_m,
             segment_m: scoring.segment_m,

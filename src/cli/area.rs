@@ -5,7 +5,8 @@ use std::path::Path;
 use anyhow::{Context, Result, bail};
 
 use super::args::Common;
-use super::run::{Exit, OutputFile, read, undecided_runs, write};
+use super::output::{FileNames, OutputFile};
+use super::run::{Exit, read, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
 use crate::dive::AreaOptions;
@@ -14,19 +15,22 @@ use crate::render::{self, AreaChart, ChartSize};
 use crate::report::AreaReport;
 
 /// Files that `area` writes.
-const FILES: [&str; 5] = ["area.json", "area.csv", "area-worst.png", "area-best.png", "area-share.png"];
+pub(super) const FILES: FileNames = FileNames {
+    always: &["area.json", "area.csv", "area-worst.png", "area-best.png", "area-share.png"],
+    on_earth: &[],
+};
 
 /// The files of an area map.
 pub(super) fn files(report: &AreaReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
     let chart = |chart| render::area_png(report, chart, size);
-    let bytes = [
+    let bytes = vec![
         AreaJson.bytes(report)?,
         AreaCsv.bytes(report)?,
         chart(AreaChart::Worst)?,
         chart(AreaChart::Best)?,
         chart(AreaChart::Share)?,
     ];
-    Ok(FILES.into_iter().zip(bytes).collect())
+    Ok(FILES.with(bytes))
 }
 
 /// What `area` was asked beyond the dive file.
@@ -64,14 +68,12 @@ pub(super) fn area(path: &Path, asked: &AreaRequest<'_>, common: &Common) -> Res
     options.longest_run_m = asked.longest_run_m.unwrap_or(options.longest_run_m);
     let setup = Setup::new(&dive);
     let starts = starts(&setup, &options)?;
-    if let Some(out) = asked.out {
-        export::prepare(out, &FILES, common.force)?;
-    }
+    FILES.prepare(asked.out, &dive.frame, common)?;
     let bar = progress_bar_over(starts, "runs", common.quiet);
     let report = assess::area(&setup, &options, &|count| bar.inc(count as u64));
     bar.finish_and_clear();
     if let Some(out) = asked.out {
-        write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
     }
     let text = if common.json { AreaJson.bytes(&report)? } else { export::area_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;

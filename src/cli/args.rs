@@ -71,11 +71,12 @@ pub enum Command {
     ///
     /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors
     /// are solved from an unknown start, and the distance until the position is unambiguous is counted. With --out,
-    /// writes lines.json, lines.csv and lines.png.
+    /// writes lines.json, lines.csv and lines.png; and, where the map is tied to the Earth, lines.geojson and
+    /// recommended.gpx (the first-ranked line as a route).
     Lines {
         /// The dive file (TOML)
         dive: PathBuf,
-        /// Folder for lines.json, lines.csv and lines.png (made if missing); without it nothing is written
+        /// Folder for the files (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
         /// Also mark the segments that run over remap regions (runs the analysis of `remap`, which takes longer)

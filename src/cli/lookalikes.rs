@@ -5,21 +5,23 @@ use std::path::Path;
 use anyhow::{Context, Result};
 
 use super::args::Common;
-use super::run::{Exit, OutputFile, read, warning, write};
+use super::output::{FileNames, OutputFile};
+use super::run::{Exit, read, warning};
 use super::terminal::{print_notices, print_result};
 use crate::alias::{self, LookAlikeRequest};
 use crate::assess::Setup;
 use crate::export::{self, Exporter, LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson};
-use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::{LinesReport, LookAlikesReport};
 
 /// Most dangerous look-alikes that `lines` marks: one digit each, so that the chart can be read.
 const MARKED: usize = 9;
 
-/// Files that `lookalikes` writes; the last one only when the map is on the Earth.
-const FILES: [&str; 5] =
-    ["lookalikes.json", "lookalikes.csv", "lookalikes.png", "lookalikes-panels.png", "lookalikes.geojson"];
+/// Files that `lookalikes` writes.
+pub(super) const FILES: FileNames = FileNames {
+    always: &["lookalikes.json", "lookalikes.csv", "lookalikes.png", "lookalikes-panels.png"],
+    on_earth: &["lookalikes.geojson"],
+};
 
 pub(super) fn lookalikes(
     path: &Path,
@@ -29,17 +31,10 @@ pub(super) fn lookalikes(
 ) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
-    if let Some(out) = out {
-        let left_out = usize::from(dive.frame.is_local());
-        export::prepare(out, &FILES[..FILES.len() - left_out], common.force)?;
-    }
+    FILES.prepare(out, &dive.frame, common)?;
     let report = found(&Setup::new(&dive), request);
     if let Some(out) = out {
-        if dive.frame.is_local() {
-            let text = "lookalikes.geojson is not written: GeoJSON holds latitude and longitude, and this map is in local metres".to_owned();
-            print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
-        }
-        write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
     }
     let text = if common.json {
         LookAlikesJson.bytes(&report)?
@@ -58,10 +53,10 @@ pub(super) fn files(report: &LookAlikesReport, size: &ChartSize) -> Result<Vec<O
         render::lookalikes_png(report, size)?,
         render::lookalike_panels_png(report, size)?,
     ];
-    if !report.frame.is_local() {
+    if !report.provenance.frame.is_local() {
         bytes.push(LookAlikesGeoJson.bytes(report)?);
     }
-    Ok(FILES.into_iter().zip(bytes).collect())
+    Ok(FILES.with(bytes))
 }
 
 /// The exit code of `lookalikes`, with the reason on standard error.

@@ -5,6 +5,7 @@
 mod area;
 mod args;
 mod lookalikes;
+mod output;
 mod remap;
 mod run;
 mod terminal;

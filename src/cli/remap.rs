@@ -6,7 +6,8 @@ use anyhow::{Context, Result, bail};
 use indicatif::ProgressBar;
 
 use super::args::Common;
-use super::run::{Exit, OutputFile, read, undecided_runs, write};
+use super::output::{FileNames, OutputFile};
+use super::run::{Exit, read, undecided_runs};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
@@ -14,17 +15,16 @@ use crate::render::{self, ChartSize};
 use crate::report::{LinesReport, RemapReport};
 
 /// Files that `remap` writes.
-const FILES: [&str; 4] = ["remap.json", "remap.csv", "remap.geojson", "remap.png"];
+pub(super) const FILES: FileNames =
+    FileNames { always: &["remap.json", "remap.csv", "remap.png"], on_earth: &["remap.geojson"] };
 
 /// The files of the remap analysis.
 pub(super) fn files(report: &RemapReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
-    let bytes = [
-        RemapJson.bytes(report)?,
-        RemapCsv.bytes(report)?,
-        RemapGeoJson.bytes(report)?,
-        render::remap_png(report, size)?,
-    ];
-    Ok(FILES.into_iter().zip(bytes).collect())
+    let mut bytes = vec![RemapJson.bytes(report)?, RemapCsv.bytes(report)?, render::remap_png(report, size)?];
+    if !report.provenance.frame.is_local() {
+        bytes.push(RemapGeoJson.bytes(report)?);
+    }
+    Ok(FILES.with(bytes))
 }
 
 pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
@@ -32,12 +32,10 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
     let setup = Setup::new(&dive);
     refuse_huge(&setup)?;
-    if let Some(out) = out {
-        export::prepare(out, &FILES, common.force)?;
-    }
+    FILES.prepare(out, &dive.frame, common)?;
     let report = analyse(&setup, &runs_bar(common.quiet));
     if let Some(out) = out {
-        write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
     }
     let text =
         if common.json { RemapJson.bytes(&report)? } else { export::remap_table(&report).into_bytes() };

@@ -1,6 +1,6 @@
 //! Runs a command.
 
-use std::path::{Path, PathBuf};
+use std::path::Path;
 
 use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
@@ -8,12 +8,13 @@ use clap::{CommandFactory, Parser};
 use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::lookalikes::{lookalikes, mark_look_alikes};
+use super::output::{FileNames, OutputFile};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
-use crate::export::{self, Exporter, LinesCsv, LinesJson, TraceJson};
+use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::LinesReport;
@@ -119,7 +120,10 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
 }
 
 /// Files that `lines` writes.
-const LINES_FILES: [&str; 3] = ["lines.json", "lines.csv", "lines.png"];
+pub(super) const LINES_FILES: FileNames = FileNames {
+    always: &["lines.json", "lines.csv", "lines.png"],
+    on_earth: &["lines.geojson", "recommended.gpx"],
+};
 
 /// What `lines` was asked beyond the dive file.
 struct LinesOptions<'a> {
@@ -144,9 +148,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         refuse_huge(&setup)?;
     }
-    if let Some(out) = asked.out {
-        export::prepare(out, &LINES_FILES, common.force)?;
-    }
+    LINES_FILES.prepare(asked.out, &dive.frame, common)?;
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
@@ -155,7 +157,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         mark_remap_regions(&setup, &mut report, common);
     }
     if let Some(out) = asked.out {
-        write(out, &lines_files(&report, &ChartSize::default())?, common)?;
+        LINES_FILES.write(out, &lines_files(&report, &ChartSize::default())?, common)?;
     }
     let text =
         if common.json { LinesJson.bytes(&report)? } else { export::lines_table(&report).into_bytes() };
@@ -165,8 +167,12 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
 
 /// The files of scored lines.
 pub(super) fn lines_files(report: &LinesReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
-    let bytes = [LinesJson.bytes(report)?, LinesCsv.bytes(report)?, render::lines_png(report, size)?];
-    Ok(LINES_FILES.into_iter().zip(bytes).collect())
+    let mut bytes = vec![LinesJson.bytes(report)?, LinesCsv.bytes(report)?, render::lines_png(report, size)?];
+    if !report.provenance.frame.is_local() {
+        bytes.push(LinesGeoJson.bytes(report)?);
+        bytes.push(RecommendedGpx.bytes(report)?);
+    }
+    Ok(LINES_FILES.with(bytes))
 }
 
 /// The exit code of `lines`, with the reason on standard error.
@@ -207,21 +213,20 @@ pub(super) fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Co
     Exit::Done
 }
 
+/// Files that `trace` writes.
+const TRACE_FILES: FileNames = FileNames { always: &["trace.json", "trace.png"], on_earth: &[] };
+
 fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Common) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
-    if let Some(out) = out {
-        export::prepare(out, &["trace.json", "trace.png"], common.force)?;
-    }
+    TRACE_FILES.prepare(out, &dive.frame, common)?;
     let report = assess::trace(&Setup::new(&dive), request)?;
-    let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
-        let files =
-            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &ChartSize::default())?)];
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &files.map(|(name, _)| name), common);
+        let bytes = vec![TraceJson.bytes(&report)?, render::trace_png(&report, &ChartSize::default())?];
+        TRACE_FILES.write(out, &TRACE_FILES.with(bytes), common)?;
     }
-    let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
+    let text =
+        if common.json { TraceJson.bytes(&report)? } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.contradiction.is_some() {
         let text = "no position explains the detections: an error bound, the map or the stray budget does not hold. With \
@@ -244,22 +249,4 @@ pub(super) fn undecided_runs(common: &Common) -> Exit {
 
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
-}
-
-/// Name and bytes of one output file.
-pub(super) type OutputFile = (&'static str, Vec<u8>);
-
-/// Writes the files of a command and says so.
-pub(super) fn write(out: &Path, files: &[OutputFile], common: &Common) -> Result<()> {
-    export::write_all(out, files, common.force)?;
-    let names: Vec<&str> = files.iter().map(|(name, _)| *name).collect();
-    say_written(out, &names, common);
-    Ok(())
-}
-
-/// Names the files written.
-pub(super) fn say_written(out: &Path, names: &[&str], common: &Common) {
-    let paths: Vec<PathBuf> = names.iter().map(|name| out.join(name)).collect();
-    let text = paths.iter().map(|path| path.display().to_string()).collect::<Vec<_>>().join(", ");
-    print_notices([&Notice { file: None, text: format!("wrote {text}"), is_warning: false }], common.quiet);
 }

@@ -57,6 +57,10 @@ pub trait Errors {
     fn heading_bias(&self) -> f64;
     /// True position of a landmark in its box, each component in [−1, 1].
     fn landmark(&self, number: usize) -> Vector2<f64>;
+    /// Whether a landmark is gone throughout the dive, when each is with this chance. Never, unless a source draws it.
+    fn is_gone(&self, _number: usize, _chance: f64) -> bool {
+        false
+    }
     /// Errors of a leg.
     fn leg(&self, number: usize) -> LegErrors;
     /// Errors of a sighting. `way` tells the two ways to see one landmark apart (port or starboard, entering or
@@ -107,6 +111,7 @@ enum Purpose {
     Sighting = 4,
     Stray = 5,
     Decoy = 6,
+    Gone = 7,
 }
 
 /// Errors drawn from a seeded generator, in one of the shapes of [`ErrorShape`].
@@ -205,6 +210,11 @@ impl Errors for DrawnErrors {
     fn landmark(&self, number: usize) -> Vector2<f64> {
         let mut rng = self.stream(Purpose::Landmark, number as u64);
         Vector2::new(self.fraction(&mut rng), self.fraction(&mut rng))
+    }
+
+    fn is_gone(&self, number: usize, chance: f64) -> bool {
+        // Not asked for at chance 0, so that dives without it stay as they are.
+        chance > 0.0 && self.stream(Purpose::Gone, number as u64).random_range(0.0..1.0) < chance
     }
 
     fn leg(&self, number: usize) -> LegErrors {

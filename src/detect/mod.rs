@@ -97,8 +97,10 @@ pub struct Scene<'a> {
     pub dead_reckoning: DeadReckoning,
     /// The sonar.
     pub sonar: Sonar,
-    /// Descent scatter radius, metres.
+    /// How far the start may lie from its planned place on the map, metres.
     pub scatter_m: f64,
+    /// Chance that a landmark is gone in a dive, from 0 to below 1.
+    pub gone_chance: f64,
 }
 
 /// Runs `plan` with `errors`; `marks_m` are distances along the track to mark in the log.

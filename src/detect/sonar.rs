@@ -15,6 +15,9 @@ use crate::vehicle::SonarKind;
 pub(super) fn sightings(scene: &Scene<'_>, legs: &[TrueLeg], errors: &impl Errors) -> Vec<Stop> {
     let mut stops = Vec::new();
     for number in landmarks_near(scene, legs) {
+        if errors.is_gone(number, scene.gone_chance) {
+            continue;
+        }
         let landmark = &scene.landmarks[number];
         let f = errors.landmark(number);
         let position = vector(landmark.position)

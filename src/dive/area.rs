@@ -140,6 +140,24 @@ pub(super) fn read(
     Some(corners)
 }
 
+/// The corners of an area that holds every point within `by_m` of the convex hull of `corners`; `corners` themselves when
+/// `by_m` is 0.
+///
+/// *Guarantee.* The hull of the corners, each moved by ±`by_m` (rounded outward) along both axes, is the Minkowski sum of
+/// their hull and a square, and the square holds the disc.
+pub(super) fn grown(corners: Vec<LocalPoint>, by_m: f64) -> Vec<LocalPoint> {
+    if by_m <= 0.0 {
+        return corners;
+    }
+    let moved = |p: &LocalPoint| {
+        let (west, east) = (down(p.east_m - by_m), up(p.east_m + by_m));
+        let (south, north) = (down(p.north_m - by_m), up(p.north_m + by_m));
+        [(west, south), (east, south), (east, north), (west, north)].map(|(e, n)| LocalPoint::new(e, n))
+    };
+    let all: Vec<LocalPoint> = corners.iter().flat_map(moved).collect();
+    convex_hull(&all)
+}
+
 fn convex_hull(corners: &[LocalPoint]) -> Vec<LocalPoint> {
     let ring: Vec<Coord<f64>> = corners.iter().map(|p| Coord { x: p.east_m, y: p.north_m }).collect();
     let hull = Polygon::new(LineString::new(ring), vec![]).convex_hull();

@@ -1,15 +1,19 @@
 //! Checks of the whole: identifiers, uncertainty, lines, and whether map, lines and sonar fit together.
 
-use std::collections::BTreeMap;
+use std::collections::{BTreeMap, BTreeSet};
 
 use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
+use time::Date;
 
+use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources, bounding};
 use crate::frame::LocalPoint;
+use crate::input::InputText;
 use crate::interval::larger;
 use crate::map::Landmark;
+use crate::map::read::LandmarkFile;
 use crate::problem::{Findings, Problem};
 use crate::track::Line;
 use crate::units::{bearing_words, count_words, length_words};
@@ -20,10 +24,14 @@ const SAME_POINT_M: f64 = 1e-3;
 /// Most places named in one message.
 const NAMED: usize = 10;
 
-fn joined(mut names: Vec<String>) -> String {
+fn joined(names: Vec<String>) -> String {
+    joined_with(names, ", ")
+}
+
+fn joined_with(mut names: Vec<String>, between: &str) -> String {
     let more = names.len().saturating_sub(NAMED);
     names.truncate(NAMED);
-    let list = names.join(", ");
+    let list = names.join(between);
     if more > 0 { format!("{list} and {more} more") } else { list }
 }
 
@@ -217,6 +225,57 @@ pub(super) fn meet(site: &Site, lines: &[Line], sonar: &Sonar, findings: &mut Fi
     );
 }
 
+/// Leaves out landmarks surveyed before `oldest`. They may still be there, so the warning says what that means.
+pub(super) fn leave_out_old(
+    document: &Document<'_>,
+    file: &mut LandmarkFile,
+    oldest: Date,
+    input: Option<&InputText>,
+    findings: &mut Findings,
+) {
+    let all = file.rows.len();
+    let undated = file.rows.iter().filter(|row| row.surveyed.is_none()).count();
+    if undated == all {
+        let what = "has no effect: no landmark has a survey date of its own (column or property surveyed)";
+        findings
+            .problem(document.problem("map", "oldest_survey", what).advice("remove it, or add the dates"));
+        return;
+    }
+    let (old, kept): (Vec<_>, Vec<_>) = std::mem::take(&mut file.rows)
+        .into_iter()
+        .partition(|row| row.surveyed.is_some_and(|date| date < oldest));
+    file.rows = kept;
+    let name = input.map(|input| input.name.as_path());
+    if !old.is_empty() {
+        findings.warn(
+            name,
+            format!(
+                "{} of {all} surveyed before {oldest} left out: {}; where they are still there, each detection of one is \
+                 a stray, so allow for them in budget.strays",
+                count_words(old.len(), "landmark"),
+                joined(old.iter().map(|row| row.label()).collect())
+            ),
+        );
+    }
+    if undated > 0 {
+        findings.warn(name, format!("{} without a survey date kept", count_words(undated, "landmark")));
+    }
+}
+
+/// Says what a common shift of the map means.
+pub(super) fn common_shift(shift_m: f64, findings: &mut Findings) {
+    if shift_m > 0.0 {
+        findings.inform(
+            None,
+            format!(
+                "common shift of the whole map of up to {}: it cannot be found from relative positions, so no fix removes it; \
+                 add it to every absolute position; descent scatter and search area are widened by it",
+                length_words(shift_m)
+            ),
+        );
+    }
+}
+
 /// Says what few, coincident or overlapping landmarks mean.
 pub(super) fn landmarks(sources: &Sources, landmarks: &[Landmark], findings: &mut Findings) {
     let file = Some(sources.landmark_file.as_path());
@@ -251,27 +310,59 @@ pub(super) fn landmarks(sources: &Sources, landmarks: &[Landmark], findings: &mu
             .iter()
             .enumerate()
             .map(|(i, l)| {
-                let (e, n) = (l.position.east_m, l.position.north_m);
-                let (we, wn) = (l.half_width_east_m, l.half_width_north_m);
-                GeomWithData::new(Rectangle::from_corners([e - we, n - wn], [e + we, n + wn]), i)
+                let (low, high) = corners_of(l);
+                GeomWithData::new(Rectangle::from_corners(low, high), i)
             })
             .collect(),
     );
+    let meeting = |i: usize| {
+        let (low, high) = corners_of(&landmarks[i]);
+        tree.locate_in_envelope_intersecting(AABB::from_corners(low, high)).map(|b| b.data)
+    };
     // Two hits are enough to know (the box always meets itself), so dense maps cost no more than sparse ones.
-    let overlapping = tree
-        .iter()
-        .filter(|b| {
-            let envelope = AABB::from_corners(b.geom().lower(), b.geom().upper());
-            tree.locate_in_envelope_intersecting(envelope).take(2).count() > 1
-        })
-        .count();
-    if overlapping > 0 {
-        findings.warn(
-            file,
-            format!(
-                "{} whose box overlaps another's: they cannot be told apart by position; kept",
-                count_words(overlapping, "landmark")
-            ),
-        );
+    let overlapping: Vec<usize> = (0..landmarks.len()).filter(|&i| meeting(i).take(2).count() > 1).collect();
+    if overlapping.is_empty() {
+        return;
     }
+    let mut text = format!(
+        "{} whose box overlaps another's: they cannot be told apart by position; kept",
+        count_words(overlapping.len(), "landmark")
+    );
+    if overlapping.len() <= NAMED_OVERLAPS {
+        let clusters = clusters(&overlapping, meeting);
+        let names = |cluster: &Vec<usize>| {
+            cluster.iter().map(|&i| landmarks[i].id.as_str()).collect::<Vec<_>>().join(" + ")
+        };
+        text += &format!("; inseparable: {}", joined_with(clusters.iter().map(names).collect(), "; "));
+    }
+    findings.warn(file, text);
+}
+
+/// Most overlapping landmarks whose clusters are worked out and named; on denser maps names would not help.
+const NAMED_OVERLAPS: usize = 1000;
+
+fn corners_of(landmark: &Landmark) -> ([f64; 2], [f64; 2]) {
+    let (e, n) = (landmark.position.east_m, landmark.position.north_m);
+    let (we, wn) = (landmark.half_width_east_m, landmark.half_width_north_m);
+    ([e - we, n - wn], [e + we, n + wn])
+}
+
+/// Groups of landmarks that hang together by overlapping boxes, each in ascending order.
+fn clusters<I: Iterator<Item = usize>>(
+    overlapping: &[usize],
+    meeting: impl Fn(usize) -> I,
+) -> Vec<Vec<usize>> {
+    let mut left: BTreeSet<usize> = overlapping.iter().copied().collect();
+    let mut clusters = Vec::new();
+    while let Some(first) = left.pop_first() {
+        let mut cluster = vec![first];
+        let mut next = 0;
+        while let Some(&member) = cluster.get(next) {
+            cluster.extend(meeting(member).filter(|other| left.remove(other)));
+            next += 1;
+        }
+        cluster.sort_unstable();
+        clusters.push(cluster);
+    }
+    clusters
 }

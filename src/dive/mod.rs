@@ -2,6 +2,7 @@
 
 mod area;
 mod checks;
+mod improve;
 mod read;
 mod section;
 mod settings;
@@ -9,11 +10,14 @@ mod site;
 mod swath;
 mod widen;
 
+pub use improve::ErrorBound;
+
 use std::path::PathBuf;
 
 use time::Date;
 
 use crate::frame::{Frame, LocalPoint};
+use crate::interval::up;
 use crate::map::Landmark;
 use crate::problem::Notice;
 use crate::track::Line;
@@ -54,6 +58,19 @@ pub struct Start {
     pub search_area: Vec<LocalPoint>,
     /// Radius of the descent scatter about the planned start of a line, metres, at least 0.
     pub scatter_m: f64,
+    /// Largest common shift of the whole map against the Earth, metres, at least 0.
+    pub common_shift_m: f64,
+}
+
+impl Start {
+    /// How far the vehicle may lie from its planned place *on the map*: descent scatter and common shift together, metres.
+    ///
+    /// *Guarantee.* Rounded up. Seen from a map that is shifted as a whole, every place on the Earth is shifted the other
+    /// way; relative positions do not change, so a shift acts as more scatter and as nothing else. `search_area` has
+    /// grown by the shift already.
+    pub fn scatter_on_map_m(&self) -> f64 {
+        if self.common_shift_m > 0.0 { up(self.scatter_m + self.common_shift_m) } else { self.scatter_m }
+    }
 }
 
 /// What may go wrong with detections in one run and still be covered.
@@ -114,6 +131,15 @@ pub struct RemapOptions {
     pub gain_regions: usize,
 }
 
+/// What `suggest` lists.
+#[derive(Clone, Copy, Debug, PartialEq, serde::Serialize)]
+pub struct SuggestOptions {
+    /// Most suggestions to list, at least 1.
+    pub listed: usize,
+    /// How far an exported line goes on after the guaranteed fix, metres, at least 0.
+    pub lead_m: f64,
+}
+
 /// One input file and the fingerprint of its bytes.
 #[derive(Clone, Debug, PartialEq, serde::Serialize)]
 pub struct InputFile {
@@ -140,6 +166,8 @@ pub struct Dive {
     pub landmarks: Vec<Landmark>,
     /// How landmark uncertainty was declared and turned into bounds, in words with the factor used.
     pub uncertainty_statement: String,
+    /// Chance that a landmark of the map is gone, for simulated dives, from 0 to below 1.
+    pub gone_chance: f64,
     /// The candidate lines.
     pub lines: Vec<Line>,
     /// How the vehicle moves.
@@ -156,6 +184,10 @@ pub struct Dive {
     pub area: AreaOptions,
     /// How the remap analysis judges cells.
     pub remap: RemapOptions,
+    /// What `suggest` lists.
+    pub suggest: SuggestOptions,
+    /// Factor by which `sensitivity` multiplies each error bound, at least 0 and below 1.
+    pub improvement_factor: f64,
     /// Slices of the heading-bias interval that the solver takes one by one, at least 1.
     pub heading_slices: usize,
     /// Detections that may be strays and landmarks that may be missed.
@@ -166,4 +198,13 @@ pub struct Dive {
     pub inputs: Vec<InputFile>,
     /// What was understood and what to watch, for `check` and for standard error.
     pub notices: Vec<Notice>,
+    /// The bounds before they were widened for the grid.
+    stated: improve::Stated,
+}
+
+impl Dive {
+    /// Whether a landmark that is certainly inside the swath is certain to be detected.
+    pub fn is_detection_certain(&self) -> bool {
+        self.sonar.detection_chance >= 1.0 && self.gone_chance <= 0.0
+    }
 }

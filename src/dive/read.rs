@@ -2,6 +2,7 @@
 
 use std::path::{Path, PathBuf};
 
+use super::improve::Stated;
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
@@ -55,10 +56,13 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         return None;
     }
     checks::meet(&site, &lines, &sonar, findings);
-    let margin_m = sonar.reach_m() + scatter_m + 2.0 * vehicle.turn_radius_m;
+    let start = Start { search_area: Vec::new(), scatter_m, common_shift_m: settings.common_shift_m };
+    let margin_m = sonar.reach_m() + start.scatter_on_map_m() + 2.0 * vehicle.turn_radius_m;
     let search_area = match &area {
         Some((_, input)) => {
-            area::read(input, settings.area_crs.as_ref(), &site.frame, &lines, scatter_m, findings)?
+            let stated =
+                area::read(input, settings.area_crs.as_ref(), &site.frame, &lines, scatter_m, findings)?;
+            area::grown(stated, settings.common_shift_m)
         }
         None => area::around(&site, &lines, margin_m, findings)?,
     };
@@ -66,6 +70,7 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         return None;
     }
 
+    checks::common_shift(settings.common_shift_m, findings);
     let local = Crs::Local;
     let declared = (settings.map_crs == Some(Crs::Local)).then_some(&local);
     let nothing_seen_inside = match &complete {
@@ -89,7 +94,8 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
             half_width_north_m: grid.half_width_m(north),
         })
         .collect();
-    let dead_reckoning = grid.dead_reckoning(settings.dead_reckoning?);
+    let stated = Stated { grid, dead_reckoning: settings.dead_reckoning?, sonar };
+    let dead_reckoning = grid.dead_reckoning(stated.dead_reckoning);
     let widened_sonar = grid.sonar(sonar);
 
     let uncertainty_statement = match settings.declared {
@@ -115,19 +121,23 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         frame: site.frame,
         landmarks,
         uncertainty_statement,
+        gone_chance: settings.gone_chance,
         lines,
         vehicle,
         dead_reckoning,
         sonar: widened_sonar,
-        start: Start { search_area, scatter_m },
+        start: Start { search_area, ..start },
         scoring: settings.scoring?,
         area: settings.area?,
         remap: settings.remap?,
+        suggest: settings.suggest?,
+        improvement_factor: settings.improvement_factor?,
         heading_slices: settings.heading_slices?,
         budget: settings.budget?,
         nothing_seen_inside,
         inputs,
         notices: std::mem::take(&mut findings.notices),
+        stated,
     })
 }
 
@@ -156,10 +166,13 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
         decimal_comma: settings.map_decimal_comma,
         skip_bad_rows: settings.skip_bad_rows,
     };
-    let landmarks = match (&landmark_input, &settings.map_crs) {
+    let mut landmarks = match (&landmark_input, &settings.map_crs) {
         (Some(input), Some(crs)) => map::read::read(input, crs, map_options, findings),
         _ => None,
     };
+    if let (Some(file), Some(oldest)) = (&mut landmarks, settings.oldest_survey) {
+        checks::leave_out_old(&document, file, oldest, landmark_input.as_ref(), findings);
+    }
     let line_options = track::read::ReadOptions {
         declared: settings.lines_crs.as_ref(),
         of_map: settings.map_crs.as_ref(),

@@ -6,7 +6,6 @@
 use std::path::{Path, PathBuf};
 
 use time::Date;
-use time::format_description::well_known::Iso8601;
 use toml::Spanned;
 use toml::de::{DeTable, DeValue};
 
@@ -14,6 +13,7 @@ use crate::bounds::{self, KEYS, Key, Kind, Need};
 use crate::frame::Crs;
 use crate::input::line_at;
 use crate::problem::{Findings, Problem};
+use crate::units;
 
 /// The parsed dive file.
 pub(super) struct Document<'a> {
@@ -295,7 +295,7 @@ impl<'a> Document<'a> {
             DeValue::Datetime(date) => date.to_string(),
             _ => String::new(),
         };
-        let date = Date::parse(&text, &Iso8601::DATE).ok();
+        let date = units::parse_date(&text);
         if date.is_none() {
             self.wrong(key, value, "is not a date", findings);
         }

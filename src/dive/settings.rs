@@ -5,7 +5,7 @@ use std::path::PathBuf;
 use time::Date;
 
 use super::section::Document;
-use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring};
+use super::{AreaOptions, Budget, ErrorShape, RankBy, RemapOptions, Scoring, SuggestOptions};
 use crate::frame::{Crs, Frame};
 use crate::map::uncertainty::Declared;
 use crate::problem::Findings;
@@ -23,6 +23,9 @@ pub(super) struct Settings {
     pub declared: Option<Declared>,
     pub uncertainty_m: Option<f64>,
     pub seabed_depth_m: f64,
+    pub oldest_survey: Option<Date>,
+    pub gone_chance: f64,
+    pub common_shift_m: f64,
     pub map_decimal_comma: bool,
     pub skip_bad_rows: bool,
     pub line_files: Vec<PathBuf>,
@@ -40,6 +43,8 @@ pub(super) struct Settings {
     pub scoring: Option<Scoring>,
     pub area: Option<AreaOptions>,
     pub remap: Option<RemapOptions>,
+    pub suggest: Option<SuggestOptions>,
+    pub improvement_factor: Option<f64>,
     pub heading_slices: Option<usize>,
     pub budget: Option<Budget>,
 }
@@ -59,6 +64,9 @@ impl Settings {
                 doc.problem("map", "seabed_depth_m", "has no effect with local metres").advice("remove it"),
             );
         }
+        let oldest_survey = doc.date("map", "oldest_survey", f);
+        let gone_chance = doc.number("map", "gone_chance", f).unwrap_or(0.0);
+        let common_shift_m = doc.number("map", "common_shift_m", f).unwrap_or(0.0);
         let map_decimal_comma = doc.flag("map", "decimal_comma", f);
         let skip_bad_rows = doc.flag("map", "skip_bad_rows", f);
         let line_files =
@@ -77,10 +85,12 @@ impl Settings {
         }
         let scatter_m = doc.number("start", "scatter_m", f);
         let complete_inside = doc.file("map", "complete_inside", f);
-        let nothing_seen = nothing_seen(doc, sonar.as_ref(), f);
+        let nothing_seen = nothing_seen(doc, sonar.as_ref(), gone_chance, f);
         let scoring = scoring(doc, f);
         let area = area(doc, f);
         let remap = remap(doc, f);
+        let suggest = suggest(doc, f);
+        let improvement_factor = doc.number("sensitivity", "factor", f);
         let heading_slices = match doc.number("dead_reckoning", "heading_slices", f) {
             Some(given) => Some(given as usize),
             None => dead_reckoning.map(default_slices),
@@ -96,6 +106,9 @@ impl Settings {
             declared,
             uncertainty_m,
             seabed_depth_m,
+            oldest_survey,
+            gone_chance,
+            common_shift_m,
             map_decimal_comma,
             skip_bad_rows,
             line_files,
@@ -113,6 +126,8 @@ impl Settings {
             scoring,
             area,
             remap,
+            suggest,
+            improvement_factor,
             heading_slices,
             budget,
         }
@@ -304,7 +319,7 @@ fn consistent_sonar(doc: &Document<'_>, sonar: &Sonar, f: &mut Findings) -> bool
 }
 
 /// Whether "nothing seen" counts as evidence: only with side-looking sonar, certain detection and a complete map.
-fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> bool {
+fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, gone_chance: f64, f: &mut Findings) -> bool {
     let wanted = doc.flag("budget", "nothing_seen", f);
     let has_map = doc.has("map", "complete_inside");
     if has_map && !wanted {
@@ -323,6 +338,12 @@ fn nothing_seen(doc: &Document<'_>, sonar: Option<&Sonar>, f: &mut Findings) -> 
         refuse(
             "needs map.complete_inside",
             "name the polygon inside which every mapped landmark is certain to exist",
+        );
+    }
+    if gone_chance > 0.0 {
+        refuse(
+            "needs a map on which every landmark is still there, but map.gone_chance is above 0",
+            "leave nothing_seen out",
         );
     }
     if let Some(sonar) = sonar {
@@ -383,6 +404,12 @@ fn remap(doc: &Document<'_>, f: &mut Findings) -> Option<RemapOptions> {
         resurvey_half_width_m: half_width?,
         gain_regions: regions? as usize,
     })
+}
+
+fn suggest(doc: &Document<'_>, f: &mut Findings) -> Option<SuggestOptions> {
+    let listed = doc.number("suggest", "listed", f);
+    let lead = doc.number("suggest", "lead_m", f);
+    Some(SuggestOptions { listed: listed? as usize, lead_m: lead? })
 }
 
 fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {

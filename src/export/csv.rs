@@ -1,5 +1,9 @@
-//! `lines.csv`: one row for each segment, units in the column names, an empty field where there is no value.
+//! `lines.csv` and `lines.geojson`: one row or feature for each segment, units in the names of columns and properties, an
+//! empty field or null where there is no value.
 
+use ::geojson::{Feature, JsonObject, JsonValue};
+
+use super::geojson::{GeoJsonFile, feature};
 use super::{ExportError, Exporter};
 use crate::report::{Estimate, LineReport, LinesReport, SegmentReport};
 
@@ -66,29 +70,11 @@ impl Exporter for LinesCsv {
     }
 
     fn bytes(&self, report: &LinesReport) -> Result<Vec<u8>, ExportError> {
-        let segments = || report.lines.iter().flat_map(|line| line.segments.iter().map(move |s| (line, s)));
-        let with_guaranteed = segments().any(|(_, segment)| segment.guaranteed.is_some());
         let mut writer = csv::Writer::from_writer(Vec::new());
         let format = |error: csv::Error| ExportError::Format { file: "lines.csv", reason: error.to_string() };
-
-        let mut header = COLUMNS.to_vec();
-        if with_guaranteed {
-            header.extend(GUARANTEED_COLUMNS);
-        }
-        writer.write_record(header).map_err(format)?;
-        for (line, segment) in segments() {
-            let mut row = fields(report, line, segment);
-            if with_guaranteed {
-                let fix = segment.guaranteed.as_ref();
-                row.push(number(fix.and_then(|fix| fix.distance_m)));
-                row.push(number(fix.and_then(|fix| fix.lasting_m)));
-                row.push(fix.map(|fix| fix.certain_detections.to_string()).unwrap_or_default());
-                row.push(
-                    fix.and_then(|fix| fix.cause).map(|cause| cause.word().to_owned()).unwrap_or_default(),
-                );
-                row.push(fix.and_then(|fix| fix.reason.clone()).unwrap_or_default());
-            }
-            writer.write_record(row).map_err(format)?;
+        writer.write_record(columns(report)).map_err(format)?;
+        for (line, segment) in segments(report) {
+            writer.write_record(fields(report, line, segment).iter().map(Field::text)).map_err(format)?;
         }
         writer
             .into_inner()
@@ -96,22 +82,97 @@ impl Exporter for LinesCsv {
     }
 }
 
-/// The fields of one row, in the order of [`COLUMNS`].
-fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> Vec<String> {
+/// Writes `lines.geojson` (RFC 7946, WGS 84): one feature for each segment, its path along the planned track, with the
+/// columns of `lines.csv` as properties. Only for dives in a projected grid: the format has no local metres.
+#[derive(Clone, Copy, Debug, Default)]
+pub struct LinesGeoJson;
+
+impl Exporter for LinesGeoJson {
+    type Report = LinesReport;
+
+    fn file_name(&self) -> &'static str {
+        "lines.geojson"
+    }
+
+    fn bytes(&self, report: &LinesReport) -> Result<Vec<u8>, ExportError> {
+        let file = GeoJsonFile::new(self.file_name(), &report.provenance);
+        let columns = columns(report);
+        let features = segments(report).map(|(line, segment)| -> Result<Feature, ExportError> {
+            let fields = fields(report, line, segment).into_iter().map(Field::json);
+            let properties = columns.iter().map(|&name| name.to_owned()).zip(fields).collect();
+            Ok(feature(None, file.line(&segment.path)?, properties))
+        });
+        let features = features.collect::<Result<_, _>>()?;
+        let mut members = JsonObject::new();
+        if let Some(guarantee) = &report.guarantee {
+            members.insert("guarantee".into(), file.object(guarantee)?.into());
+        }
+        file.bytes(features, members)
+    }
+}
+
+fn segments(report: &LinesReport) -> impl Iterator<Item = (&LineReport, &SegmentReport)> {
+    report.lines.iter().flat_map(|line| line.segments.iter().map(move |segment| (line, segment)))
+}
+
+fn with_guaranteed(report: &LinesReport) -> bool {
+    segments(report).any(|(_, segment)| segment.guaranteed.is_some())
+}
+
+fn columns(report: &LinesReport) -> Vec<&'static str> {
+    let mut columns = COLUMNS.to_vec();
+    if with_guaranteed(report) {
+        columns.extend(GUARANTEED_COLUMNS);
+    }
+    columns
+}
+
+/// What stands in one column.
+enum Field {
+    Text(String),
+    Count(u64),
+    Number(Option<f64>),
+}
+
+impl Field {
+    /// As a table shows it. Numbers are the shortest text that reads back as the same number.
+    fn text(&self) -> String {
+        match self {
+            Self::Text(text) => text.clone(),
+            Self::Count(count) => count.to_string(),
+            Self::Number(value) => value.map(|value| value.to_string()).unwrap_or_default(),
+        }
+    }
+
+    /// As a property; an empty text is no value.
+    fn json(self) -> JsonValue {
+        match self {
+            Self::Text(text) if text.is_empty() => JsonValue::Null,
+            Self::Text(text) => text.into(),
+            Self::Count(count) => count.into(),
+            Self::Number(value) => value.into(),
+        }
+    }
+}
+
+/// What stands in the columns of a segment, in the order of [`columns`].
+fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> Vec<Field> {
     let fix = &segment.estimated;
     let (first, last) = (segment.path.first(), segment.path.last());
+    let count = |count: usize| Field::Count(count as u64);
+    let known = |value: f64| Field::Number(Some(value));
     let mut row = vec![
-        line.name.clone(),
-        line.rank.to_string(),
-        segment.number.to_string(),
-        segment.start_m.to_string(),
-        segment.end_m.to_string(),
-        number(first.map(|point| point.east_m)),
-        number(first.map(|point| point.north_m)),
-        number(last.map(|point| point.east_m)),
-        number(last.map(|point| point.north_m)),
-        segment.detections_ahead.to_string(),
-        fix.dives.to_string(),
+        Field::Text(line.name.clone()),
+        count(line.rank),
+        count(segment.number),
+        known(segment.start_m),
+        known(segment.end_m),
+        Field::Number(first.map(|point| point.east_m)),
+        Field::Number(first.map(|point| point.north_m)),
+        Field::Number(last.map(|point| point.east_m)),
+        Field::Number(last.map(|point| point.north_m)),
+        count(segment.detections_ahead),
+        count(fix.dives),
     ];
     let estimates = [
         fix.median_m,
@@ -122,28 +183,34 @@ fn fields(report: &LinesReport, line: &LineReport, segment: &SegmentReport) -> V
         fix.lasting_p95_m,
     ];
     row.extend(
-        estimates.into_iter().flat_map(|Estimate { value, low, high }| [value, low, high].map(number)),
+        estimates.into_iter().flat_map(|Estimate { value, low, high }| [value, low, high].map(Field::Number)),
     );
     row.extend([
-        fix.relapse_share.to_string(),
-        fix.contradiction_share.to_string(),
-        fix.wrong_fix_share.to_string(),
-        fix.undecided_share.to_string(),
-        report.parameters.required_fix_m.to_string(),
-        report.parameters.fix_size_m.to_string(),
-        report.provenance.seed.to_string(),
+        known(fix.relapse_share),
+        known(fix.contradiction_share),
+        known(fix.wrong_fix_share),
+        known(fix.undecided_share),
+        known(report.parameters.required_fix_m),
+        known(report.parameters.fix_size_m),
+        Field::Count(report.provenance.seed),
         numbers(&segment.look_alikes),
         numbers(&segment.remap_regions),
     ]);
+    if with_guaranteed(report) {
+        let fix = segment.guaranteed.as_ref();
+        let words = |text: Option<String>| Field::Text(text.unwrap_or_default());
+        row.extend([
+            Field::Number(fix.and_then(|fix| fix.distance_m)),
+            Field::Number(fix.and_then(|fix| fix.lasting_m)),
+            fix.map_or(Field::Number(None), |fix| count(fix.certain_detections)),
+            words(fix.and_then(|fix| fix.cause).map(|cause| cause.word().to_owned())),
+            words(fix.and_then(|fix| fix.reason.clone())),
+        ]);
+    }
     row
 }
 
 /// Numbers with blanks between.
-fn numbers(numbers: &[usize]) -> String {
-    numbers.iter().map(usize::to_string).collect::<Vec<_>>().join(" ")
-}
-
-/// The shortest text that reads back as the same number; empty for none.
-fn number(value: Option<f64>) -> String {
-    value.map(|value| value.to_string()).unwrap_or_default()
+fn numbers(numbers: &[usize]) -> Field {
+    Field::Text(numbers.iter().map(usize::to_string).collect::<Vec<_>>().join(" "))
 }

@@ -1,13 +1,14 @@
 //! `lookalikes.json`, `lookalikes.csv`, `lookalikes.geojson`, and the table for the terminal.
 
 use geo::{Area, ConvexHull, Coord, MultiPoint as Points};
-use geojson::{Feature, FeatureCollection, Geometry, GeometryValue, JsonObject, JsonValue, Position};
+use geojson::{GeometryValue, JsonObject, JsonValue};
 
+use super::geojson::{GeoJsonFile, feature};
 use super::json::pretty;
 use super::table::{add, metres, plain, printable};
 use super::{ExportError, Exporter};
 use crate::frame::LocalPoint;
-use crate::report::{LookAlike, LookAlikeKind, LookAlikesReport};
+use crate::report::{CONTACT_POSITIONS, LookAlike, LookAlikeKind, LookAlikesReport};
 
 /// Writes `lookalikes.json`.
 #[derive(Clone, Copy, Debug, Default)]
@@ -163,34 +164,22 @@ impl Exporter for LookAlikesGeoJson {
     }
 
     fn bytes(&self, report: &LookAlikesReport) -> Result<Vec<u8>, ExportError> {
+        let file = GeoJsonFile::new(self.file_name(), &report.provenance);
         let mut features = Vec::new();
         for entry in &report.look_alikes {
             let grounds = grounds(report, entry);
             let middles: Vec<LocalPoint> = grounds.iter().filter_map(|ground| mean(ground)).collect();
             for (place, ground) in grounds.iter().enumerate() {
-                let coordinates = positions(report, ground)?;
                 let part = |what: &str| properties(entry, &format!("{what} of ground {}", place + 1));
-                features.push(feature(GeometryValue::MultiPoint { coordinates }, part("landmarks")));
-                features.push(feature(hull(report, ground)?, part("hull")));
+                features.push(feature(None, file.points(ground)?, part("landmarks")));
+                features.push(feature(None, hull(&file, ground)?, part("hull")));
             }
-            let coordinates = positions(report, &middles)?;
-            features.push(feature(GeometryValue::LineString { coordinates }, properties(entry, "offset")));
+            features.push(feature(None, file.line(&middles)?, properties(entry, "offset")));
         }
         let mut members = JsonObject::new();
-        members.insert("schema".into(), JsonValue::from(report.provenance.schema));
-        members.insert("schema_version".into(), JsonValue::from(report.provenance.schema_version));
-        members.insert("dive".into(), JsonValue::from(report.provenance.dive.clone()));
-        members.insert("caution".into(), JsonValue::from(report.provenance.caution));
-        let collection = FeatureCollection { bbox: None, features, foreign_members: Some(members) };
-        let mut bytes = serde_json::to_vec(&collection)
-            .map_err(|error| ExportError::Format { file: self.file_name(), reason: error.to_string() })?;
-        bytes.push(b'\n');
-        Ok(bytes)
+        members.insert("contact_positions".into(), CONTACT_POSITIONS.into());
+        file.bytes(features, members)
     }
-}
-
-fn feature(value: GeometryValue, properties: JsonObject) -> Feature {
-    Feature { geometry: Some(Geometry::new(value)), properties: Some(properties), ..Feature::default() }
 }
 
 fn properties(entry: &LookAlike, part: &str) -> JsonObject {
@@ -211,28 +200,11 @@ fn properties(entry: &LookAlike, part: &str) -> JsonObject {
     properties
 }
 
-/// Decimals of degrees in the file: 10⁻⁸° is about a millimetre.
-const DEGREE_STEPS: f64 = 1e8;
-
-fn positions(report: &LookAlikesReport, points: &[LocalPoint]) -> Result<Vec<Position>, ExportError> {
-    points
-        .iter()
-        .map(|&p| {
-            let geo = report.frame.to_geo(p).map_err(|error| ExportError::Format {
-                file: "lookalikes.geojson",
-                reason: error.to_string(),
-            })?;
-            let rounded = |degrees: f64| (degrees * DEGREE_STEPS).round() / DEGREE_STEPS;
-            Ok(Position::from([rounded(geo.lon_deg), rounded(geo.lat_deg)]))
-        })
-        .collect()
-}
-
 /// Hulls of a smaller area are written as lines: rounded to the last digit, such a ring could turn the wrong way.
 const HULL_LEAST_M2: f64 = 1.0;
 
-/// The convex hull, anticlockwise as the standard asks; a line from end to end where the landmarks lie on one.
-fn hull(report: &LookAlikesReport, ground: &[LocalPoint]) -> Result<GeometryValue, ExportError> {
+/// The convex hull; a line from end to end where the landmarks lie on one.
+fn hull(file: &GeoJsonFile<'_>, ground: &[LocalPoint]) -> Result<GeometryValue, ExportError> {
     // From the first landmark on, so that the area keeps its digits.
     let origin = ground.first().copied().unwrap_or(LocalPoint::new(0.0, 0.0));
     let points: Points<f64> = Points::from(
@@ -249,14 +221,14 @@ fn hull(report: &LookAlikesReport, ground: &[LocalPoint]) -> Result<GeometryValu
         .map(|c| LocalPoint::new(origin.east_m + c.x, origin.north_m + c.y))
         .collect();
     if hull.unsigned_area() >= HULL_LEAST_M2 {
-        return Ok(GeometryValue::Polygon { coordinates: vec![positions(report, &corners)?] });
+        return file.polygon(&corners, &[]);
     }
     let farthest = |from: LocalPoint| {
         let far = corners.iter().max_by(|a, b| from.distance_m(**a).total_cmp(&from.distance_m(**b)));
         far.copied().unwrap_or(from)
     };
     let end = farthest(origin);
-    Ok(GeometryValue::LineString { coordinates: positions(report, &[farthest(end), end])? })
+    file.line(&[farthest(end), end])
 }
 
 /// The look-alikes, most dangerous first, and how many there are in all.

@@ -6,16 +6,22 @@
 mod area;
 mod csv;
 mod files;
+mod geojson;
+mod geojson_cut;
+mod gpx;
 mod json;
+mod landmarks;
 mod lookalikes;
 mod pack;
 mod remap;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
-pub use csv::LinesCsv;
+pub use csv::{LinesCsv, LinesGeoJson};
 pub use files::{prepare, write_all};
+pub use gpx::RecommendedGpx;
 pub use json::{LinesJson, TraceJson, check_json};
+pub use landmarks::LandmarksGeoJson;
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
 pub use pack::{BriefJson, PACK_SCHEMA, PackInProgress, pack_files, prepare_pack, write_pack};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};

@@ -13,9 +13,9 @@ use std::sync::{Mutex, MutexGuard, PoisonError};
 
 use tempfile::Builder;
 
-use super::{ExportError, Exporter};
 use super::files::{TEMPORARY_PREFIX, failed, nearest_existing, temporary};
 use super::json::pretty;
+use super::{ExportError, Exporter};
 use crate::input::fingerprint;
 use crate::report::{BriefReport, PackFile};
 
@@ -42,11 +42,7 @@ impl Exporter for BriefJson {
 pub fn pack_files(files: &[(String, Vec<u8>)]) -> Vec<PackFile> {
     let mut listed: Vec<PackFile> = files
         .iter()
-        .map(|(name, bytes)| PackFile {
-            name: name.clone(),
-            bytes: bytes.len(),
-            sha256: fingerprint(bytes),
-        })
+        .map(|(name, bytes)| PackFile { name: name.clone(), bytes: bytes.len(), sha256: fingerprint(bytes) })
         .collect();
     listed.sort_by(|a, b| a.name.cmp(&b.name));
     listed
@@ -119,8 +115,7 @@ pub fn write_pack(
     let place = examine(target, force)?;
     fs::create_dir_all(&place.parent).map_err(|error| failed(&place.parent, "make this folder", error))?;
     let (folder, _lock) = temporary_folder(&place, in_progress)?;
-    let outcome = fill(&folder, files, in_progress)
-        .and_then(|()| put_in_place(&folder, &place, in_progress));
+    let outcome = fill(&folder, files, in_progress).and_then(|()| put_in_place(&folder, &place, in_progress));
     let mut guard = in_progress.lock();
     if outcome.is_err() {
         remove_flat(&folder);
@@ -131,7 +126,8 @@ pub fn write_pack(
 
 /// Looks at the place, and refuses what is not a place for a pack.
 fn examine(target: &Path, force: bool) -> Result<Place, ExportError> {
-    let unusable = |reason: &str| ExportError::PackPlace { path: target.to_owned(), reason: reason.to_owned() };
+    let unusable =
+        |reason: &str| ExportError::PackPlace { path: target.to_owned(), reason: reason.to_owned() };
     let is_there = fs::symlink_metadata(target).is_ok();
     let resolved = if is_there {
         let real = fs::canonicalize(target).map_err(|error| failed(target, "follow this path", error))?;
@@ -179,7 +175,10 @@ fn examine(target: &Path, force: bool) -> Result<Place, ExportError> {
         return Err(ExportError::Foreign { dir: target.to_owned(), names });
     }
     if !force {
-        return Err(ExportError::Exists { dir: target.to_owned(), names: vec!["a pack (pack.json)".to_owned()] });
+        return Err(ExportError::Exists {
+            dir: target.to_owned(),
+            names: vec!["a pack (pack.json)".to_owned()],
+        });
     }
     place.has_pack = true;
     Ok(place)
@@ -329,7 +328,8 @@ fn remove_stale(place: &Place) -> Result<(), ExportError> {
             continue;
         }
         if name.ends_with(ASIDE) && !place.target.exists() {
-            fs::rename(&folder, &place.target).map_err(|error| failed(&place.target, "restore this pack", error))?;
+            fs::rename(&folder, &place.target)
+                .map_err(|error| failed(&place.target, "restore this pack", error))?;
             return Err(ExportError::Restored(place.target.clone()));
         }
         remove_flat(&folder);

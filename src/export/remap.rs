@@ -1,15 +1,12 @@
 //! `remap.json`, `remap.csv`, `remap.geojson` and the table of the regions.
 
-use geojson::{Feature, FeatureCollection, Geometry, GeometryValue, JsonObject, JsonValue};
+use geojson::{Feature, JsonObject, JsonValue};
 
+use super::geojson::{self as shared, GeoJsonFile};
 use super::json::pretty;
 use super::table::{add, none, per_cent, plain, printable, short};
 use super::{ExportError, Exporter};
-use crate::frame::{GeoPoint, LocalPoint};
 use crate::report::{RemapCause, RemapRegion, RemapReport, Resurvey};
-
-/// Digits after the point of a degree: 10⁻⁹° is 0.1 mm on the ground.
-const DEGREE_SCALE: f64 = 1e9;
 
 /// Columns of `remap.csv` beside those of the causes.
 const COLUMNS: [&str; 11] = [
@@ -121,9 +118,8 @@ fn resurvey_fields(resurvey: &Resurvey) -> Vec<String> {
     ]
 }
 
-/// Writes `remap.geojson`: one polygon for each region, longitude and latitude in WGS 84 (RFC 7946, outer rings
-/// counter-clockwise). With local metres, which have no place on the Earth, the coordinates are metres east and north and
-/// the file says so.
+/// Writes `remap.geojson` (RFC 7946, WGS 84): one polygon for each region. Only for dives in a projected grid: the format
+/// has no local metres.
 #[derive(Clone, Copy, Debug, Default)]
 pub struct RemapGeoJson;
 
@@ -135,46 +131,16 @@ impl Exporter for RemapGeoJson {
     }
 
     fn bytes(&self, report: &RemapReport) -> Result<Vec<u8>, ExportError> {
-        let collection = FeatureCollection {
-            bbox: None,
-            features: report
-                .regions
-                .iter()
-                .map(|region| feature(report, region))
-                .collect::<Result<_, _>>()?,
-            foreign_members: Some(head(report)?),
-        };
-        pretty(self.file_name(), &collection)
+        let file = GeoJsonFile::new(self.file_name(), &report.provenance);
+        let features =
+            report.regions.iter().map(|region| feature(&file, region)).collect::<Result<_, _>>()?;
+        let mut members = JsonObject::new();
+        members.insert("statement".into(), report.statement.into());
+        file.bytes(features, members)
     }
 }
 
-/// What produced the file, as members beside the features.
-fn head(report: &RemapReport) -> Result<JsonObject, ExportError> {
-    let mut head = object(&report.provenance)?;
-    head.insert("statement".into(), report.statement.into());
-    let coordinates = if is_on_the_earth(report) {
-        "longitude and latitude, degrees, WGS 84"
-    } else {
-        "local metres east and north: NOT longitude and latitude"
-    };
-    head.insert("positions".into(), coordinates.into());
-    Ok(head)
-}
-
-fn is_on_the_earth(report: &RemapReport) -> bool {
-    report.regions.iter().all(|region| region.outline_wgs84.is_some())
-}
-
-/// A value as members of an object.
-fn object(value: &impl serde::Serialize) -> Result<JsonObject, ExportError> {
-    match serde_json::to_value(value) {
-        Ok(JsonValue::Object(members)) => Ok(members),
-        Ok(_) => Ok(JsonObject::new()),
-        Err(error) => Err(ExportError::Format { file: "remap.geojson", reason: error.to_string() }),
-    }
-}
-
-fn feature(report: &RemapReport, region: &RemapRegion) -> Result<Feature, ExportError> {
+fn feature(file: &GeoJsonFile<'_>, region: &RemapRegion) -> Result<Feature, ExportError> {
     let mut properties = JsonObject::new();
     let mut put = |name: &str, value: JsonValue| {
         properties.insert(name.to_owned(), value);
@@ -190,38 +156,10 @@ fn feature(report: &RemapReport, region: &RemapRegion) -> Result<Feature, Export
     put("landmarks_inside", region.landmarks_inside.into());
     put("landmarks_surveyed", region.landmarks_surveyed.into());
     if let Some(resurvey) = &region.resurvey {
-        properties.extend(object(resurvey)?);
+        properties.extend(file.object(resurvey)?);
     }
-    let polygon = match &region.outline_wgs84 {
-        Some(outline) if is_on_the_earth(report) => {
-            [&outline.outer].into_iter().chain(&outline.holes).map(|ring| closed(ring, degrees)).collect()
-        }
-        _ => {
-            let outline = &region.outline;
-            [&outline.outer].into_iter().chain(&outline.holes).map(|ring| closed(ring, metres)).collect()
-        }
-    };
-    Ok(Feature {
-        bbox: None,
-        geometry: Some(Geometry::new(GeometryValue::Polygon { coordinates: polygon })),
-        id: Some(geojson::feature::Id::Number(region.number.into())),
-        properties: Some(properties),
-        foreign_members: None,
-    })
-}
-
-/// The ring with its first position repeated at the end, as the format wants it.
-fn closed<P>(ring: &[P], written: fn(&P) -> [f64; 2]) -> Vec<geojson::Position> {
-    ring.iter().chain(ring.first()).map(|p| written(p).into()).collect()
-}
-
-fn degrees(p: &GeoPoint) -> [f64; 2] {
-    let rounded = |x: f64| (x * DEGREE_SCALE).round() / DEGREE_SCALE;
-    [rounded(p.lon_deg), rounded(p.lat_deg)]
-}
-
-fn metres(p: &LocalPoint) -> [f64; 2] {
-    [p.east_m, p.north_m]
+    let outline = &region.outline;
+    Ok(shared::feature(Some(region.number), file.polygon(&outline.outer, &outline.holes)?, properties))
 }
 
 /// The regions, best gain first, and which of them the candidate lines run over.

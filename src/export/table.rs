@@ -177,6 +177,7 @@ pub fn check_text(report: &CheckReport) -> String {
          Sonar errors    range {} m + {:.3} %, bearing {:.3} deg, altitude {} m (all plus or minus); detection chance {}, {} strays per km\n\
          Budget          {} strays, {} misses per run\n\
          Landmarks       {}; {}\n\
+         Map             common shift up to {} m, chance {} that a landmark is gone\n\
          Start           search area {:.3} km2, descent scatter {} m\n\
          Scoring         fix size {} m, required fix distance {} m, a start every {} m, {} dives per line, seed {}\n\n",
         short(p.speed_mps),
@@ -202,6 +203,8 @@ pub fn check_text(report: &CheckReport) -> String {
         p.miss_budget,
         p.landmarks,
         p.landmark_uncertainty,
+        short(p.common_shift_m),
+        short(p.gone_chance),
         p.search_area_km2,
         short(p.scatter_m),
         short(p.fix_size_m),

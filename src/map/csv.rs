@@ -1,8 +1,10 @@
 //! Landmarks from separated values.
 //!
 //! *Columns.* `id` (also `name`, `contact`, `contact_id`, `landmark`), `lat` and `lon` or `easting` and `northing` with
-//! their aliases, and either `uncertainty_m` or `uncertainty_east_m` with `uncertainty_north_m`. Others are listed and
+//! their aliases, `surveyed` (a date), and either `uncertainty_m` or `uncertainty_east_m` with `uncertainty_north_m`. Others are listed and
 //! left alone.
+
+use time::Date;
 
 use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
@@ -24,22 +26,26 @@ const EAST: Column = Column { key: "u_east", names: &["uncertainty_east_m", "unc
 const NORTH: Column =
     Column { key: "u_north", names: &["uncertainty_north_m", "unc_north_m"], one_only: true };
 
+const SURVEYED: Column = Column { key: "surveyed", names: &["surveyed", "survey_date"], one_only: true };
+
 pub(super) fn read(
     input: &InputText,
     crs: &Crs,
     options: ReadOptions,
     findings: &mut Findings,
 ) -> Option<LandmarkFile> {
-    let mut columns = vec![ID, BOTH, EAST, NORTH];
+    let mut columns = vec![ID, BOTH, EAST, NORTH, SURVEYED];
     columns.extend(COORDINATE_COLUMNS);
     let mut table = Table::read(input, &columns, findings)?;
     let uncertainty = Uncertainty::find(&table, findings);
     let place = PositionColumns::find(&table, crs, findings);
     let (uncertainty, place) = (uncertainty?, place?);
     let id = table.column(ID.key);
+    let surveyed = table.column(SURVEYED.key);
 
     let mut used = vec![place.x, place.y];
     used.extend(id);
+    used.extend(surveyed);
     used.extend(uncertainty.columns());
     table.report_unused(&used, findings);
 
@@ -53,6 +59,7 @@ pub(super) fn read(
         let mut problems = Vec::new();
         let position = check.row(&table, row, place, options.decimal_comma, &mut problems);
         let uncertainty_m = uncertainty.of(&table, row, options.decimal_comma, &mut problems);
+        let surveyed = surveyed.and_then(|column| date(&table, row, column, &mut problems));
         match position {
             Some(position) if problems.is_empty() => rows.push(LandmarkRow {
                 line: Some(row.line),
@@ -60,6 +67,7 @@ pub(super) fn read(
                 id: id.map(|c| row.text(c)).filter(|t| !t.is_empty()).map(str::to_owned),
                 position,
                 uncertainty_m,
+                surveyed,
             }),
             _ => bad.add(problems),
         }
@@ -68,6 +76,24 @@ pub(super) fn read(
         bad.finish(&input.name, options.skip_bad_rows, findings);
     }
     Some(LandmarkFile { crs: crs.clone(), rows })
+}
+
+/// The date in a field, or none when it is empty; a problem of the row goes to `problems`.
+fn date(table: &Table, row: &Row, column: usize, problems: &mut Vec<Problem>) -> Option<Date> {
+    let text = row.text(column);
+    if text.is_empty() {
+        return None;
+    }
+    let date = units::parse_date(text);
+    if date.is_none() {
+        problems.push(
+            Problem::new(&table.file, format!("\"{text}\" is not a date"))
+                .line(row.line)
+                .place(table.place(column))
+                .accepted(format!("{}, or empty when it is not known", bounds::DATE_FORM)),
+        );
+    }
+    date
 }
 
 /// Which columns hold the uncertainty.

@@ -4,6 +4,7 @@
 //! `uncertainty_east_m` with `uncertainty_north_m`. A MultiPoint gives one landmark per point.
 
 use ::geojson::{Feature, GeometryValue, JsonValue, Position};
+use time::Date;
 
 use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
@@ -11,6 +12,7 @@ use crate::frame::Crs;
 use crate::input::position::PositionCheck;
 use crate::input::{BadRows, InputText, geojson};
 use crate::problem::{Findings, Problem};
+use crate::units;
 
 pub(super) fn read(
     input: &InputText,
@@ -45,6 +47,7 @@ pub(super) fn read(
         };
         let mut problems = Vec::new();
         let uncertainty_m = uncertainty(feature, &problem, &mut problems);
+        let surveyed = surveyed(feature, &problem, &mut problems);
         let id = geojson::text_property(feature, &["id", "contact_id", "contact", "name"])
             .or_else(|| geojson::feature_id(feature));
         let mut of_feature = Vec::new();
@@ -62,7 +65,14 @@ pub(super) fn read(
                 };
                 let place =
                     if points.len() == 1 { place.clone() } else { format!("{place}, point {}", i + 1) };
-                of_feature.push(LandmarkRow { line: None, place: Some(place), id, position, uncertainty_m });
+                of_feature.push(LandmarkRow {
+                    line: None,
+                    place: Some(place),
+                    id,
+                    position,
+                    uncertainty_m,
+                    surveyed,
+                });
             }
         }
         if problems.is_empty() {
@@ -75,6 +85,20 @@ pub(super) fn read(
         bad.finish(&input.name, options.skip_bad_rows, findings);
     }
     Some(LandmarkFile { crs, rows })
+}
+
+fn surveyed(
+    feature: &Feature,
+    problem: &dyn Fn(String) -> Problem,
+    problems: &mut Vec<Problem>,
+) -> Option<Date> {
+    let value = feature.property("surveyed").filter(|value| !value.is_null())?;
+    let date = value.as_str().and_then(units::parse_date);
+    if date.is_none() {
+        problems
+            .push(problem(format!("property surveyed: {value} is not a date")).accepted(bounds::DATE_FORM));
+    }
+    date
 }
 
 fn uncertainty(

@@ -1,5 +1,7 @@
 //! Landmark files: what every format has in common.
 
+use time::Date;
+
 use super::{csv, geojson};
 use crate::frame::{Crs, Given};
 use crate::input::{Format, InputText};
@@ -18,6 +20,8 @@ pub struct LandmarkRow {
     pub position: Given,
     /// Uncertainty east and north as written, metres.
     pub uncertainty_m: Option<(f64, f64)>,
+    /// Date of its survey, if the file has one.
+    pub surveyed: Option<Date>,
 }
 
 impl LandmarkRow {

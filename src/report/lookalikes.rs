@@ -3,7 +3,7 @@
 use serde::Serialize;
 
 use super::{ChartLandmark, Parameters, Provenance};
-use crate::frame::{Frame, LocalPoint};
+use crate::frame::LocalPoint;
 
 /// What kind of look-alike an entry is.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Serialize)]
@@ -172,9 +172,6 @@ pub struct LookAlikesReport {
     pub complete: bool,
     /// The listed look-alikes, most dangerous first.
     pub look_alikes: Vec<LookAlike>,
-    /// The working frame, for files in latitude and longitude.
-    #[serde(skip)]
-    pub frame: Frame,
     /// For the chart.
     #[serde(skip)]
     pub landmarks: Vec<ChartLandmark>,

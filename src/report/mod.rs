@@ -4,19 +4,28 @@
 
 mod area;
 mod brief;
+mod landmarks;
 mod lookalikes;
 mod remap;
+mod sensitivity;
+mod suggest;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
 pub use brief::{AbortDistance, BriefReport, Finding, PackFile, Verdict};
+pub use landmarks::{LandmarksReport, MapLandmark};
 pub use lookalikes::{
     ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,
     RegularLayout, TellTale,
 };
 pub use remap::{
-    CauseShare, GeographicOutline, LineOverRegions, REMAP_STATEMENT, RegionOutline, RegionStretch,
-    RemapCause, RemapRegion, RemapReport, Resurvey, TOO_FEW_LANDMARKS_NOTE,
+    CauseShare, LineOverRegions, REMAP_STATEMENT, RegionOutline, RegionStretch, RemapCause, RemapRegion,
+    RemapReport, Resurvey, TOO_FEW_LANDMARKS_NOTE,
 };
+pub use sensitivity::{
+    BoundValue, GuaranteedChange, GuaranteedFigures, ImprovedBound, SENSITIVITY_STATEMENT, SensitivityLine,
+    SensitivityReport, SensitivityVerdict, ZeroBound,
+};
+pub use suggest::{CauseCount, SUGGEST_STATEMENT, SuggestReport, SuggestedStart, Suggestion};
 
 use serde::Serialize;
 
@@ -25,6 +34,9 @@ use crate::frame::{Frame, LocalPoint};
 
 /// The caution every output carries.
 pub const CAUTION: &str = "Planning aid, not for navigation. A fix is unambiguous only while the stated error bounds hold and the map is as described. No statement that ground is clear of objects. The vehicle's safety case, local regulations and qualified personnel decide.";
+
+/// What files with landmark positions say of them.
+pub const CONTACT_POSITIONS: &str = "This file contains positions of contacts, which may be sensitive. Pass it on only to those who may have them.";
 
 /// What produced an output and from what.
 #[derive(Clone, Debug, PartialEq, Serialize)]
@@ -128,6 +140,10 @@ pub struct Parameters {
     pub search_area_km2: f64,
     /// Descent scatter radius, m.
     pub scatter_m: f64,
+    /// Largest common shift of the whole map, m; it adds to every absolute position.
+    pub common_shift_m: f64,
+    /// Chance that a landmark of the map is gone, in simulated dives, 0 to 1.
+    pub gone_chance: f64,
     /// Fix size, m.
     pub fix_size_m: f64,
     /// Required fix distance, m.

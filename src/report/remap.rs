@@ -4,7 +4,7 @@ use serde::Serialize;
 
 use super::{AreaGrid, ChartLandmark, Parameters, Provenance};
 use crate::dive::RemapOptions;
-use crate::frame::{GeoPoint, LocalPoint};
+use crate::frame::LocalPoint;
 
 /// The terms of every figure of the remap analysis.
 pub const REMAP_STATEMENT: &str = "A cell passes when, from its centre, at least the stated share of the headings has a guaranteed fix within the required distance on a straight run. Gains are from running the same map again with the boxes of the landmarks in and near the region narrowed about their charted positions. Where the landmarks really lie is not known: a re-survey also moves the charted positions, so a gain says what to expect of that quality and is no guarantee.";
@@ -97,16 +97,6 @@ pub struct RegionOutline {
     pub holes: Vec<Vec<LocalPoint>>,
 }
 
-/// The same polygon on the Earth, with corners added along long edges so that straight lines between them stay within
-/// centimetres of the grid lines.
-#[derive(Clone, Debug, PartialEq)]
-pub struct GeographicOutline {
-    /// Outer ring, counter-clockwise.
-    pub outer: Vec<GeoPoint>,
-    /// Holes, clockwise.
-    pub holes: Vec<Vec<GeoPoint>>,
-}
-
 /// A re-survey of one region and what it buys.
 #[derive(Clone, Copy, Debug, PartialEq, Serialize)]
 pub struct Resurvey {
@@ -163,9 +153,6 @@ pub struct RemapRegion {
     pub verdict: String,
     /// The polygon, in the working frame.
     pub outline: RegionOutline,
-    /// The polygon on the Earth; none with local metres.
-    #[serde(skip)]
-    pub outline_wgs84: Option<GeographicOutline>,
     /// Cells by column and row of the grid, ascending by row. For the chart.
     #[serde(skip)]
     pub grid_cells: Vec<(usize, usize)>,

@@ -513,7 +513,7 @@ fn smaller_bounds_never_add_a_look_alike() {
 
 /// Ground that looks like other ground turned by half a turn confuses a vehicle without a compass, and no other.
 #[test]
-fn half_a_turn_is_reported_where_the_heading_is_loose() {
+fn case_17_half_a_turn_is_reported_where_the_heading_is_loose() {
     let mut rng = ChaCha8Rng::seed_from_u64(3);
     let group: Vec<(f64, f64)> =
         (0..6).map(|_| (rng.random_range(-50.0..50.0), rng.random_range(-50.0..50.0))).collect();
@@ -547,7 +547,7 @@ fn half_a_turn_is_reported_where_the_heading_is_loose() {
 
 /// On a plain grid of m by n blocks the shift (a, b) matches (m − |a|)(n − |b|) of them (counting).
 #[test]
-fn a_grid_is_one_entry_with_its_periods_and_all_shifts() {
+fn case_16_a_grid_is_one_entry_with_its_periods_and_all_shifts() {
     let grid: Vec<Landmark> = (0..30)
         .map(|n| landmark(n, 400.0 + 60.0 * (n % 6) as f64, 250.0 + 50.0 * (n / 6) as f64, 0.5))
         .collect();

@@ -81,7 +81,7 @@ fn bad_input_exits_with_3_names_every_problem_and_writes_nothing() {
 }
 
 #[test]
-fn existing_output_is_refused_without_force_and_left_as_it_was() {
+fn case_35_existing_output_is_refused_without_force_and_left_as_it_was() {
     let place =
         Workplace::with_small_dive().write("out/lines.csv", "mine").write("out/notes.txt", "mine too");
     let ran = place.run("lines dive.toml --out out").expect(3);
@@ -204,7 +204,7 @@ fn an_unmet_requirement_exits_with_1_and_still_writes() {
 
 /// Fewer cells allowed than the first detection needs: the answer is "undecided", never a fix.
 #[test]
-fn an_exhausted_budget_exits_with_5() {
+fn case_29_an_exhausted_budget_exits_with_5() {
     let place = Workplace::with_small_dive();
     let dive = String::from_utf8(place.bytes("dive.toml")).unwrap() + "cell_budget = 100\n";
     let mut landmarks = String::from("id,easting,northing,uncertainty_m\n");
@@ -239,7 +239,7 @@ fn every_shell_gets_completions() {
 
 /// Like `fixability … | head -1`: the reader goes away, the program stops without a word.
 #[test]
-fn a_closed_pipe_is_no_error() {
+fn case_36_a_closed_pipe_is_no_error() {
     let place = Workplace::new();
     let dive = project("demo-data/dive.toml");
     let dive = dive.to_str().expect("a plain path");
@@ -291,7 +291,7 @@ fn a_trace_shows_the_run_asked_for() {
 }
 
 #[test]
-fn names_need_not_be_ascii() {
+fn case_39_names_need_not_be_ascii() {
     let place = Workplace::with_small_dive();
     let dive = String::from_utf8(place.bytes("dive.toml")).unwrap();
     let lines = String::from_utf8(place.bytes("lines.csv")).unwrap();
@@ -323,7 +323,7 @@ fn place_landmarks() -> Vec<u8> {
 }
 
 #[test]
-fn a_contradicted_dive_names_the_event_and_the_budget_that_explains_it() {
+fn case_22_a_contradicted_dive_names_the_event_and_the_budget_that_explains_it() {
     // Many simulated strays, none of them budgeted: sooner or later nothing explains the detections.
     let place = Workplace::with_small_dive();
     let text = String::from_utf8(place.bytes("dive.toml")).unwrap();

@@ -26,7 +26,7 @@ fn compare(command: &str, extra: &[&str], files: &[&str]) {
 }
 
 #[test]
-fn scores_of_the_demo_do_not_depend_on_threads() {
+fn case_32_scores_of_the_demo_do_not_depend_on_threads() {
     compare("lines", &[], &["lines.csv", "lines.json", "lines.png"]);
 }
 

@@ -11,6 +11,7 @@ mod corridor;
 mod craters;
 mod demo;
 mod determinism;
+mod edge_cases;
 mod export;
 mod guarantee;
 mod intervals;

@@ -97,7 +97,7 @@ fn canvas_has_the_size_asked_for() {
 }
 
 #[test]
-fn sizes_that_cannot_be_drawn_are_refused_with_the_reason() {
+fn case_38_sizes_that_cannot_be_drawn_are_refused_with_the_reason() {
     let refusal = |width_px, height_px| {
         let size = ChartSize { width_px, height_px };
         render::lines_png(&reports::four_lines(), &size).unwrap_err().to_string()

@@ -112,7 +112,7 @@ pub(super) fn outcomes(
     tick: &(dyn Fn(usize) + Sync),
 ) -> Vec<RunOutcome> {
     let count = headings_rad.len();
-    if setup.dive.sonar.detection_chance < 1.0 && setup.dive.budget.misses == 0 {
+    if !setup.dive.is_detection_certain() && setup.dive.budget.misses == 0 {
         tick(places.len() * count);
         return vec![RunOutcome::NoFix(Cause::DetectionNotCertain); places.len() * count];
     }

@@ -65,9 +65,10 @@ pub(super) fn narrowed(dive: &Dive, factor: f64, floor_m: f64, concerned: impl F
 
 /// The dive with perfect dead reckoning.
 fn with_perfect_dead_reckoning(dive: &Dive) -> Dive {
-    let dead_reckoning =
+    let mut dive = dive.clone();
+    dive.dead_reckoning =
         DeadReckoning { scale_error: 0.0, heading_bias_rad: 0.0, heading_noise_rad: 0.0, drift_mps: 0.0 };
-    Dive { dead_reckoning, ..dive.clone() }
+    dive
 }
 
 /// The dive with a sonar without errors; what it reaches stays as it is.

@@ -188,7 +188,6 @@ fn examined(run: &Run<'_>, map: &resurvey::Map, group: Group, with_gain: bool) -
         label_at: region::label_at(&group.cells, &run.grid),
         verdict: verdict(main, &tried, ground.margin_m, with_gain, dive.remap.gain_regions),
         resurvey: tried.resurvey,
-        outline_wgs84: region::on_the_earth(&outline, &dive.frame),
         outline,
         grid_cells: group.cells,
     };

@@ -4,12 +4,8 @@ use std::collections::BTreeMap;
 
 use geo::{Area, Buffer, Coord, LineString, Polygon, Rect, unary_union};
 
-use crate::frame::{Frame, GeoPoint, LocalPoint};
-use crate::report::{AreaGrid, GeographicOutline, RegionOutline, RemapCause};
-
-/// Longest edge of an outline on the Earth, metres. A grid line of this length strays from the straight line between
-/// its ends, in degrees, by less than 0.02 m below 80° of latitude: length² · tan(latitude) / (8 · radius).
-const EDGE_MAX_M: f64 = 300.0;
+use crate::frame::LocalPoint;
+use crate::report::{AreaGrid, RegionOutline, RemapCause};
 
 /// Cells that belong together.
 #[derive(Clone, Debug, PartialEq)]
@@ -184,36 +180,6 @@ pub(super) fn area_with_margin_m2(outline: &RegionOutline, reach_m: f64) -> f64 
         holes: outline.holes.iter().map(|hole| moved(hole)).collect(),
     };
     polygon(&near).buffer(reach_m).unsigned_area()
-}
-
-/// The outline on the Earth; none with local metres or where a corner has no position.
-pub(super) fn on_the_earth(outline: &RegionOutline, frame: &Frame) -> Option<GeographicOutline> {
-    let ring = |corners: &[LocalPoint]| -> Option<Vec<GeoPoint>> {
-        divided(corners).into_iter().map(|p| frame.to_geo(p).ok()).collect()
-    };
-    if frame.is_local() {
-        return None;
-    }
-    Some(GeographicOutline {
-        outer: ring(&outline.outer)?,
-        holes: outline.holes.iter().map(|hole| ring(hole)).collect::<Option<_>>()?,
-    })
-}
-
-/// The ring with corners added so that no edge is longer than [`EDGE_MAX_M`].
-fn divided(corners: &[LocalPoint]) -> Vec<LocalPoint> {
-    let next = corners.iter().skip(1).chain(corners.first());
-    corners
-        .iter()
-        .zip(next)
-        .flat_map(|(&a, &b)| {
-            let count = (a.distance_m(b) / EDGE_MAX_M).ceil().clamp(1.0, 1e6) as usize;
-            (0..count).map(move |k| {
-                let t = k as f64 / count as f64;
-                LocalPoint::new(a.east_m + t * (b.east_m - a.east_m), a.north_m + t * (b.north_m - a.north_m))
-            })
-        })
-        .collect()
 }
 
 /// Centre of the cell that lies deepest inside the region: the one with the most steps to a cell outside; among equal

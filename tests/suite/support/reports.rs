@@ -73,6 +73,8 @@ pub fn parameters() -> Parameters {
         half_width_max_m: Some(3.0),
         search_area_km2: 4.5,
         scatter_m: 50.0,
+        common_shift_m: 0.0,
+        gone_chance: 0.0,
         fix_size_m: 25.0,
         required_fix_m: 450.0,
         segment_m: 50.0,

@@ -71,6 +71,7 @@ impl RandomScene {
             dead_reckoning: self.bounds.dead_reckoning,
             sonar: self.bounds.sonar,
             scatter_m: self.scatter_m,
+            gone_chance: 0.0,
         }
     }
 
