@@ -13,6 +13,7 @@ mod json;
 mod landmarks;
 mod lookalikes;
 mod pack;
+mod page;
 mod remap;
 mod table;
 
@@ -24,6 +25,7 @@ pub use json::{LinesJson, TraceJson, check_json};
 pub use landmarks::LandmarksGeoJson;
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
 pub use pack::{BriefJson, PACK_SCHEMA, PackInProgress, pack_files, prepare_pack, write_pack};
+pub use page::{Page, page_html};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
 pub use table::{check_text, lines_table, trace_table};
 
