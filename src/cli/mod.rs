@@ -4,6 +4,7 @@
 
 mod area;
 mod args;
+mod brief;
 mod lookalikes;
 mod output;
 mod remap;

@@ -7,6 +7,7 @@ use clap::{CommandFactory, Parser};
 
 use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
+use super::brief::{BriefRequest, brief};
 use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::output::{FileNames, OutputFile};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
@@ -57,6 +58,9 @@ fn run(arguments: &Arguments) -> Result<Exit> {
     }
     match &arguments.command {
         Command::Check { dive } => check(dive, common),
+        Command::Brief { dive, out, require } => {
+            brief(dive, &BriefRequest { out, require: *require }, common)
+        }
         Command::Lines { dive, out, mark_remap, rank_by, draws, require } => {
             let asked = LinesOptions {
                 out: out.as_deref(),

@@ -27,7 +27,7 @@ pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalike
 pub use pack::{BriefJson, PACK_SCHEMA, PackInProgress, pack_files, prepare_pack, write_pack};
 pub use page::{Page, page_html};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
-pub use table::{check_text, lines_table, trace_table};
+pub use table::{brief_text, check_text, lines_table, trace_table};
 
 use std::path::PathBuf;
 
