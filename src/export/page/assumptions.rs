@@ -26,7 +26,7 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
         section #assumptions aria-labelledby="assumptions-head" {
             h2 #assumptions-head { "Assumptions and error budget" }
             p { "Uncertainty of the landmarks: " (parameters.landmark_uncertainty) ". " (super::dates(page)) "." }
-            (scrolling("Assumptions and error budget", &table))
+            (scrolling("Table of the assumptions", &table))
         }
     }
 }

@@ -75,7 +75,7 @@ pub(super) fn look_alikes(page: &Page<'_>) -> Markup {
                      tell-tale landmarks ringed.",
                     &html! { "Ground 2 laid over ground 1." },
                 ))
-                (scrolling("Look-alikes", &table))
+                (scrolling("Table of the look-alikes", &table))
             }
             p {
                 (count(report.found, "look-alike", "look-alikes")) " found, "
@@ -135,7 +135,7 @@ pub(super) fn remap(page: &Page<'_>) -> Markup {
             @if report.regions.is_empty() {
                 p { "No region fails the requirement." }
             } @else {
-                (scrolling("Regions to map again", &table))
+                (scrolling("Table of the regions to map again", &table))
             }
             p {
                 (report.failing_cells) " of " (report.cells) " cells of " (number(report.options.cell_m)) " m fail ("

@@ -24,7 +24,7 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
                  The frame is " (kilometres(ground.width)) " wide and " (kilometres(ground.height)) " high, grid north up."
             }
             svg.defs width="0" height="0" aria-hidden="true" focusable="false" {
-                defs { path #landmarks d=(ground.boxes(landmarks)); }
+                defs { path #landmarks d=(ground.boxes(landmarks)) {} }
             }
             @for (index, (trace, dive)) in page.traces.iter().zip(stepped.list()).enumerate() {
                 (one(&ground, index, trace, dive))
@@ -46,8 +46,8 @@ fn one(ground: &Ground, index: usize, trace: &TraceReport, dive: &Dive) -> Marku
                         label for={ (id) "-range" } { "Detection on line " (trace.line) }
                         input id={ (id) "-range" } type="range" min="0" max=(last) step="1" value="0"
                             aria-valuetext=(first.short);
-                        button.back type="button" aria-label={ "Previous detection on line " (trace.line) } { "Back" }
-                        button.on type="button" aria-label={ "Next detection on line " (trace.line) } { "On" }
+                        button.back type="button" { "Back" span.aside { " to the detection before on line " (trace.line) } }
+                        button.on type="button" { "On" span.aside { " to the next detection on line " (trace.line) } }
                     }
                     p.live role="status" aria-live="polite" { (first.text) }
                     div.pair {
@@ -134,21 +134,21 @@ fn close_view(ground: &Ground, event: &Event) -> String {
     format!("{} {} {} {}", x - ground.close / 2, y - ground.close / 2, ground.close, ground.close)
 }
 
-/// One picture of one event.
+/// One picture of one event. Elements of SVG need their end tags: left open, one would hold the next.
 fn picture(ground: &Ground, trace: &TraceReport, event: &Event, view: &str, kind: &str) -> Markup {
     let is_whole = kind == "whole";
     let arm = if is_whole { ground.width } else { ground.close } / 40;
     html! {
         svg class={ "map " (kind) } viewBox=(view) role="img" aria-label={ "Line " (trace.line) ": " (event.short) } {
-            path.area d={ (ground.line(&trace.search_area)) "z" };
-            use href="#landmarks" class="landmarks";
-            path.cells d=(event.cells);
+            path.area d={ (ground.line(&trace.search_area)) "z" } {}
+            use href="#landmarks" class="landmarks" {}
+            path.cells d=(event.cells) {}
             @if is_whole {
-                path.marks d=(event.marks);
-                path.marks-in d=(event.marks);
+                path.marks d=(event.marks) {}
+                path.marks-in d=(event.marks) {}
             }
-            path.track d=(ground.line(&trace.path));
-            path.cross d=(cross(event.truth, arm));
+            path.track d=(ground.line(&trace.path)) {}
+            path.cross d=(cross(event.truth, arm)) {}
         }
     }
 }

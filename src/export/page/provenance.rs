@@ -37,8 +37,8 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
                 (provenance.generator) "); schema fixability.brief, version " (provenance.schema_version)
                 ". The same inputs and options give the same bytes."
             }
-            (scrolling("Input files", &inputs))
-            (scrolling("Files of the pack", &files))
+            (scrolling("Table of the input files", &inputs))
+            (scrolling("Table of the files of the pack", &files))
         }
     }
 }
