@@ -58,6 +58,10 @@ pub fn verdict(report: &LinesReport) -> Verdict {
         figure_means: facts.figure_means(),
         guaranteed: facts.guaranteed(),
         estimated: facts.estimated(),
+        abort_headline: match abort {
+            Some(abort) => format!("Abort distance: {} m.", metres_up(abort.distance_m)),
+            None => "No abort distance can be given.".to_owned(),
+        },
         abort_rule: facts.abort_rule(),
     }
 }
@@ -162,9 +166,9 @@ impl Facts<'_> {
         }
         if self.within > 0.0 {
             sentences.push(format!(
-                "From {} of the length of line {name} a fix is guaranteed within {required} m, whatever the errors within \
-                 the stated bounds; from {} of it, one that then lasts to the end of the line.",
-                per_cent(self.within),
+                "That holds whatever the errors within the stated bounds, on the tracks computed. From {} of the length of \
+                 line {name} a fix within {required} m is also guaranteed to last to the end of the line; a first fix may \
+                 be lost again further on.",
                 per_cent(self.lasting),
             ));
         } else {
@@ -213,10 +217,9 @@ impl Facts<'_> {
         let name = self.name();
         let Some(abort) = self.abort else {
             return match self.finding {
-                Finding::NoLandmarks => "No abort distance can be given: there will be no fix.".to_owned(),
+                Finding::NoLandmarks => "There will be no fix.".to_owned(),
                 _ => format!(
-                    "No abort distance can be given: no segment of line {name} has a guaranteed fix, so a run without one \
-                     proves nothing at any distance."
+                    "No segment of line {name} has a guaranteed fix, so a run without one proves nothing at any distance."
                 ),
             };
         };
@@ -235,8 +238,8 @@ impl Facts<'_> {
             String::new()
         };
         format!(
-            "Abort distance {distance} m. A vehicle lost at the start of one of the segments with such a guarantee ({} of line \
-             {name}) has had its fix after {distance} m at the latest.{within} No fix by then means that it was lost \
+            "A vehicle lost at the start of one of the segments with such a guarantee ({} of the length of line {name}) has \
+             had its fix after {distance} m at the latest.{within} No fix by then means that it was lost \
              elsewhere, or is off the tracks that were computed, or a bound or the map does not hold: come up, as the vehicle's \
              safety case lays down.{rest}",
             per_cent(abort.share_of_line),

@@ -63,7 +63,7 @@ pub fn lines_table(report: &LinesReport) -> String {
 pub fn brief_text(report: &BriefReport, lines: &LinesReport) -> String {
     let verdict = &report.verdict;
     let mut text = format!("{}\n{} {}.\n", verdict.headline, verdict.figure, verdict.figure_means);
-    text.push_str(&format!("{}\n", verdict.abort_rule));
+    text.push_str(&format!("{} {}\n", verdict.abort_headline, verdict.abort_rule));
     for (kind, sentences) in [("Guaranteed", &verdict.guaranteed), ("Estimated", &verdict.estimated)] {
         for sentence in sentences {
             text.push_str(&format!("{kind}: {sentence}\n"));

@@ -69,6 +69,8 @@ pub struct Verdict {
     pub guaranteed: Vec<String>,
     /// What is *estimated*, sentence by sentence.
     pub estimated: Vec<String>,
+    /// The abort distance, or that there is none.
+    pub abort_headline: String,
     /// When to come up.
     pub abort_rule: String,
 }

@@ -22,7 +22,7 @@ const LANDMARKS_MOST: usize = 20_000;
 /// A cell whose extent is below this share of the picture's width is drawn as a mark.
 const MARK_SHARE: f64 = 0.01;
 /// Width of the close-up in fix sizes.
-const CLOSE_UP_FIX_SIZES: f64 = 8.0;
+const CLOSE_UP_FIX_SIZES: f64 = 6.0;
 
 /// The ground shown: all of the search area and of the traced tracks.
 #[derive(Clone, Copy, Debug)]

@@ -58,10 +58,11 @@ pub(super) fn look_alikes(page: &Page<'_>) -> Markup {
     };
     html! {
         section #look-alikes aria-labelledby="look-alikes-head" {
-            h2 #look-alikes-head { "Where not to trust a fix: ground that looks like other ground" }
-            @if shown.is_empty() {
-                p { "No ground with three or more landmarks looks like other ground within the bounds." }
-            } @else {
+            div.plates {
+                h2 #look-alikes-head { "Where not to trust a fix: ground that looks like other ground" }
+                @if shown.is_empty() {
+                    p { "No ground with three or more landmarks looks like other ground within the bounds." }
+                } @else {
                 (chart(
                     page,
                     "lookalikes.png",
@@ -75,8 +76,9 @@ pub(super) fn look_alikes(page: &Page<'_>) -> Markup {
                      tell-tale landmarks ringed.",
                     &html! { "Ground 2 laid over ground 1." },
                 ))
-                (scrolling("Table of the look-alikes", &table))
+                }
             }
+            @if !shown.is_empty() { (scrolling("Table of the look-alikes", &table)) }
             p {
                 (count(report.found, "look-alike", "look-alikes")) " found, "
                 (report.within_fix_size) " of them no farther apart than the fix size, "
@@ -125,13 +127,15 @@ pub(super) fn remap(page: &Page<'_>) -> Markup {
     };
     html! {
         section #remap aria-labelledby="remap-head" {
-            h2 #remap-head { "What to map again" }
-            (chart(
-                page,
-                "remap.png",
-                "Map of the regions to map again, patterned by cause and numbered by gain. The table below lists them.",
-                &html! { "Regions by cause, numbered as in the table." },
-            ))
+            div.plates {
+                h2 #remap-head { "What to map again" }
+                (chart(
+                    page,
+                    "remap.png",
+                    "Map of the regions to map again, patterned by cause and numbered by gain. The table below lists them.",
+                    &html! { "Regions by cause, numbered as in the table." },
+                ))
+            }
             @if report.regions.is_empty() {
                 p { "No region fails the requirement." }
             } @else {

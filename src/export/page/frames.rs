@@ -9,7 +9,7 @@ use crate::dive::ErrorShape;
 use crate::report::TraceReport;
 
 /// Most small frames of one dive.
-const FRAMES: usize = 6;
+const FRAMES: usize = 5;
 
 pub(super) fn section(page: &Page<'_>) -> Markup {
     let Some(ground) = Ground::of(page) else { return html! {} };
@@ -109,19 +109,19 @@ fn summary(trace: &TraceReport) -> String {
     )
 }
 
-/// Events for the small frames: the first three, the first fix, the loss of a fix, the last.
+/// Events for the small frames: the first, the first fix, the last, the loss of a fix; then the next ones from the start.
 fn chosen(trace: &TraceReport) -> Vec<usize> {
     let events = &trace.events;
     let fix = events.iter().position(|event| event.is_fix);
     let lost = events.windows(2).position(|pair| pair[0].is_fix && !pair[1].is_fix).map(|before| before + 1);
-    let mut chosen: Vec<usize> = [Some(0), fix, events.len().checked_sub(1), lost, Some(1), Some(2)]
-        .into_iter()
-        .flatten()
-        .filter(|&index| index < events.len())
-        .collect();
-    chosen.truncate(FRAMES);
+    let mut chosen: Vec<usize> = Vec::new();
+    let wanted = [Some(0), fix, events.len().checked_sub(1), lost, Some(1), Some(2)].into_iter().flatten();
+    for index in wanted.filter(|&index| index < events.len()) {
+        if chosen.len() < FRAMES && !chosen.contains(&index) {
+            chosen.push(index);
+        }
+    }
     chosen.sort_unstable();
-    chosen.dedup();
     chosen
 }
 

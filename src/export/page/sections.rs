@@ -11,6 +11,7 @@ pub(super) fn charts(page: &Page<'_>) -> Markup {
     let headings = page.area.headings_deg.len();
     html! {
         section #charts aria-labelledby="charts-head" {
+            div.plates {
             h2 #charts-head { "Where along the lines, and where on the seabed?" }
             (chart(
                 page,
@@ -49,6 +50,7 @@ pub(super) fn charts(page: &Page<'_>) -> Markup {
                  required distance.",
                 &html! { "Share of headings with a fix within " (required) " m " (guaranteed()) "." },
             ))
+            }
             p { (guaranteed()) " " (crate::report::AREA_STATEMENT) }
         }
     }

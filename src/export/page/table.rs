@@ -54,9 +54,9 @@ pub(super) fn distance(estimate: Estimate) -> String {
     }
 }
 
-/// A number as its owner would type it: at most nine decimals.
+/// A number with at most four decimals.
 pub(super) fn number(value: f64) -> String {
-    format!("{}", (value * 1e9).round() / 1e9)
+    format!("{}", (value * 1e4).round() / 1e4)
 }
 
 /// A count with its word.

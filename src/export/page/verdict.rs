@@ -12,7 +12,7 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
         section #verdict tabindex="-1" aria-labelledby="verdict-head" {
             h2 #verdict-head.headline { (verdict.headline) }
             p.figure { strong.big { (verdict.figure) } " " span { (verdict.figure_means) " " (guaranteed()) } }
-            p.abort { (verdict.abort_rule) }
+            div.abort { p.lead { (verdict.abort_headline) } p { (verdict.abort_rule) } }
             @for sentence in &verdict.guaranteed { p { (guaranteed()) " " (sentence) } }
             @for sentence in &verdict.estimated { p { (estimated()) " " (sentence) } }
             h3 { "At a glance" }
@@ -88,11 +88,14 @@ fn remap(report: &RemapReport) -> String {
         "{} of {} cells fail the requirement ({:.2} km²)",
         report.failing_cells, report.cells, report.failing_km2
     );
-    match report.regions.first() {
+    let cured = report.regions.iter().find(|region| region.resurvey.is_some_and(|survey| survey.cures));
+    match cured.or(report.regions.first()) {
         None => format!("{failing}; no region to map again."),
         Some(region) => format!(
-            "{failing}; {}. Region 1, {}: {}.",
+            "{failing}, in {}. {}: region {}, {}: {}.",
             count(report.regions.len(), "region", "regions"),
+            if cured.is_some() { "First of those that a re-survey cures" } else { "First" },
+            region.number,
             region.cause.in_words(),
             region.verdict
         ),
@@ -102,12 +105,12 @@ fn remap(report: &RemapReport) -> String {
 fn assumptions(page: &Page<'_>) -> String {
     let parameters = &page.lines.parameters;
     format!(
-        "{} landmarks, {}; {}; {}; fix size {} m; required fix distance {} m. Whatever lies outside these bounds is not \
-         covered.",
+        "{} landmarks, {}; strays covered: {}, misses covered: {}; fix size {} m; required fix distance {} m. Whatever lies \
+         outside these bounds is not covered.",
         parameters.landmarks,
         parameters.landmark_uncertainty,
-        count(usize::from(parameters.stray_budget), "stray", "strays") + " covered",
-        count(usize::from(parameters.miss_budget), "miss", "misses") + " covered",
+        parameters.stray_budget,
+        parameters.miss_budget,
         parameters.fix_size_m,
         parameters.required_fix_m,
     )
