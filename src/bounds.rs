@@ -483,7 +483,7 @@ pub const KEYS: &[Key] = &[
         "scoring",
         "cell_budget",
         Kind::Whole(Range::closed(100.0, 10_000_000.0, "")),
-        Default("50000"),
+        Without("50000, or twice the number of landmarks times heading slices where that is more"),
         "Most cells the solver keeps at once before it answers \"undecided\".",
     ),
     number(

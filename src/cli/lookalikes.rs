@@ -79,7 +79,7 @@ pub(super) fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikes
 
 /// Marks the segments that run over the most dangerous look-alikes.
 pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport, common: &Common) {
-    let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
+    let request = LookAlikeRequest { listed: MARKED, only_whole: true, ..LookAlikeRequest::default() };
     mark(report, &found(setup, &request), common);
 }
 

@@ -81,7 +81,11 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Lookalikes { dive, out, separation_m, listed } => {
-            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            let request = LookAlikeRequest {
+                separation_max_m: *separation_m,
+                listed: *listed as usize,
+                only_whole: false,
+            };
             lookalikes(dive, &request, out.as_deref(), common)
         }
         Command::Area { dive, out, cell_m, headings, longest_run_m } => {

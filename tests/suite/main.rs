@@ -14,6 +14,7 @@ mod determinism;
 mod edge_cases;
 mod export;
 mod guarantee;
+mod heavy;
 mod intervals;
 mod layers;
 mod load;
@@ -23,7 +24,10 @@ mod moved;
 mod one_dimension;
 mod oracle;
 mod pack;
+mod page;
 mod projection;
+#[path = "support/readers.rs"]
+mod readers;
 mod readme;
 mod remap;
 mod render;
@@ -39,3 +43,4 @@ mod support;
 #[path = "support/template.rs"]
 mod template;
 mod tightness;
+mod verdict;
