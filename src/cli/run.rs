@@ -18,7 +18,7 @@ use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
-use crate::report::LinesReport;
+use crate::report::{Cause, LinesReport, SegmentReport};
 
 /// How the program ends.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -210,15 +210,28 @@ pub(super) fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Co
             .to_owned();
         print_notices([&warning(text)], common.quiet);
     }
+    let mut exit = Exit::Done;
+    let mut undecided = |what: &str, count_as: &str| {
+        let text = format!(
+            "{what} undecided: the solver ran out of its cell budget; they count as {count_as}; raise \
+             scoring.cell_budget to decide them"
+        );
+        print_notices([&warning(text)], common.quiet);
+        exit = Exit::Undecided;
+    };
     if report.lines.iter().any(|line| line.estimated.undecided_share > 0.0) {
-        print_notices([&warning(
-            "some dives are undecided: the solver ran out of its cell budget; they count as dives without a fix; \
-             raise scoring.cell_budget to decide them"
-                .to_owned(),
-        )], common.quiet);
-        return Exit::Undecided;
+        undecided("some dives are", "dives without a fix");
     }
-    Exit::Done
+    let cause = |segment: &SegmentReport| segment.guaranteed.as_ref().and_then(|fix| fix.cause);
+    if report
+        .lines
+        .iter()
+        .flat_map(|line| &line.segments)
+        .any(|segment| cause(segment) == Some(Cause::Undecided))
+    {
+        undecided("the guarantees of some segments are", "segments without a guaranteed fix");
+    }
+    exit
 }
 
 /// Files that `trace` writes.
