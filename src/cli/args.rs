@@ -69,8 +69,8 @@ pub enum Command {
     },
     /// Run everything, and write a pack for the briefing: one page to read or print, and all files
     ///
-    /// Scores the lines, maps the area, finds look-alikes and the ground to map again, and follows one simulated dive of
-    /// each line. The pack is a folder: index.html holds the verdict, the charts and the tables in one page that needs
+    /// Scores the lines, maps the area, finds look-alikes and the ground to map again, suggests dive points, improves each
+    /// error bound in turn, and follows one simulated dive of each line. The pack is a folder: index.html holds the verdict, the charts and the tables in one page that needs
     /// nothing else; pack.json lists every file with its SHA-256. The folder appears whole, or stays as it was.
     Brief {
         /// The dive file (TOML)
@@ -186,6 +186,40 @@ pub enum Command {
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
     },
+    /// Suggest where to dive and which heading to run first
+    ///
+    /// The vehicle starts anywhere in the descent scatter about the dive point and does not know where. For every dive
+    /// point of the search area and every heading the longest guaranteed fix distance over the scatter disc is found, and
+    /// the best are listed, far enough apart to be real alternatives. With --out, writes suggest.json, suggest.csv,
+    /// suggest.png, and the suggested lines S1, S2, ... as suggest-lines.csv and, when the map is on the Earth,
+    /// suggest.geojson and suggest.gpx: name one of these in lines.files and `lines` scores them. Keys: section
+    /// [suggest]; cells, headings and the longest run are those of [area].
+    Suggest {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Most suggestions to list, in place of the dive file's
+        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..=100))]
+        listed: Option<u16>,
+    },
+    /// Find which error bound is worth improving first
+    ///
+    /// Every error bound is multiplied by a factor, one at a time and then all together, and the guaranteed fixes of every
+    /// line are computed again: how much more of the lines has a guaranteed fix within the required distance, how many
+    /// segments gain one, and how much sooner it comes. No simulated dive is involved. With --out, writes
+    /// sensitivity.json, sensitivity.csv and sensitivity.png.
+    Sensitivity {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the three files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Factor for each bound, in place of the dive file's: 0.5 halves it, 0 makes it perfect
+        #[arg(long, value_name = "FACTOR", value_parser = factor)]
+        factor: Option<f64>,
+    },
     /// Print a completion script for a shell
     Completions {
         /// The shell
@@ -211,17 +245,22 @@ fn separation(text: &str) -> Result<f64, String> {
 
 /// Parses the side of a start cell.
 fn cell(text: &str) -> Result<f64, String> {
-    in_range_of("cell_m", text)
+    in_range_of("area", "cell_m", text)
 }
 
 /// Parses the longest straight run.
 fn longest_run(text: &str) -> Result<f64, String> {
-    in_range_of("longest_run_m", text)
+    in_range_of("area", "longest_run_m", text)
 }
 
-/// Parses a number in the range of a key of the area map.
-fn in_range_of(key: &str, text: &str) -> Result<f64, String> {
-    let key = bounds::find("area", key);
+/// Parses the factor of an improvement.
+fn factor(text: &str) -> Result<f64, String> {
+    in_range_of("sensitivity", "factor", text)
+}
+
+/// Parses a number in the range of a key.
+fn in_range_of(section: &str, key: &str, text: &str) -> Result<f64, String> {
+    let key = bounds::find(section, key);
     match (text.parse::<f64>(), key.kind) {
         (Ok(number), bounds::Kind::Number(range)) if range.contains(number) => Ok(number),
         _ => Err(format!("accepted: {}", key.accepted())),

@@ -8,14 +8,15 @@ use super::args::Common;
 use super::output::OutputFile;
 use super::run::{Exit, lines_exit, lines_files, read, undecided_runs, warning};
 use super::terminal::{Steps, print_notices, print_result};
-use super::{area, lookalikes, remap};
+use super::{area, lookalikes, remap, sensitivity, suggest};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
 use crate::export::{self, BriefJson, Exporter, PACK_SCHEMA, PackInProgress, Page};
 use crate::problem::Notice;
 use crate::render::{self, ChartSize};
 use crate::report::{
-    AreaReport, BriefReport, LinesReport, LookAlikesReport, RemapReport, TraceReport, Verdict,
+    AreaReport, BriefReport, LinesReport, LookAlikesReport, RemapReport, SensitivityReport, SuggestReport,
+    TraceReport, Verdict,
 };
 
 /// What `brief` was asked beyond the dive file.
@@ -37,6 +38,8 @@ struct Findings {
     area: AreaReport,
     look_alikes: LookAlikesReport,
     remap: RemapReport,
+    suggest: SuggestReport,
+    sensitivity: SensitivityReport,
     traces: Vec<TraceReport>,
 }
 
@@ -47,10 +50,11 @@ pub(super) fn brief(path: &Path, asked: &BriefRequest<'_>, common: &Common) -> R
     print_notices(&assess::line_notices(&setup), common.quiet);
     area::starts(&setup, &dive.area)?;
     remap::refuse_huge(&setup)?;
+    suggest::starts(&setup, &assess::suggest_area_options(&dive))?;
     export::prepare_pack(asked.out, common.force)?;
     tidy_when_interrupted();
 
-    let mut steps = Steps::new(6, common.quiet);
+    let mut steps = Steps::new(8, common.quiet);
     let found = find(&setup, &mut steps, common)?;
     steps.next("charts and page", None);
     let files = files(&found, &ChartSize::default())?;
@@ -91,6 +95,11 @@ fn find(setup: &Setup<'_>, steps: &mut Steps, common: &Common) -> Result<Finding
     let bar = steps.next_growing("finding what to map again", "runs");
     let remap = remap::analyse(setup, bar);
     assess::mark_segments(&mut lines, &remap);
+    let search = assess::suggest_area_options(dive);
+    let bar = steps.next("looking for dive points", Some((suggest::starts(setup, &search)?, "runs")));
+    let suggest = assess::suggest(setup, &search, &|count| bar.inc(count as u64));
+    let bar = steps.next("improving error bounds", Some((assess::sensitivity_runs(dive), "lines")));
+    let sensitivity = assess::sensitivity(setup, dive.improvement_factor, &|| bar.inc(1));
     let bar = steps.next("following one dive of each line", Some((dive.lines.len(), "lines")));
     let mut traces = Vec::new();
     for line in &dive.lines {
@@ -103,7 +112,16 @@ fn find(setup: &Setup<'_>, steps: &mut Steps, common: &Common) -> Result<Finding
         traces.push(assess::trace(setup, &request)?);
         bar.inc(1);
     }
-    Ok(Findings { verdict: assess::verdict(&lines), lines, area, look_alikes, remap, traces })
+    Ok(Findings {
+        verdict: assess::verdict(&lines),
+        lines,
+        area,
+        look_alikes,
+        remap,
+        suggest,
+        sensitivity,
+        traces,
+    })
 }
 
 /// The files of the pack but `pack.json`, the page first.
@@ -113,6 +131,8 @@ fn files(found: &Findings, size: &ChartSize) -> Result<Vec<(String, Vec<u8>)>> {
         files.extend(area::files(&found.area, size)?);
         files.extend(lookalikes::files(&found.look_alikes, size)?);
         files.extend(remap::files(&found.remap, size)?);
+        files.extend(suggest::files(&found.suggest, size)?);
+        files.extend(sensitivity::files(&found.sensitivity, size)?);
         Ok(files)
     };
     let mut files: Vec<(String, Vec<u8>)> =
@@ -129,6 +149,8 @@ fn files(found: &Findings, size: &ChartSize) -> Result<Vec<(String, Vec<u8>)>> {
         area: &found.area,
         look_alikes: &found.look_alikes,
         remap: &found.remap,
+        suggest: &found.suggest,
+        sensitivity: &found.sensitivity,
         traces: &found.traces,
         charts: &files,
         files: &names,
@@ -141,7 +163,11 @@ fn files(found: &Findings, size: &ChartSize) -> Result<Vec<(String, Vec<u8>)>> {
 /// The most telling code of all parts, each with its reason on standard error.
 fn exit(found: &Findings, require: Option<f64>, common: &Common) -> Exit {
     let mut exits = vec![lines_exit(&found.lines, require, common)];
-    if found.area.is_undecided() || found.remap.undecided {
+    if found.area.is_undecided()
+        || found.remap.undecided
+        || found.suggest.undecided
+        || found.sensitivity.undecided
+    {
         exits.push(undecided_runs(common));
     }
     exits.push(lookalikes::exit(&found.look_alikes, common));

@@ -9,6 +9,8 @@ mod lookalikes;
 mod output;
 mod remap;
 mod run;
+mod sensitivity;
+mod suggest;
 mod terminal;
 
 pub use run::{Exit, main_with};

@@ -11,6 +11,8 @@ use super::brief::{BriefRequest, brief};
 use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::output::{FileNames, OutputFile};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
+use super::sensitivity::sensitivity;
+use super::suggest::suggest;
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
@@ -98,6 +100,8 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             area(dive, &asked, common)
         }
         Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
+        Command::Suggest { dive, out, listed } => suggest(dive, out.as_deref(), *listed, common),
+        Command::Sensitivity { dive, out, factor } => sensitivity(dive, out.as_deref(), *factor, common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);

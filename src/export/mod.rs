@@ -15,6 +15,8 @@ mod lookalikes;
 mod pack;
 mod page;
 mod remap;
+mod sensitivity;
+mod suggest;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
@@ -27,6 +29,8 @@ pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalike
 pub use pack::{BriefJson, PACK_SCHEMA, PackInProgress, pack_files, prepare_pack, write_pack};
 pub use page::{Page, page_html};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
+pub use sensitivity::{SensitivityCsv, SensitivityJson, sensitivity_table};
+pub use suggest::{SuggestCsv, SuggestGeoJson, SuggestGpx, SuggestJson, SuggestLinesCsv, suggest_table};
 pub use table::{brief_text, check_text, lines_table, trace_table};
 
 use std::path::PathBuf;

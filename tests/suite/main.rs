@@ -35,10 +35,12 @@ mod render;
 mod reports;
 #[path = "support/scanline.rs"]
 mod scanline;
+mod sensitivity;
 mod sets;
 mod silence;
 mod slices;
 mod soundness;
+mod suggest;
 mod support;
 #[path = "support/template.rs"]
 mod template;

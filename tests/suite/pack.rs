@@ -71,9 +71,14 @@ fn a_pack_holds_the_page_and_the_files_of_the_single_commands() {
     assert!(ran.stderr.contains("index.html"), "{}", ran.stderr);
     let names = whole(&place.path("pack"));
     assert!(leftovers(&place.path(".")).is_empty());
-    for command in
-        ["lines dive.toml --mark-remap", "area dive.toml", "lookalikes dive.toml", "remap dive.toml"]
-    {
+    for command in [
+        "lines dive.toml --mark-remap",
+        "area dive.toml",
+        "lookalikes dive.toml",
+        "remap dive.toml",
+        "suggest dive.toml",
+        "sensitivity dive.toml",
+    ] {
         place.run(&format!("{command} --out single")).expect(0);
     }
     let singles = place.names("single");

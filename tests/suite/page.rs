@@ -125,6 +125,8 @@ fn the_page_tells_in_order_and_labels_what_is_guaranteed() {
         "dives-section",
         "look-alikes",
         "remap",
+        "suggest",
+        "sensitivity",
         "assumptions",
         "cautions",
         "provenance",

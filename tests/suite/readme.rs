@@ -349,7 +349,7 @@ fn every_listed_column_name_is_read() {
 
 #[test]
 fn columns_of_the_files_are_those_written() {
-    for file in ["lines.csv", "area.csv", "lookalikes.csv"] {
+    for file in ["lines.csv", "area.csv", "lookalikes.csv", "suggest.csv", "sensitivity.csv"] {
         let heading = format!("\nColumns of `{file}`");
         let table = section(&README.on_disk, &heading);
         // The tables of several files stand in one section.
@@ -402,7 +402,19 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "brief", "check", "lines", "area", "trace", "lookalikes", "remap", "completions"] {
+    for command in [
+        "",
+        "brief",
+        "check",
+        "lines",
+        "area",
+        "trace",
+        "lookalikes",
+        "remap",
+        "suggest",
+        "sensitivity",
+        "completions",
+    ] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()

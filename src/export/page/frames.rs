@@ -52,11 +52,11 @@ fn one(ground: &Ground, index: usize, trace: &TraceReport, dive: &Dive) -> Marku
                     p.live role="status" aria-live="polite" { (first.text) }
                     div.pair {
                         figure {
-                            (picture(ground, trace, first, &view(ground), "whole"))
+                            (empty_picture(ground, trace, first, &view(ground), "whole"))
                             figcaption { "The whole search area" }
                         }
                         figure {
-                            (picture(ground, trace, first, &close_view(ground, first), "close"))
+                            (empty_picture(ground, trace, first, &close_view(ground, first), "close"))
                             figcaption { "Close-up about the true position, " (ground.close / 10) " m wide" }
                         }
                     }
@@ -132,6 +132,13 @@ fn view(ground: &Ground) -> String {
 fn close_view(ground: &Ground, event: &Event) -> String {
     let (x, y) = event.truth;
     format!("{} {} {} {}", x - ground.close / 2, y - ground.close / 2, ground.close, ground.close)
+}
+
+/// A picture that the script fills; it is not shown without one, and cells that stand in the data need not stand here.
+fn empty_picture(ground: &Ground, trace: &TraceReport, event: &Event, view: &str, kind: &str) -> Markup {
+    let event =
+        Event { cells: String::new(), marks: String::new(), text: String::new(), short: event.short.clone(), ..*event };
+    picture(ground, trace, &event, view, kind)
 }
 
 /// One picture of one event. Elements of SVG need their end tags: left open, one would hold the next.

@@ -13,6 +13,7 @@ mod charts;
 mod data;
 mod findings;
 mod frames;
+mod planning;
 mod provenance;
 mod ranking;
 mod sections;
@@ -24,7 +25,10 @@ use base64::engine::general_purpose::STANDARD;
 use maud::{DOCTYPE, Markup, PreEscaped, html};
 use sha2::{Digest, Sha256};
 
-use crate::report::{AreaReport, LinesReport, LookAlikesReport, RemapReport, TraceReport, Verdict};
+use crate::report::{
+    AreaReport, LinesReport, LookAlikesReport, RemapReport, SensitivityReport, SuggestReport, TraceReport,
+    Verdict,
+};
 
 const STYLE: &str = include_str!("style.css");
 const SCRIPT: &str = include_str!("script.js");
@@ -42,6 +46,10 @@ pub struct Page<'a> {
     pub look_alikes: &'a LookAlikesReport,
     /// The regions to map again.
     pub remap: &'a RemapReport,
+    /// The suggested dive points.
+    pub suggest: &'a SuggestReport,
+    /// What better bounds would bring.
+    pub sensitivity: &'a SensitivityReport,
     /// One dive for each line, in the order of the file.
     pub traces: &'a [TraceReport],
     /// Pictures by the names of their files.
@@ -85,6 +93,8 @@ fn document(page: &Page<'_>) -> Markup {
                     (frames::section(page))
                     (findings::look_alikes(page))
                     (findings::remap(page))
+                    (planning::suggest(page))
+                    (planning::sensitivity(page))
                     (assumptions::section(page))
                     (sections::cautions(page))
                     (provenance::section(page))

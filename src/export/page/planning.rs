@@ -4,7 +4,7 @@ use maud::{Markup, html};
 
 use super::Page;
 use super::charts::chart;
-use super::table::{guaranteed, metres, number, per_cent, scrolling};
+use super::table::{NONE, guaranteed, metres, number, per_cent, scrolling};
 use crate::report::GuaranteedChange;
 
 pub(super) fn suggest(page: &Page<'_>) -> Markup {
@@ -89,7 +89,7 @@ pub(super) fn sensitivity(page: &Page<'_>) -> Markup {
                 }
                 @for bound in &report.bounds {
                     tr {
-                        td { (bound.rank) }
+                        td { @if let Some(rank) = bound.rank { (rank) } @else { (NONE) } }
                         th scope="row" { (bound.words) }
                         td.n { (number(bound.present.stated)) }
                         td.n { (number(bound.improved.stated)) }

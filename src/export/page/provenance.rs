@@ -70,6 +70,7 @@ fn about(name: &str) -> &'static str {
         "remap.geojson" => "Regions for a GIS or a survey crew",
         "suggest.json" => "Suggested dive points and headings, complete",
         "suggest.csv" => "One row for each suggestion",
+        "suggest-lines.csv" => "Suggested lines as waypoints, which `lines` reads",
         "suggest.png" => "Map of the suggestions",
         "suggest.geojson" => "Suggestions for a GIS",
         "suggest.gpx" => "Suggestions as routes",

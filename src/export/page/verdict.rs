@@ -23,6 +23,10 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
                 dd { (look_alikes(page)) }
                 dt { a href="#remap" { "What to map again" } }
                 dd { (remap(page.remap)) }
+                dt { a href="#suggest" { "Where to dive instead" } }
+                dd { (page.suggest.verdict) }
+                dt { a href="#sensitivity" { "Which error bound to improve first" } }
+                dd { (page.sensitivity.verdict.text) }
                 dt { a href="#assumptions" { "Under which assumptions" } }
                 dd { (assumptions(page)) }
             }
