@@ -1,8 +1,9 @@
 //! The page of a pack: what it says, that nothing of a user's text becomes markup, and how it behaves in a browser.
 //!
 //! The browser is Debian's `chromium`, driven by `playwright-core` and judged for accessibility by `axe-core`, both from
-//! the npm registry in the versions of `tests/browser/package-lock.json`, put into `target/browser` by `tests/run`. Without
-//! them these tests say what they skip, and pass; with `FIXABILITY_REQUIRE_READERS=1` they fail.
+//! the npm registry in the versions of `tests/browser/package-lock.json`, put into `target/browser` by
+//! `tests/browser/install`. Without them these tests say what they skip, and pass; with `FIXABILITY_REQUIRE_READERS=1` they
+//! fail.
 
 use std::fs;
 use std::path::{Path, PathBuf};
@@ -170,7 +171,7 @@ fn browser() -> Option<PathBuf> {
     for (there, what) in [
         (has_chromium, "chromium"),
         (has_node, "node"),
-        (has_modules, "playwright-core and axe-core (npm ci in target/browser)"),
+        (has_modules, "playwright-core and axe-core (tests/browser/install)"),
     ] {
         if !there {
             missing_reader(

@@ -136,8 +136,13 @@ fn close_view(ground: &Ground, event: &Event) -> String {
 
 /// A picture that the script fills; it is not shown without one, and cells that stand in the data need not stand here.
 fn empty_picture(ground: &Ground, trace: &TraceReport, event: &Event, view: &str, kind: &str) -> Markup {
-    let event =
-        Event { cells: String::new(), marks: String::new(), text: String::new(), short: event.short.clone(), ..*event };
+    let event = Event {
+        cells: String::new(),
+        marks: String::new(),
+        text: String::new(),
+        short: event.short.clone(),
+        ..*event
+    };
     picture(ground, trace, &event, view, kind)
 }
 

@@ -4,7 +4,7 @@ use maud::{Markup, html};
 
 use super::Page;
 use super::charts::chart;
-use super::table::{NONE, guaranteed, metres, number, per_cent, scrolling};
+use super::table::{NONE, guaranteed, metres, number, per_cent, scrolling, sentence};
 use crate::report::GuaranteedChange;
 
 pub(super) fn suggest(page: &Page<'_>) -> Markup {
@@ -52,7 +52,7 @@ pub(super) fn suggest(page: &Page<'_>) -> Markup {
                     &html! { "Suggestions, names as in the table " (guaranteed()) "." },
                 ))
             }
-            p { (report.verdict) }
+            p { (sentence(&report.verdict)) }
             @if !report.suggestions.is_empty() { (scrolling("Table of the suggestions", &table)) }
             p { (guaranteed()) " " (report.statement) " Starts: " (report.start_pattern) "." }
             @if report.undecided { p { "Some runs are undecided and count as runs without a fix." } }
@@ -117,7 +117,7 @@ pub(super) fn sensitivity(page: &Page<'_>) -> Markup {
                     &html! { "What each improvement gains " (guaranteed()) "." },
                 ))
             }
-            p { (report.verdict.text) }
+            p { (sentence(&report.verdict.text)) }
             (scrolling("Table of the error bounds", &table))
             p { (guaranteed()) " " (report.statement) }
             @if report.undecided { p { "Some runs are undecided and count as runs without a fix." } }

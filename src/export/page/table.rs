@@ -59,6 +59,13 @@ pub(super) fn number(value: f64) -> String {
     format!("{}", (value * 1e4).round() / 1e4)
 }
 
+/// A verdict as a sentence: it begins with a capital and ends with a stop.
+pub(super) fn sentence(text: &str) -> String {
+    let mut letters = text.chars();
+    let first: String = letters.next().map(|letter| letter.to_uppercase().collect()).unwrap_or_default();
+    format!("{first}{}{}", letters.as_str(), if text.ends_with('.') { "" } else { "." })
+}
+
 /// A count with its word.
 pub(super) fn count(number: usize, one: &str, many: &str) -> String {
     if number == 1 { format!("1 {one}") } else { format!("{number} {many}") }

@@ -3,7 +3,7 @@
 use maud::{Markup, html};
 
 use super::Page;
-use super::table::{count, estimated, guaranteed};
+use super::table::{count, estimated, guaranteed, sentence};
 use crate::report::{LookAlikeKind, RemapReport};
 
 pub(super) fn section(page: &Page<'_>) -> Markup {
@@ -24,9 +24,9 @@ pub(super) fn section(page: &Page<'_>) -> Markup {
                 dt { a href="#remap" { "What to map again" } }
                 dd { (remap(page.remap)) }
                 dt { a href="#suggest" { "Where to dive instead" } }
-                dd { (page.suggest.verdict) }
+                dd { (sentence(&page.suggest.verdict)) }
                 dt { a href="#sensitivity" { "Which error bound to improve first" } }
-                dd { (page.sensitivity.verdict.text) }
+                dd { (sentence(&page.sensitivity.verdict.text)) }
                 dt { a href="#assumptions" { "Under which assumptions" } }
                 dd { (assumptions(page)) }
             }
