@@ -353,3 +353,63 @@ fn sync_folder(folder: &Path) {
         let _ = handle.sync_all();
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+
+    fn folder_with(parent: &Path, name: &str, text: &str) -> PathBuf {
+        let folder = parent.join(name);
+        fs::create_dir(&folder).unwrap();
+        fs::write(folder.join("pack.json"), text).unwrap();
+        folder
+    }
+
+    fn text(folder: &Path) -> String {
+        fs::read_to_string(folder.join("pack.json")).unwrap()
+    }
+
+    #[test]
+    fn both_ways_of_exchanging_exchange() {
+        for way in [exchange, exchange_in_steps] {
+            let parent = tempfile::tempdir().unwrap();
+            let (new, old) =
+                (folder_with(parent.path(), "new", "new"), folder_with(parent.path(), "old", "old"));
+            way(&new, &old).unwrap();
+            assert_eq!((text(&new), text(&old)), ("old".to_owned(), "new".to_owned()));
+            assert_eq!(names_in(parent.path()).unwrap(), ["new", "old"]);
+        }
+    }
+
+    #[test]
+    fn an_exchange_in_steps_that_fails_puts_the_old_one_back() {
+        let parent = tempfile::tempdir().unwrap();
+        let old = folder_with(parent.path(), "old", "old");
+        assert!(exchange_in_steps(&parent.path().join("missing"), &old).is_err());
+        assert_eq!(text(&old), "old");
+    }
+
+    /// Killed between the steps: the name is free, and the old pack stands aside.
+    #[test]
+    fn a_pack_left_aside_gets_its_name_back() {
+        let parent = tempfile::tempdir().unwrap();
+        let target = parent.path().join("pack");
+        folder_with(parent.path(), ".fixability-pack-abc-old", "old");
+        folder_with(parent.path(), ".fixability-pack-abc", "new");
+        let error = prepare_pack(&target, true).unwrap_err();
+        assert!(matches!(error, ExportError::Restored(_)), "{error}");
+        assert_eq!(text(&target), "old");
+    }
+
+    /// A folder that its maker has locked is in use; one that nobody has locked was left behind.
+    #[test]
+    fn only_what_was_left_behind_is_removed() {
+        let parent = tempfile::tempdir().unwrap();
+        let in_use = folder_with(parent.path(), ".fixability-pack-aaa", "in use");
+        let left = folder_with(parent.path(), ".fixability-pack-bbb", "left");
+        let lock = File::open(&in_use).unwrap();
+        lock.try_lock().unwrap();
+        prepare_pack(&parent.path().join("pack"), false).unwrap();
+        assert!(in_use.is_dir() && !left.exists());
+    }
+}
