@@ -144,7 +144,7 @@ pub const KEYS: &[Key] = &[
         Without("no date on the outputs, and the same input gives the same bytes"),
         "Date of issue, printed on every output.",
     ),
-    key("map", "landmarks", Kind::File, Required, "Landmarks: CSV or GeoJSON points."),
+    key("map", "landmarks", Kind::File, Required, "Landmarks: CSV, GeoJSON points or KML points."),
     key("map", "crs", Kind::Crs, Required, "Coordinate system of the landmark file."),
     key(
         "map",
@@ -244,13 +244,15 @@ pub const KEYS: &[Key] = &[
         "files",
         Kind::Files,
         Required,
-        "Candidate lines: CSV waypoints, GeoJSON lines, GPX routes and tracks.",
+        "Candidate lines: CSV waypoints, GeoJSON lines, GPX routes and tracks, KML lines.",
     ),
     key(
         "lines",
         "crs",
         Kind::Crs,
-        Without("CSV: that of the landmarks; GeoJSON: WGS 84 latitude and longitude; GPX is always WGS 84"),
+        Without(
+            "CSV: that of the landmarks; GeoJSON: WGS 84 latitude and longitude; GPX and KML are always WGS 84",
+        ),
         "Coordinate system of the line files.",
     ),
     key(

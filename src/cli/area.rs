@@ -10,13 +10,13 @@ use super::run::{Exit, read, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
 use crate::dive::AreaOptions;
-use crate::export::{self, AreaCsv, AreaJson, Exporter};
+use crate::export::{self, AreaCsv, AreaJson, AreaTiff, Exporter};
 use crate::render::{self, AreaChart, ChartSize};
 use crate::report::AreaReport;
 
 /// Files that `area` writes.
 pub(super) const FILES: FileNames = FileNames {
-    always: &["area.json", "area.csv", "area-worst.png", "area-best.png", "area-share.png"],
+    always: &["area.json", "area.csv", "area.tif", "area-worst.png", "area-best.png", "area-share.png"],
     on_earth: &[],
 };
 
@@ -26,6 +26,7 @@ pub(super) fn files(report: &AreaReport, size: &ChartSize) -> Result<Vec<OutputF
     let bytes = vec![
         AreaJson.bytes(report)?,
         AreaCsv.bytes(report)?,
+        AreaTiff.bytes(report)?,
         chart(AreaChart::Worst)?,
         chart(AreaChart::Best)?,
         chart(AreaChart::Share)?,

@@ -155,8 +155,8 @@ pub enum Command {
     ///
     /// From the centre of each start cell a straight run on each heading is solved, lost in the whole search area, and the
     /// guaranteed fix distance is reported: worst, best and median heading, share of the headings that fix within the
-    /// required distance, and why the others do not. With --out, writes area.json, area.csv, area-worst.png,
-    /// area-best.png and area-share.png.
+    /// required distance, and why the others do not. With --out, writes area.json, area.csv, area.tif
+    /// (GeoTIFF), area-worst.png, area-best.png and area-share.png.
     Area {
         /// The dive file (TOML)
         dive: PathBuf,
@@ -178,11 +178,12 @@ pub enum Command {
     /// Runs the area map, joins the cells that fail the requirement into regions, and finds the cause of each by running
     /// the map again with one thing changed at a time: narrower landmark boxes, perfect dead reckoning, a perfect sonar.
     /// For each region it then looks for the re-survey quality that cures it, and runs the map with that quality to see
-    /// what it buys. With --out, writes remap.json, remap.csv, remap.geojson and remap.png. Keys: section [remap].
+    /// what it buys. With --out, writes remap.json, remap.csv, remap.png and, when the map is on the Earth, remap.geojson.
+    /// Keys: section [remap].
     Remap {
         /// The dive file (TOML)
         dive: PathBuf,
-        /// Folder for the four files (made if missing); without it nothing is written
+        /// Folder for the files (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
     },

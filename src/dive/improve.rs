@@ -75,7 +75,7 @@ impl ErrorBound {
         }
     }
 
-    /// The unit of [`Self::value_of`].
+    /// The unit in which its values are given.
     pub fn unit(self) -> &'static str {
         match self {
             Self::LandmarkBoxes | Self::RangeConstant | Self::Altitude => "m",

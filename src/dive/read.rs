@@ -230,8 +230,9 @@ fn refuse_without_effect(
     if !lines.is_empty() && lines.iter().all(|i| i.format() != Some(Format::Csv)) {
         refuse("lines", "decimal_comma", "no line file is CSV");
     }
-    if !lines.is_empty() && lines.iter().all(|i| i.format() == Some(Format::Gpx)) {
-        refuse("lines", "crs", "GPX is always WGS 84 latitude and longitude");
+    let is_fixed = |i: &InputText| matches!(i.format(), Some(Format::Gpx | Format::Kml));
+    if !lines.is_empty() && lines.iter().all(is_fixed) {
+        refuse("lines", "crs", "GPX and KML are always WGS 84 latitude and longitude");
     }
 }
 

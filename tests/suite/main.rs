@@ -13,6 +13,7 @@ mod demo;
 mod determinism;
 mod edge_cases;
 mod export;
+mod gis;
 mod guarantee;
 mod heavy;
 mod intervals;
@@ -26,8 +27,6 @@ mod oracle;
 mod pack;
 mod page;
 mod projection;
-#[path = "support/readers.rs"]
-mod readers;
 mod readme;
 mod remap;
 mod render;

@@ -12,7 +12,7 @@ use std::process::Command;
 use scraper::{Html, Selector};
 use serde_json::Value;
 
-use crate::readers::missing_reader;
+use crate::support::outside::left_out;
 use crate::support::program::{PROGRAM, Workplace, project};
 
 /// A text that would act if it became markup, in three ways of ending what surrounds it.
@@ -174,7 +174,7 @@ fn browser() -> Option<PathBuf> {
         (has_modules, "playwright-core and axe-core (tests/browser/install)"),
     ] {
         if !there {
-            missing_reader(
+            left_out(
                 what,
                 "the page in a browser: console, requests, slider, accessibility, narrow screen, print",
             );

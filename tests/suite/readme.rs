@@ -19,7 +19,7 @@ use crate::support::program::{Ran, Workplace, project};
 /// Set to 1 to write the made parts of the README and `reports/` instead of failing.
 const WRITE: &str = "FIXABILITY_WRITE_REPORTS";
 const MAIN_JOB: &str = "cargo run --release -- brief demo-data/dive.toml --out demo-out";
-const TESTS: &str = "cargo test --release";
+const TESTS: &str = "tests/run";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Where the pack of the demo is kept.

@@ -2,5 +2,6 @@
 
 pub mod demo;
 pub mod exact;
+pub mod outside;
 pub mod program;
 pub mod scenes;
