@@ -8,6 +8,7 @@ use clap_complete::Shell;
 use crate::alias::LISTED_DEFAULT;
 use crate::bounds;
 use crate::dive::RankBy;
+use crate::render::{ChartSize, Paper};
 
 /// What `--help` teaches after the options.
 const EXIT_CODES: &str = "\
@@ -54,6 +55,19 @@ pub struct Common {
     /// Threads to use; results do not depend on it [default: all cores]
     #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..))]
     pub threads: Option<u16>,
+    /// Paper of the charts, landscape
+    #[arg(long, global = true, value_enum, value_name = "PAPER", default_value = "a4")]
+    pub paper: Paper,
+    /// Resolution of the charts, dots per inch
+    #[arg(long, global = true, value_name = "NUMBER", default_value_t = 150, value_parser = clap::value_parser!(u32).range(150..=300))]
+    pub dpi: u32,
+}
+
+impl Common {
+    /// The size of every chart.
+    pub(super) fn chart_size(&self) -> ChartSize {
+        ChartSize::paper(self.paper, self.dpi)
+    }
 }
 
 /// The commands.
@@ -67,11 +81,26 @@ pub enum Command {
         /// The dive file (TOML)
         dive: PathBuf,
     },
+    /// Run everything, and write a pack for the briefing: one page to read or print, and all files
+    ///
+    /// Scores the lines, maps the area, finds look-alikes and the ground to map again, suggests dive points, improves each
+    /// error bound in turn, and follows one simulated dive of each line. The pack is a folder: index.html holds the verdict, the charts and the tables in one page that needs
+    /// nothing else; pack.json lists every file with its SHA-256. The folder appears whole, or stays as it was.
+    Brief {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder of the pack: a new one, an empty one, or with --force an earlier pack
+        #[arg(long, value_name = "FOLDER")]
+        out: PathBuf,
+        /// Exit with code 1 unless this share of the first-ranked line has a guaranteed fix within the required distance
+        #[arg(long, value_name = "SHARE", value_parser = share)]
+        require: Option<f64>,
+    },
     /// Score and rank the candidate lines; draw them coloured by fix distance
     ///
     /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors
     /// are solved from an unknown start, and the distance until the position is unambiguous is counted. With --out,
-    /// writes lines.json, lines.csv and lines.png; and, where the map is tied to the Earth, lines.geojson and
+    /// writes lines.json, lines.csv, lines.png and profiles.png; and, where the map is tied to the Earth, lines.geojson and
     /// recommended.gpx (the first-ranked line as a route).
     Lines {
         /// The dive file (TOML)

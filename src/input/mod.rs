@@ -128,7 +128,7 @@ impl InputText {
 
     /// Takes the bytes of a file apart: fingerprint, byte-order mark, encoding, control characters.
     pub fn new(mut bytes: Vec<u8>, name: &Path, findings: &mut Findings) -> Option<Self> {
-        let sha256 = Sha256::digest(&bytes).iter().map(|b| format!("{b:02x}")).collect();
+        let sha256 = fingerprint(&bytes);
         if bytes.starts_with(&[0xFF, 0xFE]) || bytes.starts_with(&[0xFE, 0xFF]) {
             findings.problem(
                 Problem::new(name, "is UTF-16 text").accepted("UTF-8 text").advice("save the file as UTF-8"),
@@ -186,6 +186,11 @@ impl InputText {
             },
         }
     }
+}
+
+/// SHA-256 in hexadecimal digits.
+pub fn fingerprint(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|b| format!("{b:02x}")).collect()
 }
 
 /// Rows that could not be used, kept apart until the whole file is read: they stop the run, or they are left out and

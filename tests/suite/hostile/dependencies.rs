@@ -26,8 +26,13 @@ fn cargo_toml() -> toml::Table {
     include_str!("../../../Cargo.toml").parse().unwrap()
 }
 
+/// Names in a table of Cargo.toml, and in the same one for a platform.
 fn names(table: &str) -> BTreeSet<String> {
-    cargo_toml()[table].as_table().unwrap().keys().cloned().collect()
+    let manifest = cargo_toml();
+    let of_platforms =
+        manifest.get("target").and_then(toml::Value::as_table).into_iter().flat_map(|t| t.values());
+    let tables = of_platforms.filter_map(|platform| platform.get(table)).chain(manifest.get(table));
+    tables.flat_map(|table| table.as_table().unwrap().keys().cloned()).collect()
 }
 
 #[test]
