@@ -4,6 +4,7 @@
 //! simulated dives and carries a confidence interval. The two stand in fields of their own.
 
 mod area;
+mod brief;
 mod check;
 mod ensemble;
 mod guarantee;
@@ -16,6 +17,7 @@ mod suggest;
 mod trace;
 
 pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
+pub use brief::verdict;
 pub use check::{check, line_notices};
 pub use line::score_lines;
 pub use remap::{

@@ -81,6 +81,21 @@ pub enum Command {
         /// The dive file (TOML)
         dive: PathBuf,
     },
+    /// Run everything, and write a pack for the briefing: one page to read or print, and all files
+    ///
+    /// Scores the lines, maps the area, finds look-alikes and the ground to map again, suggests dive points, improves each
+    /// error bound in turn, and follows one simulated dive of each line. The pack is a folder: index.html holds the verdict, the charts and the tables in one page that needs
+    /// nothing else; pack.json lists every file with its SHA-256. The folder appears whole, or stays as it was.
+    Brief {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder of the pack: a new one, an empty one, or with --force an earlier pack
+        #[arg(long, value_name = "FOLDER")]
+        out: PathBuf,
+        /// Exit with code 1 unless this share of the first-ranked line has a guaranteed fix within the required distance
+        #[arg(long, value_name = "SHARE", value_parser = share)]
+        require: Option<f64>,
+    },
     /// Score and rank the candidate lines; draw them coloured by fix distance
     ///
     /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors

@@ -4,7 +4,9 @@
 
 mod area;
 mod args;
+mod brief;
 mod lookalikes;
+mod output;
 mod remap;
 mod run;
 mod sensitivity;

@@ -1,13 +1,15 @@
 //! Runs a command.
 
-use std::path::{Path, PathBuf};
+use std::path::Path;
 
 use anyhow::{Context, Result};
 use clap::{CommandFactory, Parser};
 
 use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
+use super::brief::{BriefRequest, brief};
 use super::lookalikes::{lookalikes, mark_look_alikes};
+use super::output::{FileNames, OutputFile};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
 use super::sensitivity::sensitivity;
 use super::suggest::suggest;
@@ -17,8 +19,8 @@ use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
-use crate::render;
-use crate::report::LinesReport;
+use crate::render::{self, ChartSize};
+use crate::report::{Cause, LinesReport, SegmentReport};
 
 /// How the program ends.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -58,6 +60,9 @@ fn run(arguments: &Arguments) -> Result<Exit> {
     }
     match &arguments.command {
         Command::Check { dive } => check(dive, common),
+        Command::Brief { dive, out, require } => {
+            brief(dive, &BriefRequest { out, require: *require }, common)
+        }
         Command::Lines { dive, out, mark_remap, rank_by, draws, require } => {
             let asked = LinesOptions {
                 out: out.as_deref(),
@@ -126,6 +131,12 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
     Ok(Exit::Done)
 }
 
+/// Files that `lines` writes.
+pub(super) const LINES_FILES: FileNames = FileNames {
+    always: &["lines.json", "lines.csv", "lines.png", "profiles.png"],
+    on_earth: &["lines.geojson", "recommended.gpx"],
+};
+
 /// What `lines` was asked beyond the dive file.
 struct LinesOptions<'a> {
     out: Option<&'a Path>,
@@ -149,13 +160,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         refuse_huge(&setup)?;
     }
-    let mut names = vec!["lines.json", "lines.csv", "lines.png", "profiles.png"];
-    if !dive.frame.is_local() {
-        names.extend(["lines.geojson", "recommended.gpx"]);
-    }
-    if let Some(out) = asked.out {
-        export::prepare(out, &names, common.force)?;
-    }
+    LINES_FILES.prepare(asked.out, &dive.frame, common)?;
     let bar = progress_bar(dive.lines.len() * dive.scoring.draws, common.quiet);
     let mut report = assess::score_lines(&setup, &|| bar.inc(1));
     bar.finish_and_clear();
@@ -163,31 +168,32 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         mark_remap_regions(&setup, &mut report, common);
     }
-    let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
-        let size = common.chart_size();
-        let mut files = vec![
-            (names[0], json.clone()),
-            (names[1], LinesCsv.bytes(&report)?),
-            (names[2], render::lines_png(&report, &size)?),
-            (names[3], render::profiles_png(&report, &size)?),
-        ];
-        if dive.frame.is_local() {
-            say_local_metres(&["lines.geojson", "recommended.gpx"], common);
-        } else {
-            files.push((names[4], LinesGeoJson.bytes(&report)?));
-            files.push((names[5], RecommendedGpx.bytes(&report)?));
-        }
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &names, common);
+        LINES_FILES.write(out, &lines_files(&report, &common.chart_size())?, common)?;
     }
-    let text = if common.json { json } else { export::lines_table(&report).into_bytes() };
+    let text =
+        if common.json { LinesJson.bytes(&report)? } else { export::lines_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     Ok(lines_exit(&report, asked.require, common))
 }
 
+/// The files of scored lines.
+pub(super) fn lines_files(report: &LinesReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
+    let mut bytes = vec![
+        LinesJson.bytes(report)?,
+        LinesCsv.bytes(report)?,
+        render::lines_png(report, size)?,
+        render::profiles_png(report, size)?,
+    ];
+    if !report.provenance.frame.is_local() {
+        bytes.push(LinesGeoJson.bytes(report)?);
+        bytes.push(RecommendedGpx.bytes(report)?);
+    }
+    Ok(LINES_FILES.with(bytes))
+}
+
 /// The exit code of `lines`, with the reason on standard error.
-fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
+pub(super) fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Exit {
     if let Some(required) = require {
         let best = report.lines.iter().find(|line| line.rank == 1);
         let reached = best.and_then(|line| line.guaranteed).map_or(0.0, |sum| sum.within_required_share);
@@ -213,32 +219,44 @@ fn lines_exit(report: &LinesReport, require: Option<f64>, common: &Common) -> Ex
             .to_owned();
         print_notices([&warning(text)], common.quiet);
     }
+    let mut exit = Exit::Done;
+    let mut undecided = |what: &str, count_as: &str| {
+        let text = format!(
+            "{what} undecided: the solver ran out of its cell budget; they count as {count_as}; raise \
+             scoring.cell_budget to decide them"
+        );
+        print_notices([&warning(text)], common.quiet);
+        exit = Exit::Undecided;
+    };
     if report.lines.iter().any(|line| line.estimated.undecided_share > 0.0) {
-        print_notices([&warning(
-            "some dives are undecided: the solver ran out of its cell budget; they count as dives without a fix; \
-             raise scoring.cell_budget to decide them"
-                .to_owned(),
-        )], common.quiet);
-        return Exit::Undecided;
+        undecided("some dives are", "dives without a fix");
     }
-    Exit::Done
+    let cause = |segment: &SegmentReport| segment.guaranteed.as_ref().and_then(|fix| fix.cause);
+    if report
+        .lines
+        .iter()
+        .flat_map(|line| &line.segments)
+        .any(|segment| cause(segment) == Some(Cause::Undecided))
+    {
+        undecided("the guarantees of some segments are", "segments without a guaranteed fix");
+    }
+    exit
 }
+
+/// Files that `trace` writes.
+const TRACE_FILES: FileNames = FileNames { always: &["trace.json", "trace.png"], on_earth: &[] };
 
 fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Common) -> Result<Exit> {
     let dive = read(path, common)?;
     print_notices(dive.notices.iter().filter(|notice| notice.is_warning), common.quiet);
-    if let Some(out) = out {
-        export::prepare(out, &["trace.json", "trace.png"], common.force)?;
-    }
+    TRACE_FILES.prepare(out, &dive.frame, common)?;
     let report = assess::trace(&Setup::new(&dive), request)?;
-    let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
-        let files =
-            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &common.chart_size())?)];
-        export::write_all(out, &files, common.force)?;
-        say_written(out, &files.map(|(name, _)| name), common);
+        let bytes = vec![TraceJson.bytes(&report)?, render::trace_png(&report, &common.chart_size())?];
+        TRACE_FILES.write(out, &TRACE_FILES.with(bytes), common)?;
     }
-    let text = if common.json { json } else { export::trace_table(&report).into_bytes() };
+    let text =
+        if common.json { TraceJson.bytes(&report)? } else { export::trace_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;
     if report.contradiction.is_some() {
         let text = "no position explains the detections: an error bound, the map or the stray budget does not hold. With \
@@ -261,21 +279,4 @@ pub(super) fn undecided_runs(common: &Common) -> Exit {
 
 pub(super) fn warning(text: String) -> Notice {
     Notice { file: None, text, is_warning: true }
-}
-
-/// Says which files are not written because the map is in local metres.
-pub(super) fn say_local_metres(names: &[&str], common: &Common) {
-    let verb = if names.len() == 1 { "is" } else { "are" };
-    let text = format!(
-        "{} {verb} not written: such files hold latitude and longitude, and this map is in local metres",
-        names.join(", ")
-    );
-    print_notices([&Notice { file: None, text, is_warning: false }], common.quiet);
-}
-
-/// Names the files written.
-pub(super) fn say_written(out: &Path, names: &[&str], common: &Common) {
-    let paths: Vec<PathBuf> = names.iter().map(|name| out.join(name)).collect();
-    let text = paths.iter().map(|path| path.display().to_string()).collect::<Vec<_>>().join(", ");
-    print_notices([&Notice { file: None, text: format!("wrote {text}"), is_warning: false }], common.quiet);
 }

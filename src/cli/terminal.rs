@@ -54,3 +54,50 @@ pub(super) fn runs_bar(quiet: bool) -> ProgressBar {
         .expect("the template is fixed and valid");
     ProgressBar::with_draw_target(Some(0), target).with_style(style)
 }
+
+/// The steps of a long job: one line on standard error that names the step, its place among all, and how far it is.
+#[derive(Debug)]
+pub(super) struct Steps {
+    count: usize,
+    begun: usize,
+    quiet: bool,
+    bar: ProgressBar,
+}
+
+impl Steps {
+    /// `count` steps to come.
+    pub fn new(count: usize, quiet: bool) -> Self {
+        Self { count, begun: 0, quiet, bar: ProgressBar::hidden() }
+    }
+
+    /// Ends the step before and begins the next: with a bar over a number of somethings, or with its name alone where
+    /// nothing can be counted.
+    pub fn next(&mut self, name: &str, over: Option<(usize, &str)>) -> &ProgressBar {
+        let progress = match over {
+            Some((_, what)) => format!(" {{bar:30}} {{pos}}/{{len}} {what}, {{eta}} left"),
+            None => String::new(),
+        };
+        self.begin(name, &progress, over.map_or(0, |(count, _)| count))
+    }
+
+    /// The same with a number that grows as the step finds out what to do next.
+    pub fn next_growing(&mut self, name: &str, what: &str) -> &ProgressBar {
+        self.begin(name, &format!(" {{bar:30}} {{pos}}/{{len}} {what} so far planned"), 0)
+    }
+
+    fn begin(&mut self, name: &str, progress: &str, count: usize) -> &ProgressBar {
+        self.bar.finish_and_clear();
+        self.begun += 1;
+        let target = if self.quiet { ProgressDrawTarget::hidden() } else { ProgressDrawTarget::stderr() };
+        let template = format!("step {} of {}, {name}{progress}", self.begun, self.count);
+        let style = ProgressStyle::with_template(&template).expect("the template is valid");
+        self.bar = ProgressBar::with_draw_target(Some(count as u64), target).with_style(style);
+        self.bar.tick();
+        &self.bar
+    }
+
+    /// Ends the last step.
+    pub fn finish(&self) {
+        self.bar.finish_and_clear();
+    }
+}

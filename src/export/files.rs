@@ -9,7 +9,7 @@ use tempfile::{Builder, NamedTempFile};
 use super::ExportError;
 
 /// Beginning of the names of temporary files, so that a file left by a power cut can be recognised.
-const TEMPORARY_PREFIX: &str = ".fixability-";
+pub(super) const TEMPORARY_PREFIX: &str = ".fixability-";
 
 /// Checks before a long run that `names` can be written into `dir`: none of them is there already (unless `force`),
 /// and a file can be made in the folder, or in the nearest folder above it that exists. Leaves nothing behind.
@@ -75,14 +75,14 @@ fn refuse_existing(dir: &Path, names: &[&str], force: bool) -> Result<(), Export
     if names.is_empty() || force { Ok(()) } else { Err(ExportError::Exists { dir: dir.to_owned(), names }) }
 }
 
-fn nearest_existing(dir: &Path) -> PathBuf {
+pub(super) fn nearest_existing(dir: &Path) -> PathBuf {
     let named = dir.ancestors().find(|path| path.exists() && !path.as_os_str().is_empty());
     // A relative path with no existing part starts in the current folder.
     named.map_or_else(|| PathBuf::from("."), Path::to_owned)
 }
 
 /// A temporary file with the permissions a new file normally gets.
-fn temporary(dir: &Path) -> Result<NamedTempFile, ExportError> {
+pub(super) fn temporary(dir: &Path) -> Result<NamedTempFile, ExportError> {
     let mut builder = Builder::new();
     builder.prefix(TEMPORARY_PREFIX);
     #[cfg(unix)]
@@ -94,6 +94,6 @@ fn temporary(dir: &Path) -> Result<NamedTempFile, ExportError> {
     builder.tempfile_in(dir).map_err(|error| failed(dir, "write into this folder", error))
 }
 
-fn failed(path: &Path, what: &'static str, source: std::io::Error) -> ExportError {
+pub(super) fn failed(path: &Path, what: &'static str, source: std::io::Error) -> ExportError {
     ExportError::Io { path: path.to_owned(), what, source }
 }

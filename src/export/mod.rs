@@ -1,4 +1,5 @@
-//! Exporters: one report value in, bytes out. Only [`write_all`] and [`prepare`] touch the file system.
+//! Exporters: one report value in, bytes out. Only [`prepare`], [`write_all`], [`prepare_pack`] and
+//! [`write_pack`] touch the file system.
 //!
 //! Data files carry full precision and the names of their units; a missing value is empty or absent, never zero.
 
@@ -13,6 +14,8 @@ mod gpx;
 mod json;
 mod landmarks;
 mod lookalikes;
+mod pack;
+mod page;
 mod remap;
 mod sensitivity;
 mod suggest;
@@ -26,10 +29,12 @@ pub use gpx::RecommendedGpx;
 pub use json::{LinesJson, TraceJson, check_json};
 pub use landmarks::LandmarksGeoJson;
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
+pub use pack::{BriefJson, PACK_SCHEMA, PackInProgress, pack_files, prepare_pack, write_pack};
+pub use page::{Page, page_html};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
 pub use sensitivity::{SensitivityCsv, SensitivityJson, sensitivity_table};
 pub use suggest::{SuggestCsv, SuggestGeoJson, SuggestGpx, SuggestJson, SuggestLinesCsv, suggest_table};
-pub use table::{check_text, lines_table, trace_table};
+pub use table::{brief_text, check_text, lines_table, trace_table};
 
 use std::path::PathBuf;
 
@@ -63,6 +68,28 @@ pub enum ExportError {
     /// The output folder's path names something that is not a folder.
     #[error("{}: not a folder, so no output can be written there; name a folder", .0.display())]
     NotAFolder(PathBuf),
+    /// The folder for a pack holds files that are no part of an earlier pack.
+    #[error(
+        "{}: a pack replaces the whole folder, and this one holds files that are not of an earlier pack: {}; nothing was \
+         written; choose another folder, or move these files away", .dir.display(), some(.names)
+    )]
+    Foreign {
+        /// The output folder.
+        dir: PathBuf,
+        /// The files that are there.
+        names: Vec<String>,
+    },
+    /// The path names something that a pack cannot stand at.
+    #[error("{}: no place for a pack: {reason}; name a new folder", .path.display())]
+    PackPlace {
+        /// The path.
+        path: PathBuf,
+        /// Why.
+        reason: String,
+    },
+    /// A pack that a killed run had moved aside was put back.
+    #[error("{}: an earlier run was killed while it replaced this pack; the old pack is back in place; run again, with --force to replace it", .0.display())]
+    Restored(PathBuf),
     /// A folder or file could not be made, written or put in place.
     #[error("{}: cannot {what}: {source}; {}", .path.display(), advice(.source))]
     Io {
@@ -81,6 +108,16 @@ pub enum ExportError {
         /// What the format's library answered.
         reason: String,
     },
+}
+
+/// The first names of a list, and how many more there are.
+fn some(names: &[String]) -> String {
+    const SHOWN: usize = 10;
+    let shown = names.iter().take(SHOWN).map(String::as_str).collect::<Vec<_>>().join(", ");
+    match names.len().saturating_sub(SHOWN) {
+        0 => shown,
+        more => format!("{shown} and {more} more"),
+    }
 }
 
 /// What a user can do about a failed write.

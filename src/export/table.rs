@@ -4,7 +4,7 @@ use comfy_table::presets::ASCII_FULL_CONDENSED;
 use comfy_table::{Cell, CellAlignment, ContentArrangement, Table};
 
 use crate::report::{
-    CheckReport, Contradiction, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport,
+    BriefReport, CheckReport, Contradiction, Estimate, HindsightEvent, LineReport, LinesReport, TraceReport,
 };
 
 /// The ranking of the lines, best first. Figures are estimates from simulated dives.
@@ -57,6 +57,21 @@ pub fn lines_table(report: &LinesReport) -> String {
         table.trim_fmt(),
         report.provenance.seed,
     )
+}
+
+/// The verdict of a briefing in words, and the ranking under it.
+pub fn brief_text(report: &BriefReport, lines: &LinesReport) -> String {
+    let verdict = &report.verdict;
+    let mut text = format!("{}\n{} {}.\n", verdict.headline, verdict.figure, verdict.figure_means);
+    text.push_str(&format!("{} {}\n", verdict.abort_headline, verdict.abort_rule));
+    for (kind, sentences) in [("Guaranteed", &verdict.guaranteed), ("Estimated", &verdict.estimated)] {
+        for sentence in sentences {
+            text.push_str(&format!("{kind}: {sentence}\n"));
+        }
+    }
+    // Names come from files; what steers a terminal does not get through.
+    let text: String = text.lines().map(|line| printable(line) + "\n").collect();
+    format!("{text}\n{}", lines_table(lines))
 }
 
 /// The events of one simulated dive.

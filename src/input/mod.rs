@@ -63,7 +63,7 @@ impl InputText {
 
     /// Takes the bytes of a file apart: fingerprint, byte-order mark, encoding.
     pub fn from_bytes(bytes: &[u8], name: &Path, findings: &mut Findings) -> Option<Self> {
-        let sha256 = Sha256::digest(bytes).iter().map(|b| format!("{b:02x}")).collect();
+        let sha256 = fingerprint(bytes);
         if bytes.starts_with(&[0xFF, 0xFE]) || bytes.starts_with(&[0xFE, 0xFF]) {
             findings.problem(
                 Problem::new(name, "is UTF-16 text").accepted("UTF-8 text").advice("save the file as UTF-8"),
@@ -123,6 +123,11 @@ impl InputText {
     pub fn line_at(&self, offset: usize) -> u64 {
         line_at(&self.text, offset)
     }
+}
+
+/// SHA-256 in hexadecimal digits.
+pub fn fingerprint(bytes: &[u8]) -> String {
+    Sha256::digest(bytes).iter().map(|b| format!("{b:02x}")).collect()
 }
 
 /// Line number, from 1, of a byte offset into `text`.

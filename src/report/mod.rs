@@ -3,6 +3,7 @@
 //! *Units.* In every key name. *Missing* is `None`, never zero.
 
 mod area;
+mod brief;
 mod landmarks;
 mod lookalikes;
 mod remap;
@@ -10,6 +11,7 @@ mod sensitivity;
 mod suggest;
 
 pub use area::{AREA_STATEMENT, AreaCell, AreaGrid, AreaReport, NoFixCounts, RunOutcome};
+pub use brief::{AbortDistance, BriefReport, Finding, PackFile, Verdict};
 pub use landmarks::{LandmarksReport, MapLandmark};
 pub use lookalikes::{
     ChartLine, LOOK_ALIKE_STATEMENT, LookAlike, LookAlikeKind, LookAlikeStretch, LookAlikesReport, Period,

@@ -26,6 +26,8 @@ mod look_alike_chance;
 mod moved;
 mod one_dimension;
 mod oracle;
+mod pack;
+mod page;
 mod projection;
 mod readme;
 mod remap;
@@ -44,3 +46,4 @@ mod support;
 #[path = "support/template.rs"]
 mod template;
 mod tightness;
+mod verdict;

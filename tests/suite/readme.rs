@@ -1,7 +1,7 @@
 //! The README: its commands run, its tables are those of the program, its pictures are current. And the table of
 //! layers in DEVELOPERS.md is the one that is enforced.
 //!
-//! Parts between `<!-- begin: … -->` and `<!-- end: … -->` and the pictures in `reports/` are made here:
+//! Parts between `<!-- begin: … -->` and `<!-- end: … -->` and the pack of the demo in `reports/demo` are made here:
 //! `FIXABILITY_WRITE_REPORTS=1 cargo test --release --test suite readme` writes them anew.
 
 use std::collections::{BTreeMap, BTreeSet};
@@ -18,19 +18,17 @@ use crate::support::program::{Ran, Workplace, project};
 
 /// Set to 1 to write the made parts of the README and `reports/` instead of failing.
 const WRITE: &str = "FIXABILITY_WRITE_REPORTS";
-const MAIN_JOB: &str = "cargo run --release -- lines demo-data/dive.toml --out demo-out";
+const MAIN_JOB: &str = "cargo run --release -- brief demo-data/dive.toml --out demo-out";
 const TESTS: &str = "tests/run";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
-/// Pictures of `reports/` and the outputs that they are.
-const PICTURES: [(&str, &str); 6] = [
-    ("reports/lines.png", "demo-out/lines.png"),
-    ("reports/trace.png", "demo-out/trace.png"),
-    ("reports/lookalikes.png", "demo-out/lookalikes.png"),
-    ("reports/lookalikes-panels.png", "demo-out/lookalikes-panels.png"),
-    ("reports/area-best.png", "demo-out/area-best.png"),
-    ("reports/remap.png", "demo-out/remap.png"),
-];
+/// Where the pack of the demo is kept.
+const PACK: &str = "reports/demo";
+/// Files of the pack that are too large to keep; `pack.json` has their SHA-256.
+const NOT_KEPT: [&str; 2] = ["area.csv", "area.json"];
+/// Pictures of the pack that the README shows.
+const PICTURES: [&str; 6] =
+    ["lines.png", "trace-1.png", "lookalikes.png", "lookalikes-panels.png", "area-best.png", "remap.png"];
 
 /// A fenced block: language, file name (may be empty), text.
 struct Block {
@@ -80,7 +78,7 @@ static README: LazyLock<Readme> = LazyLock::new(|| {
     };
     let mut made = on_disk.clone();
     for (part, text) in [
-        ("demo ranking", printed("lines demo-data/dive.toml")),
+        ("demo verdict", printed("brief demo-data/dive.toml")),
         ("demo look-alikes", printed("lookalikes demo-data/dive.toml")),
         ("example ranking", printed("lines mydive.toml")),
         ("keys", keys_table()),
@@ -89,13 +87,27 @@ static README: LazyLock<Readme> = LazyLock::new(|| {
     }
     if std::env::var(WRITE).is_ok_and(|value| value == "1") {
         fs::write(project("README.md"), &made).expect("the README can be written");
-        for (picture, output) in PICTURES {
-            fs::write(project(picture), &outputs[output]).expect("the picture can be written");
+        let _ = fs::remove_dir_all(project(PACK));
+        fs::create_dir_all(project(PACK)).expect("the folder can be made");
+        for (name, bytes) in kept(&outputs) {
+            fs::write(project(PACK).join(name), bytes).expect("a file of the pack can be written");
         }
         return Readme { on_disk: made.clone(), made, ran, outputs };
     }
     Readme { on_disk, made, ran, outputs }
 });
+
+/// The files of the demo's pack that are kept.
+fn kept(outputs: &BTreeMap<String, Vec<u8>>) -> BTreeMap<&str, &[u8]> {
+    let pack =
+        outputs.iter().filter_map(|(name, bytes)| Some((name.strip_prefix("demo-out/")?, bytes.as_slice())));
+    pack.filter(|(name, _)| !NOT_KEPT.contains(name)).collect()
+}
+
+/// A file of the pack that the README's main command made. The one run serves all tests.
+pub fn demo_pack(name: &str) -> &'static [u8] {
+    &README.outputs[&format!("demo-out/{name}")]
+}
 
 /// Fenced blocks of a Markdown text.
 fn blocks(text: &str) -> Vec<Block> {
@@ -195,27 +207,14 @@ fn every_command_of_the_readme_runs() {
         assert!(!ran.stderr.contains("warning"), "{command} warns: {}", ran.stderr);
     }
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
+    let pack: serde_json::Value = serde_json::from_slice(demo_pack("pack.json")).expect("pack.json is JSON");
+    let listed = pack["files"].as_array().expect("a list").iter().filter_map(|file| file["name"].as_str());
+    let mut all: Vec<String> = listed.chain(["pack.json"]).map(|name| format!("demo-out/{name}")).collect();
+    assert!(all.len() > 20, "{all:?}");
+    for name in ["index.html", "lines.png", "area.csv", "lookalikes.json", "remap.geojson", "trace-4.png"] {
+        assert!(all.contains(&format!("demo-out/{name}")), "{name}");
+    }
     let scores = ["lines.csv", "lines.geojson", "lines.json", "lines.png", "profiles.png", "recommended.gpx"];
-    let others = [
-        "area-best.png",
-        "area-share.png",
-        "area-worst.png",
-        "area.csv",
-        "area.json",
-        "area.tif",
-        "lookalikes-panels.png",
-        "lookalikes.csv",
-        "lookalikes.geojson",
-        "lookalikes.json",
-        "lookalikes.png",
-        "remap.csv",
-        "remap.geojson",
-        "remap.json",
-        "remap.png",
-        "trace.json",
-        "trace.png",
-    ];
-    let mut all: Vec<String> = scores.iter().chain(&others).map(|name| format!("demo-out/{name}")).collect();
     all.extend(scores.iter().map(|name| format!("results/{name}")));
     all.sort();
     assert_eq!(names, all);
@@ -238,31 +237,21 @@ fn every_key_is_in_the_readme() {
     assert_eq!(listed, known);
 }
 
-/// Differences that another processor's arithmetic may cause at the edges of shapes: one pixel in a thousand.
-const PIXELS_THAT_MAY_DIFFER: f64 = 1e-3;
-
-fn pixels(bytes: &[u8]) -> (u32, u32, Vec<u8>) {
-    let mut reader = png::Decoder::new(std::io::Cursor::new(bytes)).read_info().expect("a PNG file");
-    let mut pixels = vec![0; reader.output_buffer_size().expect("it fits into memory")];
-    let info = reader.next_frame(&mut pixels).expect("a whole picture");
-    pixels.truncate(info.buffer_size());
-    (info.width, info.height, pixels)
-}
-
 #[test]
-fn pictures_of_the_readme_are_current() {
-    for (picture, output) in PICTURES {
-        assert!(README.on_disk.contains(&format!("]({picture})")), "{picture} is shown");
-        let (width, height, shown) = pixels(&fs::read(project(picture)).expect(picture));
-        let (now_width, now_height, now) = pixels(&README.outputs[output]);
-        assert_eq!((width, height, shown.len()), (now_width, now_height, now.len()), "{picture}");
-        let differing = shown.iter().zip(&now).filter(|(a, b)| a != b).count();
-        let share = differing as f64 / now.len() as f64;
-        assert!(
-            share <= PIXELS_THAT_MAY_DIFFER,
-            "{picture} is out of date ({share:.4} of it differs); {WRITE}=1 cargo test --release --test suite readme \
-             writes it anew"
-        );
+fn the_pack_of_the_demo_is_current() {
+    let anew = format!("{WRITE}=1 cargo test --release --test suite readme writes it anew");
+    let made = kept(&README.outputs);
+    let on_disk: BTreeSet<String> = fs::read_dir(project(PACK))
+        .unwrap_or_else(|e| panic!("{PACK}: {e}; {anew}"))
+        .map(|entry| entry.expect("an entry").file_name().to_string_lossy().into_owned())
+        .collect();
+    assert_eq!(on_disk, made.keys().map(|name| (*name).to_owned()).collect(), "{anew}");
+    for (name, bytes) in made {
+        let kept = fs::read(project(PACK).join(name)).expect(name);
+        assert!(kept == bytes, "{PACK}/{name} is out of date; {anew}");
+    }
+    for picture in PICTURES {
+        assert!(README.on_disk.contains(&format!("]({PACK}/{picture})")), "{picture} is shown");
     }
 }
 
@@ -415,6 +404,7 @@ fn commands_and_options_are_those_of_the_help() {
     let mut known = BTreeSet::new();
     for command in [
         "",
+        "brief",
         "check",
         "lines",
         "area",
