@@ -74,7 +74,7 @@ pub(super) fn area(path: &Path, asked: &AreaRequest<'_>, common: &Common) -> Res
     let report = assess::area(&setup, &options, &|count| bar.inc(count as u64));
     bar.finish_and_clear();
     if let Some(out) = asked.out {
-        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &common.chart_size())?, common)?;
     }
     let text = if common.json { AreaJson.bytes(&report)? } else { export::area_table(&report).into_bytes() };
     print_result(&text).context("standard output")?;

@@ -57,7 +57,7 @@ pub(super) fn brief(path: &Path, asked: &BriefRequest<'_>, common: &Common) -> R
     let mut steps = Steps::new(8, common.quiet);
     let found = find(&setup, &mut steps, common)?;
     steps.next("charts and page", None);
-    let files = files(&found, &ChartSize::default())?;
+    let files = files(&found, &common.chart_size())?;
     let report = BriefReport {
         provenance: setup.provenance(PACK_SCHEMA),
         verdict: found.verdict.clone(),
@@ -143,6 +143,15 @@ fn files(found: &Findings, size: &ChartSize) -> Result<Vec<(String, Vec<u8>)>> {
     }
     let names: Vec<String> =
         files.iter().map(|(name, _)| name.clone()).chain(["pack.json".to_owned()]).collect();
+    // The page has its charts at one size, whatever that of the files: it is to be sent, and is read on a screen.
+    let of_page: Vec<(String, Vec<u8>)>;
+    let charts = if *size == ChartSize::default() {
+        &files
+    } else {
+        let all = of_commands(&ChartSize::default())?.into_iter();
+        of_page = all.map(|(name, bytes)| (name.to_owned(), bytes)).collect();
+        &of_page
+    };
     let page = Page {
         verdict: &found.verdict,
         lines: &found.lines,
@@ -152,7 +161,7 @@ fn files(found: &Findings, size: &ChartSize) -> Result<Vec<(String, Vec<u8>)>> {
         suggest: &found.suggest,
         sensitivity: &found.sensitivity,
         traces: &found.traces,
-        charts: &files,
+        charts,
         files: &names,
     };
     let page = export::page_html(&page);

@@ -34,7 +34,7 @@ pub(super) fn lookalikes(
     FILES.prepare(out, &dive.frame, common)?;
     let report = found(&Setup::new(&dive), request);
     if let Some(out) = out {
-        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &common.chart_size())?, common)?;
     }
     let text = if common.json {
         LookAlikesJson.bytes(&report)?

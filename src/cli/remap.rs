@@ -35,7 +35,7 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
     FILES.prepare(out, &dive.frame, common)?;
     let report = analyse(&setup, &runs_bar(common.quiet));
     if let Some(out) = out {
-        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &common.chart_size())?, common)?;
     }
     let text =
         if common.json { RemapJson.bytes(&report)? } else { export::remap_table(&report).into_bytes() };

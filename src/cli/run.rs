@@ -133,7 +133,7 @@ fn check(path: &Path, common: &Common) -> Result<Exit> {
 
 /// Files that `lines` writes.
 pub(super) const LINES_FILES: FileNames = FileNames {
-    always: &["lines.json", "lines.csv", "lines.png"],
+    always: &["lines.json", "lines.csv", "lines.png", "profiles.png"],
     on_earth: &["lines.geojson", "recommended.gpx"],
 };
 
@@ -169,7 +169,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
         mark_remap_regions(&setup, &mut report, common);
     }
     if let Some(out) = asked.out {
-        LINES_FILES.write(out, &lines_files(&report, &ChartSize::default())?, common)?;
+        LINES_FILES.write(out, &lines_files(&report, &common.chart_size())?, common)?;
     }
     let text =
         if common.json { LinesJson.bytes(&report)? } else { export::lines_table(&report).into_bytes() };
@@ -179,7 +179,12 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
 
 /// The files of scored lines.
 pub(super) fn lines_files(report: &LinesReport, size: &ChartSize) -> Result<Vec<OutputFile>> {
-    let mut bytes = vec![LinesJson.bytes(report)?, LinesCsv.bytes(report)?, render::lines_png(report, size)?];
+    let mut bytes = vec![
+        LinesJson.bytes(report)?,
+        LinesCsv.bytes(report)?,
+        render::lines_png(report, size)?,
+        render::profiles_png(report, size)?,
+    ];
     if !report.provenance.frame.is_local() {
         bytes.push(LinesGeoJson.bytes(report)?);
         bytes.push(RecommendedGpx.bytes(report)?);
@@ -247,7 +252,7 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     TRACE_FILES.prepare(out, &dive.frame, common)?;
     let report = assess::trace(&Setup::new(&dive), request)?;
     if let Some(out) = out {
-        let bytes = vec![TraceJson.bytes(&report)?, render::trace_png(&report, &ChartSize::default())?];
+        let bytes = vec![TraceJson.bytes(&report)?, render::trace_png(&report, &common.chart_size())?];
         TRACE_FILES.write(out, &TRACE_FILES.with(bytes), common)?;
     }
     let text =

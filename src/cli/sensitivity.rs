@@ -40,7 +40,7 @@ pub(super) fn sensitivity(
     let report = assess::sensitivity(&Setup::new(&dive), factor, &|| bar.inc(1));
     bar.finish_and_clear();
     if let Some(out) = out {
-        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &common.chart_size())?, common)?;
     }
     let text = if common.json {
         SensitivityJson.bytes(&report)?

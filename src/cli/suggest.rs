@@ -58,7 +58,7 @@ pub(super) fn suggest(path: &Path, out: Option<&Path>, listed: Option<u16>, comm
     let report = assess::suggest(&setup, &search, &|count| bar.inc(count as u64));
     bar.finish_and_clear();
     if let Some(out) = out {
-        FILES.write(out, &files(&report, &ChartSize::default())?, common)?;
+        FILES.write(out, &files(&report, &common.chart_size())?, common)?;
     }
     let text =
         if common.json { SuggestJson.bytes(&report)? } else { export::suggest_table(&report).into_bytes() };

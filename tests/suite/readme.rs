@@ -214,7 +214,7 @@ fn every_command_of_the_readme_runs() {
     for name in ["index.html", "lines.png", "area.csv", "lookalikes.json", "remap.geojson", "trace-4.png"] {
         assert!(all.contains(&format!("demo-out/{name}")), "{name}");
     }
-    let scores = ["lines.csv", "lines.geojson", "lines.json", "lines.png", "recommended.gpx"];
+    let scores = ["lines.csv", "lines.geojson", "lines.json", "lines.png", "profiles.png", "recommended.gpx"];
     all.extend(scores.iter().map(|name| format!("results/{name}")));
     all.sort();
     assert_eq!(names, all);
