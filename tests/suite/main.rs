@@ -22,6 +22,7 @@ mod look_alike_chance;
 mod moved;
 mod one_dimension;
 mod oracle;
+mod plain_way;
 mod projection;
 mod readme;
 mod remap;

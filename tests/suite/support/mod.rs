@@ -2,5 +2,7 @@
 
 pub mod demo;
 pub mod exact;
+#[allow(dead_code, reason = "the benchmarks use more of it")]
+pub mod plain;
 pub mod program;
 pub mod scenes;

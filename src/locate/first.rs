@@ -1,0 +1,421 @@
+//! The first two detections of a run from an unknown start, without a cell for every landmark.
+//!
+//! The first detection may be any landmark, so its set has one cell per landmark and slice, and the second detection
+//! ends most of them. The answers here are those of [`super::Solver`]'s plain way, to the last digit, found with less
+//! work. It is used without stray budget and without silence as evidence, where a state is no more than its cell and slice.
+//!
+//! *1. Whole vantages are not stored.* The cell of landmark j is its vantage [M_j] ⊕ −S cut by the moved search area
+//! A = X_0 ⊕ D. Where the vantage lies inside A, [`Cell::intersection`] returns the vantage itself, whose reaches follow
+//! from the box and the look alone. In each strip of the map ([`Strips`]) the landmarks between two eastings are found for
+//! which that holds in every slice: with N_i the greatest north part of d_i·p in the strip and
+//! c_i = min over slices of A_i − look_i, a box lies far enough inside if its own reach east is at most c_i − N_i in
+//! every direction, an upper limit of its east edge or a lower limit of its west edge. They are *whole*. All others near
+//! the area are intersected one by one and stored: *cut*. Calling a whole one cut costs time and changes nothing.
+//! [`SLACK_M`] lies between the test and the rounding of the reaches, so a whole vantage is inside in the solver's own numbers,
+//! and its box meets the solver's query.
+//!
+//! *2. Hulls.* Adding a constant and rounding up is monotone, so the greatest reach of all whole vantages of a slice is the
+//! greatest reach of their boxes, plus that of the look, rounded up: the same number as the greatest of the sums.
+//!
+//! *3. Places.* The plain way joins two cells when their bounding boxes pass [`is_near`]. The same test is made here on the
+//! same boxes, on all pairs that can pass it ([`Strips::join`]); their number is in proportion to the number of landmarks. A
+//! whole landmark stands for its cells of all slices: they are called whole only if every two neighbouring slices
+//! of one landmark pass the test with room to spare, so they are one place anyway. Places = cells (a whole landmark counted once)
+//! less joins that united two groups.
+//!
+//! *4. The second detection* is asked for each landmark j by the plain way's own query: which boxes meet the bounding box of the moved
+//! cell, grown by the look. For whole vantages the queries of all landmarks are one join. What it finds is cut down by
+//! the sums of the reaches: the moved cell has in direction d_i a reach of at most box_j(i) + look(i) + travel(i), the vantage of k
+//! in the opposite direction box_k(i′) + look′(i′); a sum below zero proves the intersection empty, in the solver's own numbers
+//! too, because of the slack (see [`super::straight`], 3). Whatever is left is decided by the plain way's own operations, in its own
+//! order: by slice, then by the first landmark, then by the second, both in the order of the R-tree.
+
+use std::ops::Range;
+
+use super::cell::{Cell, DIRECTION_COUNT, DIRECTIONS, EAST, HALF, NORTH, Reaches};
+use super::feasible::{Feasible, State, groups, is_near, root};
+use super::forward::{Solver, SolverMap};
+use super::steps::Look;
+use super::strips::Strips;
+use super::unseen::Missed;
+use crate::interval::{Box2, Interval, larger, smaller, up};
+
+/// Allowance for rounding between a test and the numbers it speaks for, metres. Coordinates stay below 10⁸ m, where one
+/// rounding is below 2·10⁻⁸ m, and fewer than a hundred of them meet in a test.
+const SLACK_M: f64 = 1e-3;
+
+/// A cell at the border of the search area.
+#[derive(Clone, Copy, Debug)]
+struct CutCell {
+    slice: u16,
+    /// Place of its landmark in the strips.
+    place: usize,
+    cell: Cell,
+}
+
+/// The feasible set after the first detection.
+#[derive(Debug)]
+pub(super) struct FirstSet<'a> {
+    map: &'a SolverMap,
+    looks: &'a [Option<Look>],
+    /// Places of the whole vantages, one range for each strip.
+    whole: Vec<Range<usize>>,
+    whole_count: usize,
+    /// The others, by strip, landmark and slice.
+    cut: Vec<CutCell>,
+}
+
+impl<'a> FirstSet<'a> {
+    /// The set after `solver`'s search area has moved by `travel` and `looks` were had; none when it has more cells than the
+    /// budget.
+    pub fn new(solver: &Solver<'a>, travel: &[Reaches], looks: &'a [Option<Look>]) -> Option<Self> {
+        let map = solver.map;
+        let strips = &map.strips;
+        let moved: Vec<Cell> = travel.iter().map(|travel| solver.search_area.minkowski_sum(travel)).collect();
+        let pairs = || moved.iter().zip(looks).filter_map(|(moved, look)| Some((moved, look.as_ref()?)));
+        let mut room = [f64::INFINITY; DIRECTION_COUNT];
+        let mut near = Box2::EMPTY;
+        for (moved, look) in pairs() {
+            for i in 0..DIRECTION_COUNT {
+                room[i] = smaller(room[i], moved.reaches()[i] - look.from_landmark[i] - SLACK_M);
+            }
+            near = hull(near, moved.bounding_box().minkowski_sum(look.extent));
+        }
+        let has_whole = pairs().next().is_some() && slices_are_one_place(looks, solver.fix_size_m);
+        let whole: Vec<Range<usize>> = (0..strips.count())
+            .map(|strip| {
+                let none = strips.places(strip).start..strips.places(strip).start;
+                if has_whole { whole_range(strips, strip, &room).unwrap_or(none) } else { none }
+            })
+            .collect();
+        let whole_count = whole.iter().map(ExactSizeIterator::len).sum();
+        let mut set = Self { map, looks, whole: Vec::new(), whole_count, cut: Vec::new() };
+        strips.for_each_meeting_outside(&whole, near, |place| {
+            // More than the budget: the answer is known.
+            if set.cut.len() > solver.cell_budget {
+                return;
+            }
+            let b = strips.box_at(place);
+            for (slice, (moved, look)) in (0..).zip(moved.iter().zip(looks)) {
+                let Some(look) = look else { continue };
+                if b.intersection(moved.bounding_box().minkowski_sum(look.extent)).is_empty() {
+                    continue;
+                }
+                let vantage = map.vantage(strips.landmark_at(place), look);
+                set.cut.extend(moved.intersection(&vantage).map(|cell| CutCell { slice, place, cell }));
+            }
+        });
+        set.whole = whole;
+        (set.len() <= solver.cell_budget).then_some(set)
+    }
+
+    /// Number of cells.
+    pub fn len(&self) -> usize {
+        self.whole_count * self.looks.iter().flatten().count() + self.cut.len()
+    }
+
+    /// The smallest cell that holds all cells of a slice, for each slice.
+    pub fn slice_hulls(&self) -> Vec<Option<Cell>> {
+        let boxes = (self.whole_count > 0).then(|| self.greatest_reaches());
+        let mut hulls: Vec<Option<Cell>> = self
+            .looks
+            .iter()
+            .map(|look| Some(Cell::from_reaches(boxes?).minkowski_sum(&look.as_ref()?.from_landmark)))
+            .collect();
+        for cut in &self.cut {
+            let hull = &mut hulls[usize::from(cut.slice)];
+            *hull = Some(hull.map_or(cut.cell, |hull| hull.hull(&cut.cell)));
+        }
+        hulls
+    }
+
+    /// The greatest reach of the boxes of whole vantages in every direction.
+    ///
+    /// Landmarks are looked at from the end of a strip that the direction points to, until what is left of the strip cannot
+    /// reach farther.
+    fn greatest_reaches(&self) -> Reaches {
+        let strips = &self.map.strips;
+        std::array::from_fn(|i| {
+            let [east, north] = DIRECTIONS[i];
+            let mut best = f64::NEG_INFINITY;
+            for k in 0..self.whole.len() {
+                let strip = if north > 0.0 { self.whole.len() - 1 - k } else { k };
+                let range = self.whole[strip].clone();
+                let rest = farthest(north, strips.north_of(strip)) + SLACK_M;
+                for k in 0..range.len() {
+                    let (place, width_m) = if east > 0.0 {
+                        (range.end - 1 - k, strips.widest_m(strip))
+                    } else {
+                        (range.start + k, 0.0)
+                    };
+                    if east * (strips.box_at(place).east.lo() + width_m) + rest <= best {
+                        break;
+                    }
+                    best = larger(best, self.map.reaches_of(strips.landmark_at(place))[i]);
+                }
+            }
+            best
+        })
+    }
+
+    /// Number of places, as [`Feasible::places`] counts them.
+    pub fn places(&self, gap_m: f64) -> usize {
+        if self.len() == 0 {
+            return 0;
+        }
+        let strips = &self.map.strips;
+        let looks: Vec<&Look> = self.looks.iter().flatten().collect();
+        // A whole landmark has its place in the strips as its number; the cut cells come after.
+        let count = strips.len();
+        let mut group: Vec<u32> = (0..).take(count + self.cut.len()).collect();
+        let mut places = self.whole_count + self.cut.len();
+        let mut unite = |a: usize, b: usize| {
+            let (mine, theirs) = (root(&mut group, a), root(&mut group, b));
+            if mine != theirs {
+                group[mine as usize] = theirs;
+                places -= 1;
+            }
+        };
+        // Where a vantage lies, less its box: over all slices.
+        let around = looks.iter().fold(Box2::EMPTY, |all, look| hull(all, -look.extent));
+        let gap = Interval::around(0.0, gap_m + SLACK_M);
+        let gap = Box2 { east: gap, north: gap };
+        let apart = around.minkowski_sum(-around).minkowski_sum(gap);
+        // One of the two vantages does not lie farther west than the other: half of the pairs are enough.
+        let eastward = Box2 { east: Interval::new(0.0, apart.east.hi()), ..apart };
+        strips.join(&self.whole, eastward, |first, strip, second| {
+            let (a, b) = (strips.box_at(first), strips.box_at(second));
+            if b.east.lo() >= a.east.lo() && first != second && self.whole[strip].contains(&second) {
+                let near = looks.iter().any(|look| {
+                    let a = vantage_box(a, look);
+                    looks.iter().any(|look| is_near(a, vantage_box(b, look), gap_m))
+                });
+                if near {
+                    unite(first, second);
+                }
+            }
+            true
+        });
+        let boxes: Vec<Box2> = self.cut.iter().map(|cut| cut.cell.bounding_box()).collect();
+        for (number, &b) in (count..).zip(&boxes) {
+            let query = b.minkowski_sum(-around).minkowski_sum(gap);
+            strips.for_each_meeting(query, |strip, place| {
+                let vantages = || looks.iter().map(|look| vantage_box(strips.box_at(place), look));
+                if self.whole[strip].contains(&place) && vantages().any(|a| is_near(a, b, gap_m)) {
+                    unite(number, place);
+                }
+            });
+        }
+        for (number, representative) in groups(boxes, gap_m).into_iter().enumerate() {
+            unite(count + number, count + representative as usize);
+        }
+        places
+    }
+
+    /// All cells, in the order of the plain way.
+    pub fn to_feasible(&self) -> Feasible {
+        let strips = &self.map.strips;
+        let mut states: Vec<(u32, State)> = Vec::with_capacity(self.len());
+        for (slice, look) in (0..).zip(self.looks) {
+            let Some(look) = look else { continue };
+            states.extend(self.whole.iter().cloned().flatten().map(|place| {
+                let vantage = self.map.vantage(strips.landmark_at(place), look);
+                (strips.order(place), state(Cell::from_reaches(vantage), slice))
+            }));
+        }
+        states.extend(self.cut.iter().map(|cut| (strips.order(cut.place), state(cut.cell, cut.slice))));
+        states.sort_unstable_by_key(|(order, state)| (state.slice, *order));
+        Feasible { states: states.into_iter().map(|(_, state)| state).collect() }
+    }
+
+    /// Moves the set by `travel` and keeps what `looks` explain, before covered cells are dropped; with it whether some cell
+    /// had more than one successor.
+    pub fn advance(&self, solver: &Solver<'_>, travel: &[Reaches], looks: &[Option<Look>]) -> Second {
+        let strips = &self.map.strips;
+        let Some(mut candidates) = self.candidates(solver, travel, looks) else { return Second::Crowded };
+        candidates.sort_unstable_by_key(|candidate| (candidate.slice, candidate.order));
+        let mut set = Feasible::default();
+        let mut has_branched = false;
+        for chunk in candidates.chunk_by(|a, b| (a.slice, a.order[0]) == (b.slice, b.order[0])) {
+            let Candidate { slice, first, .. } = chunk[0];
+            let slice_number = usize::from(slice);
+            let Some(look) = &looks[slice_number] else { continue };
+            let cell = match (first, &self.looks[slice_number]) {
+                (Origin::Whole(place), Some(look)) => {
+                    Cell::from_reaches(self.map.vantage(strips.landmark_at(place as usize), look))
+                }
+                (Origin::Cut(number), _) => self.cut[number as usize].cell,
+                (Origin::Whole(_), None) => continue,
+            };
+            let moved = cell.minkowski_sum(&travel[slice_number]);
+            let query = moved.bounding_box().minkowski_sum(look.extent);
+            let before = set.states.len();
+            for second in chunk.iter().map(|candidate| candidate.second as usize) {
+                if strips.box_at(second).intersection(query).is_empty() {
+                    continue;
+                }
+                let vantage = self.map.vantage(strips.landmark_at(second), look);
+                set.states.extend(moved.intersection(&vantage).map(|cell| state(cell, slice)));
+            }
+            has_branched |= set.states.len() > before + 1;
+            if set.states.len() > solver.cell_budget {
+                return Second::Undecided;
+            }
+        }
+        Second::Set { set, has_branched }
+    }
+
+    /// All pairs of landmarks that may explain the first two detections, and perhaps more; none when they are too many.
+    fn candidates(
+        &self,
+        solver: &Solver<'_>,
+        travel: &[Reaches],
+        looks: &[Option<Look>],
+    ) -> Option<Vec<Candidate>> {
+        let strips = &self.map.strips;
+        let most = CANDIDATES_PER_BUDGET * solver.cell_budget;
+        let mut candidates = Vec::new();
+        let short = |number: usize| u32::try_from(number).expect("fewer than 2³² landmarks");
+        // By slice: how far a box of the second landmark may lie from one of the first, in every direction.
+        let mut limits: Vec<(u16, Reaches)> = Vec::new();
+        let mut window = Box2::EMPTY;
+        for (slice, (travel, looks)) in (0..).zip(travel.iter().zip(self.looks.iter().zip(looks))) {
+            let (Some(first), Some(second)) = looks else { continue };
+            let moved = Cell::from_reaches(first.from_landmark).minkowski_sum(travel);
+            window = hull(window, moved.bounding_box().minkowski_sum(second.extent));
+            let against = |i: usize| second.from_landmark[(i + HALF) % DIRECTION_COUNT];
+            let limit = std::array::from_fn(|i| moved.reaches()[i] + against(i) + SLACK_M);
+            limits.push((slice, limit));
+        }
+        if limits.is_empty() {
+            return Some(candidates);
+        }
+        let slack = Interval::around(0.0, SLACK_M);
+        let window = window.minkowski_sum(Box2 { east: slack, north: slack });
+        strips.join(&self.whole, window, |first, _, second| {
+            let from = self.map.reaches_of(strips.landmark_at(first));
+            let to = self.map.reaches_of(strips.landmark_at(second));
+            for (slice, limit) in &limits {
+                let keeps = |i: usize| from[i] + limit[i] + to[(i + HALF) % DIRECTION_COUNT] >= 0.0;
+                if (0..DIRECTION_COUNT).all(keeps) {
+                    candidates.push(Candidate {
+                        slice: *slice,
+                        order: [strips.order(first), strips.order(second)],
+                        first: Origin::Whole(short(first)),
+                        second: short(second),
+                    });
+                }
+            }
+            candidates.len() <= most
+        });
+        for (number, cut) in (0..).zip(&self.cut) {
+            let Some(look) = &looks[usize::from(cut.slice)] else { continue };
+            if candidates.len() > most {
+                return None;
+            }
+            let moved = cut.cell.minkowski_sum(&travel[usize::from(cut.slice)]);
+            strips.for_each_meeting(moved.bounding_box().minkowski_sum(look.extent), |_, second| {
+                candidates.push(Candidate {
+                    slice: cut.slice,
+                    order: [strips.order(cut.place), strips.order(second)],
+                    first: Origin::Cut(number),
+                    second: short(second),
+                });
+            });
+        }
+        (candidates.len() <= most).then_some(candidates)
+    }
+}
+
+/// Candidates per cell budget beyond which the plain way is taken: it stops as soon as the budget is exceeded.
+const CANDIDATES_PER_BUDGET: usize = 2;
+
+/// The set after the second detection.
+#[derive(Debug)]
+pub(super) enum Second {
+    /// The set, and whether a cell had more than one successor.
+    Set {
+        /// The cells, none dropped yet.
+        set: Feasible,
+        /// Whether a cell had more than one successor.
+        has_branched: bool,
+    },
+    /// More cells than the budget.
+    Undecided,
+    /// Too many candidates to be listed: nothing is known.
+    Crowded,
+}
+
+/// What the cell of a candidate's first landmark is.
+#[derive(Clone, Copy, Debug)]
+enum Origin {
+    /// The whole vantage of the landmark at a place in the strips.
+    Whole(u32),
+    /// A cut cell.
+    Cut(u32),
+}
+
+/// Two landmarks that may explain the first two detections, in one slice.
+#[derive(Clone, Copy, Debug)]
+struct Candidate {
+    slice: u16,
+    /// Their ranks in the order of the R-tree.
+    order: [u32; 2],
+    first: Origin,
+    /// Place of the second in the strips.
+    second: u32,
+}
+
+fn state(cell: Cell, slice: u16) -> State {
+    State { cell, slice, strays: 0, missed: Missed::NONE }
+}
+
+fn hull(a: Box2, b: Box2) -> Box2 {
+    Box2 { east: a.east.hull(b.east), north: a.north.hull(b.north) }
+}
+
+/// The greatest x · n over the northings of a strip.
+fn farthest(x: f64, north: Interval) -> f64 {
+    x * if x > 0.0 { north.hi() } else { north.lo() }
+}
+
+/// The places of a strip whose vantages lie whole inside the area, by the `room` that it leaves a box in every
+/// direction. Not necessarily all of them; none when no limit leaves room.
+fn whole_range(strips: &Strips, strip: usize, room: &Reaches) -> Option<Range<usize>> {
+    let north = strips.north_of(strip);
+    let (mut west_m, mut east_m) = (f64::NEG_INFINITY, f64::INFINITY);
+    for (i, &[e, n]) in DIRECTIONS.iter().enumerate() {
+        let left = room[i] - farthest(n, north);
+        if e > 0.0 {
+            east_m = smaller(east_m, left / e);
+        } else if e < 0.0 {
+            west_m = larger(west_m, left / e);
+        } else if left < 0.0 {
+            return None;
+        }
+    }
+    let start = strips.first_from(strip, west_m);
+    let end = strips.first_from(strip, east_m - strips.widest_m(strip));
+    (start < end).then_some(start..end)
+}
+
+/// Whether the cells of one landmark in all slices are one place, wherever it lies.
+fn slices_are_one_place(looks: &[Option<Look>], gap_m: f64) -> bool {
+    let vantages: Vec<Box2> =
+        looks.iter().flatten().map(|look| Cell::from_reaches(look.from_landmark).bounding_box()).collect();
+    vantages.windows(2).all(|pair| {
+        let near =
+            |a: Interval, b: Interval| larger(a.lo(), b.lo()) - smaller(a.hi(), b.hi()) <= gap_m - SLACK_M;
+        near(pair[0].east, pair[1].east) && near(pair[0].north, pair[1].north)
+    })
+}
+
+/// The bounding box of a whole vantage: the same four reaches, with the same rounding.
+fn vantage_box(b: Box2, look: &Look) -> Box2 {
+    let side = |side: Interval, i: usize| {
+        let hi = up(side.hi() + look.from_landmark[i]);
+        let lo = -up(-side.lo() + look.from_landmark[i + HALF]);
+        Interval::new(smaller(lo, hi), larger(lo, hi))
+    };
+    Box2 { east: side(b.east, EAST), north: side(b.north, NORTH) }
+}

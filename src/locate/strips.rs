@@ -1,0 +1,331 @@
+//! The landmarks' boxes in strips from west to east: for questions near a place, and for the same question asked of every
+//! landmark.
+//!
+//! The boxes are sorted by their south edge and cut into about √n strips of equal number; within a strip they are sorted
+//! by their west edge. Numbers, not metres, set the strips, so that a crowded corner or one stray position far away does
+//! no harm. A place in this order is called a *place in the strips* here.
+//!
+//! *Guarantee.* No box that meets a query is left out: west and south edges are compared with ends moved out by the
+//! widest box of the strip and the tallest of the map, rounded outward.
+//!
+//! *Order of answers.* The R-tree of the map gives its answers in an order that depends on the tree alone: a query only
+//! leaves entries out. [`Strips::order`] is that order, so whoever sorts by it gets what the tree would have given.
+
+use std::ops::Range;
+
+use crate::interval::{Box2, Interval, down, larger, up};
+use crate::map::index::LandmarkIndex;
+
+/// One strip.
+#[derive(Clone, Debug)]
+struct Strip {
+    /// Its places.
+    places: Range<usize>,
+    /// Least and greatest south edge, metres.
+    south_m: [f64; 2],
+    /// Greatest north edge, metres.
+    north_m: f64,
+    /// Width of its widest box, metres, rounded up.
+    widest_m: f64,
+}
+
+/// The boxes of a map in strips.
+#[derive(Debug)]
+pub(super) struct Strips {
+    strips: Vec<Strip>,
+    boxes: Vec<Box2>,
+    landmark: Vec<u32>,
+    order: Vec<u32>,
+    /// Height of the tallest box, metres, rounded up.
+    tallest_m: f64,
+}
+
+impl Strips {
+    /// Sorts `boxes`, which `index` holds too.
+    pub fn new(boxes: &[Box2], index: &LandmarkIndex) -> Self {
+        let mut landmark: Vec<u32> = (0..).take(boxes.len()).collect();
+        let by = |edge: fn(&Box2) -> f64| {
+            move |a: &u32, b: &u32| {
+                edge(&boxes[*a as usize]).total_cmp(&edge(&boxes[*b as usize])).then(a.cmp(b))
+            }
+        };
+        landmark.sort_unstable_by(by(|b| b.north.lo()));
+        let each = (boxes.len() as f64).sqrt().ceil() as usize;
+        let mut strips = Vec::new();
+        let mut begin = 0;
+        for strip in landmark.chunks_mut(each.max(1)) {
+            let south_of = |number: u32| boxes[number as usize].north.lo();
+            let south_m = [south_of(strip[0]), south_of(strip[strip.len() - 1])];
+            strip.sort_unstable_by(by(|b| b.east.lo()));
+            let most = |of: fn(&Box2) -> f64| {
+                strip.iter().map(|&j| of(&boxes[j as usize])).fold(f64::NEG_INFINITY, larger)
+            };
+            strips.push(Strip {
+                places: begin..begin + strip.len(),
+                south_m,
+                north_m: most(|b| b.north.hi()),
+                widest_m: most(|b| up(b.east.hi() - b.east.lo())),
+            });
+            begin += strip.len();
+        }
+        let everything = boxes
+            .iter()
+            .fold(Box2::EMPTY, |all, b| Box2 { east: all.east.hull(b.east), north: all.north.hull(b.north) });
+        let mut order_of = vec![0u32; boxes.len()];
+        if !boxes.is_empty() {
+            for (order, j) in (0..).zip(index.meeting(everything)) {
+                order_of[j] = order;
+            }
+        }
+        Self {
+            strips,
+            boxes: landmark.iter().map(|&j| boxes[j as usize]).collect(),
+            order: landmark.iter().map(|&j| order_of[j as usize]).collect(),
+            landmark,
+            tallest_m: boxes.iter().map(|b| up(b.north.hi() - b.north.lo())).fold(0.0, larger),
+        }
+    }
+
+    /// The box at a place in the strips.
+    #[inline]
+    pub fn box_at(&self, place: usize) -> Box2 {
+        self.boxes[place]
+    }
+
+    /// The number of the landmark at a place in the strips.
+    #[inline]
+    pub fn landmark_at(&self, place: usize) -> usize {
+        self.landmark[place] as usize
+    }
+
+    /// When the R-tree would have given the landmark at a place.
+    #[inline]
+    pub fn order(&self, place: usize) -> u32 {
+        self.order[place]
+    }
+
+    /// Number of landmarks.
+    pub fn len(&self) -> usize {
+        self.boxes.len()
+    }
+
+    /// Number of strips.
+    pub fn count(&self) -> usize {
+        self.strips.len()
+    }
+
+    /// The places of strip number `strip`.
+    pub fn places(&self, strip: usize) -> Range<usize> {
+        self.strips[strip].places.clone()
+    }
+
+    /// From the southernmost to the northernmost point of the boxes of strip number `strip`.
+    pub fn north_of(&self, strip: usize) -> Interval {
+        let Strip { south_m, north_m, .. } = self.strips[strip];
+        Interval::new(south_m[0], north_m)
+    }
+
+    /// Width of the widest box of strip number `strip`, metres, rounded up.
+    pub fn widest_m(&self, strip: usize) -> f64 {
+        self.strips[strip].widest_m
+    }
+
+    /// The place in strip number `strip` from where on west edges are at least `west_m`.
+    pub fn first_from(&self, strip: usize, west_m: f64) -> usize {
+        let Range { start, end } = self.strips[strip].places;
+        start + self.boxes[start..end].partition_point(|b| b.east.lo() < west_m)
+    }
+
+    /// Numbers of the strips that may have boxes between two northings.
+    fn meeting_strips(&self, north: Interval) -> impl Iterator<Item = usize> + '_ {
+        let south_m = down(north.lo() - self.tallest_m);
+        let first = self.strips.partition_point(|strip| strip.south_m[1] < south_m);
+        (first..self.strips.len())
+            .take_while(move |&strip| self.strips[strip].south_m[0] <= north.hi())
+            .filter(move |&strip| self.strips[strip].north_m >= north.lo())
+    }
+
+    /// Calls `found` with the strip and the place of every box that meets `query`.
+    pub fn for_each_meeting(&self, query: Box2, mut found: impl FnMut(usize, usize)) {
+        for strip in self.meeting_strips(query.north) {
+            self.scan(self.first_meeting(strip, query)..self.strips[strip].places.end, query, |place| {
+                found(strip, place);
+            });
+        }
+    }
+
+    /// Calls `found` with the place of every box that meets `query` and is not in `except`, one range for each strip.
+    pub fn for_each_meeting_outside(
+        &self,
+        except: &[Range<usize>],
+        query: Box2,
+        mut found: impl FnMut(usize),
+    ) {
+        for strip in self.meeting_strips(query.north) {
+            let Range { start, end } = except[strip];
+            let first = self.first_meeting(strip, query);
+            let last = self.strips[strip].places.end;
+            if start < end {
+                self.scan(first..start, query, &mut found);
+                self.scan(first.max(end)..last, query, &mut found);
+            } else {
+                self.scan(first..last, query, &mut found);
+            }
+        }
+    }
+
+    /// The first place of a strip whose box may meet `query`.
+    fn first_meeting(&self, strip: usize, query: Box2) -> usize {
+        self.first_from(strip, down(query.east.lo() - self.strips[strip].widest_m))
+    }
+
+    /// Calls `found` with the places of a strip's `range` whose boxes meet `query`.
+    fn scan(&self, range: Range<usize>, query: Box2, mut found: impl FnMut(usize)) {
+        for place in range {
+            let b = self.boxes[place];
+            if b.east.lo() > query.east.hi() {
+                break;
+            }
+            if !b.intersection(query).is_empty() {
+                found(place);
+            }
+        }
+    }
+
+    /// The landmarks whose boxes meet `query`, in the order of the R-tree, into `places`.
+    pub fn meeting(&self, query: Box2, places: &mut Vec<usize>) {
+        places.clear();
+        self.for_each_meeting(query, |_, place| places.push(place));
+        places.sort_unstable_by_key(|&place| self.order[place]);
+    }
+
+    /// Calls `found` with a place of `firsts` (one range for each strip), and strip and place of a box that meets the
+    /// first's box ⊕ `window`, for all such pairs, until it answers `false`. The window's ends must have the caller's allowance for the rounding
+    /// of that sum.
+    ///
+    /// One pass over each pair of strips: west edges only grow from one place to the next, and so do the places where
+    /// their windows begin.
+    pub fn join(
+        &self,
+        firsts: &[Range<usize>],
+        window: Box2,
+        mut found: impl FnMut(usize, usize, usize) -> bool,
+    ) {
+        for (own, range) in firsts.iter().enumerate().filter(|(_, range)| !range.is_empty()) {
+            for strip in self.meeting_strips(self.north_of(own) + window.north) {
+                let Strip { places, south_m, north_m, widest_m } = &self.strips[strip];
+                let west_m = |place: usize| self.boxes[place].east.lo() + window.east.lo() - widest_m;
+                let mut next = self.first_from(strip, west_m(range.start));
+                for first in range.clone() {
+                    let b = self.boxes[first];
+                    let (south, north) = (b.north.lo() + window.north.lo(), b.north.hi() + window.north.hi());
+                    if north < south_m[0] || south > *north_m {
+                        continue;
+                    }
+                    let from = west_m(first);
+                    while next < places.end && self.boxes[next].east.lo() < from {
+                        next += 1;
+                    }
+                    let (west, east) = (b.east.lo() + window.east.lo(), b.east.hi() + window.east.hi());
+                    for (place, other) in (next..).zip(&self.boxes[next..places.end]) {
+                        if other.east.lo() > east {
+                            break;
+                        }
+                        let meets =
+                            other.east.hi() >= west && other.north.lo() <= north && other.north.hi() >= south;
+                        if meets && !found(first, strip, place) {
+                            return;
+                        }
+                    }
+                }
+            }
+        }
+    }
+}
+
+#[cfg(test)]
+mod tests {
+    use super::*;
+    use crate::frame::LocalPoint;
+    use crate::map::Landmark;
+
+    /// Landmarks spread out, in a row, in one heap, with one far away, with wide boxes among narrow ones.
+    fn maps() -> Vec<Vec<Landmark>> {
+        let landmark = |i: u32, east_m: f64, north_m: f64, half_m: f64| Landmark {
+            id: i.to_string(),
+            position: LocalPoint::new(east_m, north_m),
+            half_width_east_m: half_m,
+            half_width_north_m: f64::from(i % 3) * 0.5 * half_m,
+        };
+        let hash = |i: u32, k: u32| f64::from(i.wrapping_mul(k) % 1000);
+        vec![
+            Vec::new(),
+            vec![landmark(0, 5.0, 5.0, 1.0)],
+            (0..400).map(|i| landmark(i, hash(i, 7919), hash(i, 104_729), f64::from(i % 5))).collect(),
+            (0..300).map(|i| landmark(i, 3.0 * f64::from(i), 50.0, 2.0)).collect(),
+            (0..200).map(|i| landmark(i, 500.0, 500.0, f64::from(i % 2) * 30.0)).collect(),
+            (0..200)
+                .map(|i| {
+                    let far = if i == 77 { 1e6 } else { 0.0 };
+                    let half_m = if i == 5 { 200.0 } else { 1.0 };
+                    landmark(i, hash(i, 7919) + far, hash(i, 104_729) - far, half_m)
+                })
+                .collect(),
+        ]
+    }
+
+    fn query(k: u32) -> Box2 {
+        let (east_m, north_m) = (f64::from(k * 37 % 1000), f64::from(k * 91 % 1000));
+        let size_m = f64::from(k % 7) * 20.0;
+        Box2 {
+            east: Interval::new(east_m, east_m + size_m),
+            north: Interval::new(north_m, north_m + 0.7 * size_m),
+        }
+    }
+
+    #[test]
+    fn answers_are_those_of_the_tree_in_its_order() {
+        for landmarks in maps() {
+            let index = LandmarkIndex::new(&landmarks);
+            let boxes: Vec<Box2> = landmarks.iter().map(Landmark::bounds).collect();
+            let strips = Strips::new(&boxes, &index);
+            assert_eq!(strips.len(), landmarks.len());
+            let mut places = Vec::new();
+            for k in 0..300 {
+                strips.meeting(query(k), &mut places);
+                let found: Vec<usize> = places.iter().map(|&place| strips.landmark_at(place)).collect();
+                assert_eq!(found, index.meeting(query(k)).collect::<Vec<_>>());
+            }
+        }
+    }
+
+    #[test]
+    fn a_join_finds_every_pair() {
+        for landmarks in maps() {
+            let boxes: Vec<Box2> = landmarks.iter().map(Landmark::bounds).collect();
+            let strips = Strips::new(&boxes, &LandmarkIndex::new(&landmarks));
+            let window = Box2 { east: Interval::new(-12.3, 31.3), north: Interval::new(20.3, 44.3) };
+            // No edge of a box plus an end of the window falls on an edge: rounding decides nothing.
+            let firsts: Vec<Range<usize>> = (0..strips.count())
+                .map(|strip| {
+                    let Range { start, end } = strips.places(strip);
+                    start + (end - start) / 5..end
+                })
+                .collect();
+            let mut found = Vec::new();
+            strips.join(&firsts, window, |first, strip, place| {
+                assert!(strips.places(strip).contains(&place));
+                found.push((first, place));
+                true
+            });
+            let mut scanned = Vec::new();
+            for first in firsts.iter().cloned().flatten() {
+                let query = strips.box_at(first).minkowski_sum(window);
+                let meets = |&place: &usize| !strips.box_at(place).intersection(query).is_empty();
+                scanned.extend((0..strips.len()).filter(meets).map(|place| (first, place)));
+            }
+            found.sort_unstable();
+            assert_eq!(found, scanned);
+        }
+    }
+}
