@@ -18,7 +18,7 @@
 //! greatest reach of their boxes, plus that of the look, rounded up: the same number as the greatest of the sums.
 //!
 //! *3. Places.* The plain way joins two cells when their bounding boxes pass [`is_near`]. The same test is made here on the
-//! same boxes, on all pairs that can pass it ([`Strips::join`]); their number is in proportion to the number of landmarks. A
+//! same boxes, on all pairs that can pass it ([`Strips::near_pairs`], or [`Strips::join`]); their number is in proportion to the number of landmarks. A
 //! whole landmark stands for its cells of all slices: they are called whole only if every two neighbouring slices
 //! of one landmark pass the test with room to spare, so they are one place anyway. Places = cells (a whole landmark counted once)
 //! less joins that united two groups.
@@ -181,27 +181,38 @@ impl<'a> FirstSet<'a> {
         let gap = Interval::around(0.0, gap_m + SLACK_M);
         let gap = Box2 { east: gap, north: gap };
         let apart = around.minkowski_sum(-around).minkowski_sum(gap);
-        // One of the two vantages does not lie farther west than the other: half of the pairs are enough.
-        let eastward = Box2 { east: Interval::new(0.0, apart.east.hi()), ..apart };
-        strips.join(&self.whole, eastward, |first, strip, second| {
-            let (a, b) = (strips.box_at(first), strips.box_at(second));
-            if b.east.lo() >= a.east.lo() && first != second && self.whole[strip].contains(&second) {
-                let near = looks.iter().any(|look| {
-                    let a = vantage_box(a, look);
-                    looks.iter().any(|look| is_near(a, vantage_box(b, look), gap_m))
-                });
-                if near {
-                    unite(first, second);
-                }
+        let are_near = |a: Box2, b: Box2| {
+            looks.iter().any(|look| {
+                let a = vantage_box(a, look);
+                looks.iter().any(|look| is_near(a, vantage_box(b, look), gap_m))
+            })
+        };
+        let mut look_at = |first: usize, second: usize| {
+            if are_near(strips.box_at(first), strips.box_at(second)) {
+                unite(first, second);
             }
-            true
-        });
+        };
+        let is_whole = |place: usize| self.whole[strips.strip_of(place)].contains(&place);
+        let farthest_m = larger(apart.east.hi(), apart.north.hi());
+        if let Some(pairs) = strips.near_pairs(farthest_m) {
+            pairs.filter(|pair| pair.iter().all(|&place| is_whole(place))).for_each(|[a, b]| look_at(a, b));
+        } else {
+            // One of the two boxes does not begin farther west than the other: half of the window is enough.
+            let eastward = Box2 { east: Interval::new(0.0, apart.east.hi()), ..apart };
+            strips.join(&self.whole, eastward, |first, second| {
+                let is_east = strips.box_at(second).east.lo() >= strips.box_at(first).east.lo();
+                if is_east && first != second && is_whole(second) {
+                    look_at(first, second);
+                }
+                true
+            });
+        }
         let boxes: Vec<Box2> = self.cut.iter().map(|cut| cut.cell.bounding_box()).collect();
         for (number, &b) in (count..).zip(&boxes) {
             let query = b.minkowski_sum(-around).minkowski_sum(gap);
-            strips.for_each_meeting(query, |strip, place| {
+            strips.for_each_meeting(query, |place| {
                 let vantages = || looks.iter().map(|look| vantage_box(strips.box_at(place), look));
-                if self.whole[strip].contains(&place) && vantages().any(|a| is_near(a, b, gap_m)) {
+                if is_whole(place) && vantages().any(|a| is_near(a, b, gap_m)) {
                     unite(number, place);
                 }
             });
@@ -292,7 +303,7 @@ impl<'a> FirstSet<'a> {
         }
         let slack = Interval::around(0.0, SLACK_M);
         let window = window.minkowski_sum(Box2 { east: slack, north: slack });
-        strips.join(&self.whole, window, |first, _, second| {
+        strips.join(&self.whole, window, |first, second| {
             let from = self.map.reaches_of(strips.landmark_at(first));
             let to = self.map.reaches_of(strips.landmark_at(second));
             for (slice, limit) in &limits {
@@ -314,7 +325,7 @@ impl<'a> FirstSet<'a> {
                 return None;
             }
             let moved = cut.cell.minkowski_sum(&travel[usize::from(cut.slice)]);
-            strips.for_each_meeting(moved.bounding_box().minkowski_sum(look.extent), |_, second| {
+            strips.for_each_meeting(moved.bounding_box().minkowski_sum(look.extent), |second| {
                 candidates.push(Candidate {
                     slice: cut.slice,
                     order: [strips.order(cut.place), strips.order(second)],

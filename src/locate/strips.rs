@@ -12,6 +12,7 @@
 //! leaves entries out. [`Strips::order`] is that order, so whoever sorts by it gets what the tree would have given.
 
 use std::ops::Range;
+use std::sync::OnceLock;
 
 use crate::interval::{Box2, Interval, down, larger, up};
 use crate::map::index::LandmarkIndex;
@@ -38,7 +39,29 @@ pub(super) struct Strips {
     order: Vec<u32>,
     /// Height of the tallest box, metres, rounded up.
     tallest_m: f64,
+    /// Boxes in a strip (fewer in the last).
+    each: usize,
+    near: OnceLock<NearPairs>,
 }
+
+/// Pairs of boxes near each other, worked out when first asked for.
+#[derive(Debug, Default)]
+struct NearPairs {
+    /// All pairs up to this distance are listed, metres.
+    reach_m: f64,
+    /// By distance, each band as wide as the others, in the order of the strips.
+    bands: Vec<Vec<[u32; 2]>>,
+}
+
+/// Pairs are listed up to this distance, metres, or half of it, and so on, where they would be more than
+/// [`NEAR_PER_BOX`] for each box: 8 bytes each.
+const NEAR_REACH_M: f64 = 100.0;
+/// See [`NEAR_REACH_M`].
+const NEAR_PER_BOX: usize = 8;
+/// Times that the distance is halved at most.
+const NEAR_HALVINGS: u32 = 4;
+/// Bands of distance.
+const NEAR_BANDS: usize = 20;
 
 impl Strips {
     /// Sorts `boxes`, which `index` holds too.
@@ -50,10 +73,10 @@ impl Strips {
             }
         };
         landmark.sort_unstable_by(by(|b| b.north.lo()));
-        let each = (boxes.len() as f64).sqrt().ceil() as usize;
+        let each = ((boxes.len() as f64).sqrt().ceil() as usize).max(1);
         let mut strips = Vec::new();
         let mut begin = 0;
-        for strip in landmark.chunks_mut(each.max(1)) {
+        for strip in landmark.chunks_mut(each) {
             let south_of = |number: u32| boxes[number as usize].north.lo();
             let south_m = [south_of(strip[0]), south_of(strip[strip.len() - 1])];
             strip.sort_unstable_by(by(|b| b.east.lo()));
@@ -83,6 +106,8 @@ impl Strips {
             order: landmark.iter().map(|&j| order_of[j as usize]).collect(),
             landmark,
             tallest_m: boxes.iter().map(|b| up(b.north.hi() - b.north.lo())).fold(0.0, larger),
+            each,
+            near: OnceLock::new(),
         }
     }
 
@@ -136,6 +161,51 @@ impl Strips {
         start + self.boxes[start..end].partition_point(|b| b.east.lo() < west_m)
     }
 
+    /// The strip of a place.
+    #[inline]
+    pub fn strip_of(&self, place: usize) -> usize {
+        place / self.each
+    }
+
+    /// The places of every pair of boxes at most `apart_m` from each other along both axes, once each, and of some that are
+    /// farther apart; none when that far has not been worked out, because there are too many.
+    pub fn near_pairs(&self, apart_m: f64) -> Option<impl Iterator<Item = [usize; 2]> + '_> {
+        let near = self.near.get_or_init(|| {
+            (0..NEAR_HALVINGS)
+                .find_map(|times| self.all_near(NEAR_REACH_M / f64::from(1u32 << times)))
+                .unwrap_or_default()
+        });
+        // The millimetre covers the rounding of the distances, here and in the join.
+        let wanted_m = apart_m + 1e-3;
+        let bands = (wanted_m < near.reach_m - 1e-3).then(|| near.band(wanted_m) + 1)?;
+        Some(near.bands[..bands].iter().flatten().map(|pair| pair.map(|place| place as usize)))
+    }
+
+    /// All pairs up to `reach_m`, unless they are too many.
+    fn all_near(&self, reach_m: f64) -> Option<NearPairs> {
+        let mut near = NearPairs { reach_m, bands: vec![Vec::new(); NEAR_BANDS] };
+        let all: Vec<Range<usize>> = self.strips.iter().map(|strip| strip.places.clone()).collect();
+        let reach = Interval::around(0.0, reach_m);
+        let mut count = 0;
+        // One of the two does not begin farther west: half of the window is enough.
+        let eastward = Box2 { east: Interval::new(0.0, reach.hi()), north: reach };
+        self.join(&all, eastward, |a, b| {
+            let (first, second) = (self.boxes[a], self.boxes[b]);
+            let west = [first.east.lo(), second.east.lo()];
+            if west[0] < west[1] || west[0] == west[1] && a < b {
+                let north_m =
+                    larger(second.north.lo() - first.north.hi(), first.north.lo() - second.north.hi());
+                let apart_m = larger(second.east.lo() - first.east.hi(), north_m);
+                let short = |place: usize| u32::try_from(place).expect("fewer than 2³² landmarks");
+                let band = near.band(apart_m);
+                near.bands[band].push([short(a), short(b)]);
+                count += 1;
+            }
+            count <= NEAR_PER_BOX * self.boxes.len()
+        });
+        (count <= NEAR_PER_BOX * self.boxes.len()).then_some(near)
+    }
+
     /// Numbers of the strips that may have boxes between two northings.
     fn meeting_strips(&self, north: Interval) -> impl Iterator<Item = usize> + '_ {
         let south_m = down(north.lo() - self.tallest_m);
@@ -145,12 +215,10 @@ impl Strips {
             .filter(move |&strip| self.strips[strip].north_m >= north.lo())
     }
 
-    /// Calls `found` with the strip and the place of every box that meets `query`.
-    pub fn for_each_meeting(&self, query: Box2, mut found: impl FnMut(usize, usize)) {
+    /// Calls `found` with the place of every box that meets `query`.
+    pub fn for_each_meeting(&self, query: Box2, mut found: impl FnMut(usize)) {
         for strip in self.meeting_strips(query.north) {
-            self.scan(self.first_meeting(strip, query)..self.strips[strip].places.end, query, |place| {
-                found(strip, place);
-            });
+            self.scan(self.first_meeting(strip, query)..self.strips[strip].places.end, query, &mut found);
         }
     }
 
@@ -195,22 +263,17 @@ impl Strips {
     /// The landmarks whose boxes meet `query`, in the order of the R-tree, into `places`.
     pub fn meeting(&self, query: Box2, places: &mut Vec<usize>) {
         places.clear();
-        self.for_each_meeting(query, |_, place| places.push(place));
+        self.for_each_meeting(query, |place| places.push(place));
         places.sort_unstable_by_key(|&place| self.order[place]);
     }
 
-    /// Calls `found` with a place of `firsts` (one range for each strip), and strip and place of a box that meets the
+    /// Calls `found` with a place of `firsts` (one range for each strip), and the place of a box that meets the
     /// first's box ⊕ `window`, for all such pairs, until it answers `false`. The window's ends must have the caller's allowance for the rounding
     /// of that sum.
     ///
     /// One pass over each pair of strips: west edges only grow from one place to the next, and so do the places where
     /// their windows begin.
-    pub fn join(
-        &self,
-        firsts: &[Range<usize>],
-        window: Box2,
-        mut found: impl FnMut(usize, usize, usize) -> bool,
-    ) {
+    pub fn join(&self, firsts: &[Range<usize>], window: Box2, mut found: impl FnMut(usize, usize) -> bool) {
         for (own, range) in firsts.iter().enumerate().filter(|(_, range)| !range.is_empty()) {
             for strip in self.meeting_strips(self.north_of(own) + window.north) {
                 let Strip { places, south_m, north_m, widest_m } = &self.strips[strip];
@@ -233,13 +296,21 @@ impl Strips {
                         }
                         let meets =
                             other.east.hi() >= west && other.north.lo() <= north && other.north.hi() >= south;
-                        if meets && !found(first, strip, place) {
+                        if meets && !found(first, place) {
                             return;
                         }
                     }
                 }
             }
         }
+    }
+}
+
+impl NearPairs {
+    /// The band of a distance; 0 for boxes that overlap.
+    fn band(&self, apart_m: f64) -> usize {
+        // A conversion to an integer takes what is below 0 to 0.
+        ((apart_m / self.reach_m * NEAR_BANDS as f64) as usize).min(NEAR_BANDS - 1)
     }
 }
 
@@ -313,8 +384,7 @@ mod tests {
                 })
                 .collect();
             let mut found = Vec::new();
-            strips.join(&firsts, window, |first, strip, place| {
-                assert!(strips.places(strip).contains(&place));
+            strips.join(&firsts, window, |first, place| {
                 found.push((first, place));
                 true
             });
@@ -327,5 +397,32 @@ mod tests {
             found.sort_unstable();
             assert_eq!(found, scanned);
         }
+    }
+
+    #[test]
+    fn near_pairs_are_all_pairs_that_are_near() {
+        for landmarks in maps() {
+            let boxes: Vec<Box2> = landmarks.iter().map(Landmark::bounds).collect();
+            let strips = Strips::new(&boxes, &LandmarkIndex::new(&landmarks));
+            for apart_m in [0.0, 11.3, 24.7, 60.3] {
+                // The heap has too many pairs for a list.
+                let Some(pairs) = strips.near_pairs(apart_m) else { continue };
+                let found: Vec<[usize; 2]> = pairs.map(|[a, b]| [a.min(b), a.max(b)]).collect();
+                let unique: std::collections::BTreeSet<[usize; 2]> = found.iter().copied().collect();
+                assert_eq!(found.len(), unique.len());
+                let reach = Interval::around(0.0, apart_m);
+                for a in 0..strips.len() {
+                    assert!(strips.places(strips.strip_of(a)).contains(&a));
+                    let query = strips.box_at(a).minkowski_sum(Box2 { east: reach, north: reach });
+                    strips.for_each_meeting(query, |b| {
+                        assert!(a >= b || unique.contains(&[a, b]), "{a} {b}");
+                    });
+                }
+            }
+        }
+        let spread: Vec<Landmark> = maps().swap_remove(3);
+        let boxes: Vec<Box2> = spread.iter().map(Landmark::bounds).collect();
+        let strips = Strips::new(&boxes, &LandmarkIndex::new(&spread));
+        assert!(strips.near_pairs(5.0).is_some() && strips.near_pairs(5000.0).is_none());
     }
 }
