@@ -165,14 +165,14 @@ fn compare(numbers: std::ops::Range<u64>) -> Tally {
             let skipped = case.rng.random_range(0..9usize);
             let uses = |k: usize| skipped > 2 || k % 3 != skipped;
             let steps = &all[start..];
-            let mut solver = Solver { stray_budget: u8::from(case.rng.random_bool(0.1)), ..case.solver() };
-            if case.rng.random_bool(0.3) {
-                // A budget at the edge: what some event needs, or one cell less.
-                let cells: Vec<usize> =
-                    solver.run_where(steps, uses, |_, _| {}).events.iter().map(|event| event.cells).collect();
-                let event = case.rng.random_range(0..=cells.len());
-                let needed = cells.get(event).copied().unwrap_or(solver.cell_budget);
-                solver.cell_budget = needed.saturating_sub(case.rng.random_range(0..2));
+            let stray_budget = u8::from(case.rng.random_bool(0.1));
+            // A budget at the edge: what the largest set needs, or one cell less.
+            let edge = case.rng.random_bool(0.3).then(|| case.rng.random_range(0..2));
+            let mut solver = Solver { stray_budget, ..case.solver() };
+            if let Some(short) = edge {
+                let events = solver.run_where(steps, uses, |_, _| {}).events;
+                let needed = events.iter().map(|event| event.cells).max().unwrap_or(0);
+                solver.cell_budget = needed.saturating_sub(short);
             }
             let fast = run(&solver, steps, uses);
             let plain_map = PlainMap::new(&case.landmarks, Finding::Tree(case.map.index()));
@@ -214,7 +214,8 @@ fn no_digit_differs() {
     let tally = compare(0..1100);
     println!("{tally:?}");
     assert!(tally.solves >= 2000 && tally.events > 5000, "{tally:?}");
-    let rare = tally.empty.iter().chain(&tally.undecided).chain([
+    let rare = tally.empty.iter().chain([
+        &tally.undecided[0],
         &tally.cut,
         &tally.whole,
         &tally.several_slices,
@@ -222,6 +223,8 @@ fn no_digit_differs() {
         &tally.skipped,
     ]);
     assert!(rare.into_iter().all(|&count| count >= 20), "too little to mean much: {tally:?}");
+    // The first set is nearly always the largest.
+    assert!(tally.undecided[1] >= 5, "too little to mean much: {tally:?}");
 }
 
 /// Twenty times as many, on demand.
