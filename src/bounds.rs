@@ -144,7 +144,7 @@ pub const KEYS: &[Key] = &[
         Without("no date on the outputs, and the same input gives the same bytes"),
         "Date of issue, printed on every output.",
     ),
-    key("map", "landmarks", Kind::File, Required, "Landmarks: CSV or GeoJSON points."),
+    key("map", "landmarks", Kind::File, Required, "Landmarks: CSV, GeoJSON points or KML points."),
     key("map", "crs", Kind::Crs, Required, "Coordinate system of the landmark file."),
     key(
         "map",
@@ -244,13 +244,15 @@ pub const KEYS: &[Key] = &[
         "files",
         Kind::Files,
         Required,
-        "Candidate lines: CSV waypoints, GeoJSON lines, GPX routes and tracks.",
+        "Candidate lines: CSV waypoints, GeoJSON lines, GPX routes and tracks, KML lines.",
     ),
     key(
         "lines",
         "crs",
         Kind::Crs,
-        Without("CSV: that of the landmarks; GeoJSON: WGS 84 latitude and longitude; GPX is always WGS 84"),
+        Without(
+            "CSV: that of the landmarks; GeoJSON: WGS 84 latitude and longitude; GPX and KML are always WGS 84",
+        ),
         "Coordinate system of the line files.",
     ),
     key(
@@ -483,7 +485,7 @@ pub const KEYS: &[Key] = &[
         "scoring",
         "cell_budget",
         Kind::Whole(Range::closed(100.0, 10_000_000.0, "")),
-        Default("50000"),
+        Without("50000, or twice the number of landmarks times heading slices where that is more"),
         "Most cells the solver keeps at once before it answers \"undecided\".",
     ),
     number(

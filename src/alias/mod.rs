@@ -78,13 +78,14 @@ pub fn components(
     bounds: &AgreementBounds,
     separation_max_m: f64,
 ) -> (Vec<Component>, bool) {
-    components_near(&Near::new(landmarks, separation_max_m), bounds, separation_max_m)
+    components_near(&Near::new(landmarks, separation_max_m), bounds, separation_max_m, false)
 }
 
 fn components_near(
     near: &Near<'_>,
     bounds: &AgreementBounds,
     separation_max_m: f64,
+    only_whole: bool,
 ) -> (Vec<Component>, bool) {
     let grid = SeparationGrid::new(near, separation_max_m, CELL_M);
     let mut found: Vec<Component> = Vec::new();
@@ -95,6 +96,9 @@ fn components_near(
         let Some(tolerance) = Tolerance::at(bounds, window, 1.0) else { continue };
         let agreement = Agreement::new(near, tolerance, window);
         let (triangles, is_all) = agreement.triangles(&grid, room);
+        if only_whole && !is_all {
+            return (Vec::new(), false);
+        }
         room -= triangles.len();
         is_complete &= is_all;
         let of_window = components::components(&triangles, near.len(), window);

@@ -30,11 +30,14 @@ pub struct LookAlikeRequest {
     pub separation_max_m: Option<f64>,
     /// Most entries to list.
     pub listed: usize,
+    /// Whether a list of some of the look-alikes only is of no use: then nothing is listed when there are more than can be
+    /// held, and no time and memory go into those that can.
+    pub only_whole: bool,
 }
 
 impl Default for LookAlikeRequest {
     fn default() -> Self {
-        Self { separation_max_m: None, listed: LISTED_DEFAULT }
+        Self { separation_max_m: None, listed: LISTED_DEFAULT, only_whole: false }
     }
 }
 
@@ -64,7 +67,8 @@ pub fn look_alikes(
 ) -> LookAlikesReport {
     let separation_max_m = request.separation_max_m.unwrap_or_else(|| separation_default_m(dive));
     let search = Search::new(dive, separation_max_m);
-    let (components, complete) = components_near(&search.near, &search.bounds, separation_max_m);
+    let (components, complete) =
+        components_near(&search.near, &search.bounds, separation_max_m, request.only_whole);
     let (mut candidates, in_layouts) = search.in_layouts(&components);
     let is_in_layout = |number: usize| in_layouts.binary_search(&number).is_ok();
     let is_far: Vec<bool> =

@@ -70,8 +70,14 @@ pub(super) fn guaranteed_fixes(setup: &Setup<'_>, plan: &Plan, starts_m: &[f64])
     starts_m
         .par_iter()
         .map(|&start_m| {
-            let outcomes: Vec<ComposedOutcome> =
-                runs.iter().map(|run| run.solve(&solver, budget.misses, start_m, |_, _| {})).collect();
+            let mut outcomes: Vec<ComposedOutcome> = Vec::with_capacity(runs.len());
+            for run in &runs {
+                outcomes.push(run.solve(&solver, budget.misses, start_m, |_, _| {}));
+                // The first track without a fix is the answer; the others cannot change it.
+                if outcomes.last().is_some_and(|outcome| outcome.fix_m.is_none()) {
+                    break;
+                }
+            }
             worst(&outcomes, setup.dive.scoring.fix_size_m)
         })
         .collect()

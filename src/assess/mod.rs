@@ -10,7 +10,9 @@ mod guarantee;
 mod line;
 mod rank;
 mod remap;
+mod sensitivity;
 pub mod statistics;
+mod suggest;
 mod trace;
 
 pub use area::{AREA_STARTS_MAX, area, area_grid, area_starts};
@@ -19,6 +21,8 @@ pub use line::score_lines;
 pub use remap::{
     RegionIndex, RemapProgress, SurveyGround, mark_segments, remap, remap_area_options, survey_ground,
 };
+pub use sensitivity::{sensitivity, sensitivity_runs};
+pub use suggest::{suggest, suggest_area_options};
 pub use trace::{TraceError, TraceRequest, trace};
 
 use geo::{Contains, Coord, LineString, Polygon, Rect};

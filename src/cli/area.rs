@@ -8,11 +8,12 @@ use super::args::Common;
 use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
-use crate::export::{self, AreaCsv, AreaJson, Exporter};
+use crate::export::{self, AreaCsv, AreaJson, AreaTiff, Exporter};
 use crate::render::{self, AreaChart, ChartSize};
 
 /// Files that `area` writes.
-const FILES: [&str; 5] = ["area.json", "area.csv", "area-worst.png", "area-best.png", "area-share.png"];
+const FILES: [&str; 6] =
+    ["area.json", "area.csv", "area.tif", "area-worst.png", "area-best.png", "area-share.png"];
 
 /// What `area` was asked beyond the dive file.
 pub(super) struct AreaRequest<'a> {
@@ -55,6 +56,7 @@ pub(super) fn area(path: &Path, asked: &AreaRequest<'_>, common: &Common) -> Res
         let bytes = [
             json()?,
             AreaCsv.bytes(&report)?,
+            AreaTiff.bytes(&report)?,
             chart(AreaChart::Worst)?,
             chart(AreaChart::Best)?,
             chart(AreaChart::Share)?,

@@ -140,8 +140,8 @@ pub enum Command {
     ///
     /// From the centre of each start cell a straight run on each heading is solved, lost in the whole search area, and the
     /// guaranteed fix distance is reported: worst, best and median heading, share of the headings that fix within the
-    /// required distance, and why the others do not. With --out, writes area.json, area.csv, area-worst.png,
-    /// area-best.png and area-share.png.
+    /// required distance, and why the others do not. With --out, writes area.json, area.csv, area.tif
+    /// (GeoTIFF), area-worst.png, area-best.png and area-share.png.
     Area {
         /// The dive file (TOML)
         dive: PathBuf,
@@ -163,13 +163,48 @@ pub enum Command {
     /// Runs the area map, joins the cells that fail the requirement into regions, and finds the cause of each by running
     /// the map again with one thing changed at a time: narrower landmark boxes, perfect dead reckoning, a perfect sonar.
     /// For each region it then looks for the re-survey quality that cures it, and runs the map with that quality to see
-    /// what it buys. With --out, writes remap.json, remap.csv, remap.geojson and remap.png. Keys: section [remap].
+    /// what it buys. With --out, writes remap.json, remap.csv, remap.png and, when the map is on the Earth, remap.geojson.
+    /// Keys: section [remap].
     Remap {
         /// The dive file (TOML)
         dive: PathBuf,
-        /// Folder for the four files (made if missing); without it nothing is written
+        /// Folder for the files (made if missing); without it nothing is written
         #[arg(long, value_name = "FOLDER")]
         out: Option<PathBuf>,
+    },
+    /// Suggest where to dive and which heading to run first
+    ///
+    /// The vehicle starts anywhere in the descent scatter about the dive point and does not know where. For every dive
+    /// point of the search area and every heading the longest guaranteed fix distance over the scatter disc is found, and
+    /// the best are listed, far enough apart to be real alternatives. With --out, writes suggest.json, suggest.csv,
+    /// suggest.png, and the suggested lines S1, S2, ... as suggest-lines.csv and, when the map is on the Earth,
+    /// suggest.geojson and suggest.gpx: name one of these in lines.files and `lines` scores them. Keys: section
+    /// [suggest]; cells, headings and the longest run are those of [area].
+    Suggest {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Most suggestions to list, in place of the dive file's
+        #[arg(long, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..=100))]
+        listed: Option<u16>,
+    },
+    /// Find which error bound is worth improving first
+    ///
+    /// Every error bound is multiplied by a factor, one at a time and then all together, and the guaranteed fixes of every
+    /// line are computed again: how much more of the lines has a guaranteed fix within the required distance, how many
+    /// segments gain one, and how much sooner it comes. No simulated dive is involved. With --out, writes
+    /// sensitivity.json, sensitivity.csv and sensitivity.png.
+    Sensitivity {
+        /// The dive file (TOML)
+        dive: PathBuf,
+        /// Folder for the three files (made if missing); without it nothing is written
+        #[arg(long, value_name = "FOLDER")]
+        out: Option<PathBuf>,
+        /// Factor for each bound, in place of the dive file's: 0.5 halves it, 0 makes it perfect
+        #[arg(long, value_name = "FACTOR", value_parser = factor)]
+        factor: Option<f64>,
     },
     /// Print a completion script for a shell
     Completions {
@@ -196,17 +231,22 @@ fn separation(text: &str) -> Result<f64, String> {
 
 /// Parses the side of a start cell.
 fn cell(text: &str) -> Result<f64, String> {
-    in_range_of("cell_m", text)
+    in_range_of("area", "cell_m", text)
 }
 
 /// Parses the longest straight run.
 fn longest_run(text: &str) -> Result<f64, String> {
-    in_range_of("longest_run_m", text)
+    in_range_of("area", "longest_run_m", text)
 }
 
-/// Parses a number in the range of a key of the area map.
-fn in_range_of(key: &str, text: &str) -> Result<f64, String> {
-    let key = bounds::find("area", key);
+/// Parses the factor of an improvement.
+fn factor(text: &str) -> Result<f64, String> {
+    in_range_of("sensitivity", "factor", text)
+}
+
+/// Parses a number in the range of a key.
+fn in_range_of(section: &str, key: &str, text: &str) -> Result<f64, String> {
+    let key = bounds::find(section, key);
     match (text.parse::<f64>(), key.kind) {
         (Ok(number), bounds::Kind::Number(range)) if range.contains(number) => Ok(number),
         _ => Err(format!("accepted: {}", key.accepted())),

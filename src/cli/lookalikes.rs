@@ -69,7 +69,7 @@ fn found(setup: &Setup<'_>, request: &LookAlikeRequest) -> LookAlikesReport {
 
 /// Marks the segments that run over the most dangerous look-alikes.
 pub(super) fn mark_look_alikes(setup: &Setup<'_>, report: &mut LinesReport, common: &Common) {
-    let request = LookAlikeRequest { listed: MARKED, ..LookAlikeRequest::default() };
+    let request = LookAlikeRequest { listed: MARKED, only_whole: true, ..LookAlikeRequest::default() };
     let found = found(setup, &request);
     // Marks from half a search would look like clear ground elsewhere.
     if found.complete {

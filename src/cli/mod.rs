@@ -7,6 +7,8 @@ mod args;
 mod lookalikes;
 mod remap;
 mod run;
+mod sensitivity;
+mod suggest;
 mod terminal;
 
 pub use run::{Exit, main_with};

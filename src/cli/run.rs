@@ -9,6 +9,8 @@ use super::area::{AreaRequest, area};
 use super::args::{Arguments, Command, Common};
 use super::lookalikes::{lookalikes, mark_look_alikes};
 use super::remap::{mark_remap_regions, refuse_huge, remap};
+use super::sensitivity::sensitivity;
+use super::suggest::suggest;
 use super::terminal::{print_notices, print_result, progress_bar};
 use crate::alias::LookAlikeRequest;
 use crate::assess::{self, Setup, TraceRequest};
@@ -76,7 +78,11 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             trace(dive, &request, out.as_deref(), common)
         }
         Command::Lookalikes { dive, out, separation_m, listed } => {
-            let request = LookAlikeRequest { separation_max_m: *separation_m, listed: *listed as usize };
+            let request = LookAlikeRequest {
+                separation_max_m: *separation_m,
+                listed: *listed as usize,
+                only_whole: false,
+            };
             lookalikes(dive, &request, out.as_deref(), common)
         }
         Command::Area { dive, out, cell_m, headings, longest_run_m } => {
@@ -89,6 +95,8 @@ fn run(arguments: &Arguments) -> Result<Exit> {
             area(dive, &asked, common)
         }
         Command::Remap { dive, out } => remap(dive, out.as_deref(), common),
+        Command::Suggest { dive, out, listed } => suggest(dive, out.as_deref(), *listed, common),
+        Command::Sensitivity { dive, out, factor } => sensitivity(dive, out.as_deref(), *factor, common),
         Command::Completions { shell } => {
             let mut script = Vec::new();
             clap_complete::generate(*shell, &mut Arguments::command(), "fixability", &mut script);

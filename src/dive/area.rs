@@ -2,12 +2,13 @@
 
 use geo::{ConvexHull, Coord, LineString, Polygon};
 use geojson::GeometryValue;
+use nalgebra::Vector2;
 
 use super::site::{Site, bounding};
 use crate::frame::{Crs, Frame, Given, LocalPoint};
 use crate::input::position::PositionCheck;
 use crate::input::{Format, InputText, geojson as features};
-use crate::interval::{down, larger, up};
+use crate::interval::{down, larger, smaller, up};
 use crate::problem::{Findings, Problem};
 use crate::track::Line;
 use crate::units::length_words;
@@ -138,6 +139,44 @@ pub(super) fn read(
     }
     findings.inform(Some(&input.name), format!("search area: a polygon with {} corners", corners.len()));
     Some(corners)
+}
+
+/// The convex hull of a search area: where the solver takes the vehicle to start.
+#[derive(Clone, Debug)]
+pub struct SearchHull {
+    /// Corners, counter-clockwise.
+    ring: Vec<LocalPoint>,
+}
+
+impl SearchHull {
+    /// The hull of the corners of a search area, which encloses some area.
+    pub fn new(corners: &[LocalPoint]) -> Self {
+        Self { ring: convex_hull(corners) }
+    }
+
+    /// Distance from a point inside to the nearest edge, metres; negative outside.
+    pub fn inside_m(&self, p: LocalPoint) -> f64 {
+        -outside_m(&self.ring, p)
+    }
+
+    /// How far a point may move in a direction (a unit vector east, north) and stay `margin_m` inside, metres; 0 for one
+    /// that does not lie so far inside.
+    pub fn room_m(&self, from: LocalPoint, along: Vector2<f64>, margin_m: f64) -> f64 {
+        let ahead = LocalPoint::new(from.east_m + along.x, from.north_m + along.y);
+        let edges = (0..self.ring.len()).map(|i| (self.ring[i], self.ring[(i + 1) % self.ring.len()]));
+        let room = edges.map(|(a, b)| {
+            let depth = |p: LocalPoint| cross(a, b, p) / a.distance_m(b);
+            let (spare_m, shrinks) = (depth(from) - margin_m, depth(from) - depth(ahead));
+            if spare_m < 0.0 {
+                0.0
+            } else if shrinks > 0.0 {
+                spare_m / shrinks
+            } else {
+                f64::INFINITY
+            }
+        });
+        room.fold(f64::INFINITY, smaller)
+    }
 }
 
 /// The corners of an area that holds every point within `by_m` of the convex hull of `corners`; `corners` themselves when

@@ -49,14 +49,14 @@ impl ErrorBound {
     pub fn words(self) -> &'static str {
         match self {
             Self::LandmarkBoxes => "landmark boxes",
-            Self::DistanceScale => "distance run",
+            Self::DistanceScale => "distance error",
             Self::HeadingBias => "heading bias",
             Self::HeadingNoise => "heading noise",
             Self::Drift => "drift",
-            Self::RangeConstant => "range, constant part",
-            Self::RangeGrowing => "range, growing part",
-            Self::Bearing => "beam direction",
-            Self::Altitude => "altitude",
+            Self::RangeConstant => "range error, constant",
+            Self::RangeGrowing => "range error, growing",
+            Self::Bearing => "beam direction error",
+            Self::Altitude => "altitude error",
         }
     }
 
@@ -75,7 +75,7 @@ impl ErrorBound {
         }
     }
 
-    /// The unit of [`Self::value_of`].
+    /// The unit in which its values are given.
     pub fn unit(self) -> &'static str {
         match self {
             Self::LandmarkBoxes | Self::RangeConstant | Self::Altitude => "m",
@@ -126,7 +126,7 @@ impl Dive {
         half_widths.fold(0.0, crate::order::larger)
     }
 
-    /// The dive with each of `bounds` multiplied by `factor`, at most 1. The grid's part of a bound stays, and so does the
+    /// The dive with each of `bounds` of the dive file multiplied by `factor`, at most 1. The grid's part of a bound stays, and so does the
     /// number of slices of the heading bias.
     ///
     /// *Slices.* With as many slices over a bias of at most half of what it was, each window of the composed run

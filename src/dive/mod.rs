@@ -10,6 +10,7 @@ mod site;
 mod swath;
 mod widen;
 
+pub use area::SearchHull;
 pub use improve::ErrorBound;
 
 use std::path::PathBuf;

@@ -6,7 +6,7 @@ use super::improve::Stated;
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
-use super::{Dive, InputFile, Start, area, checks, swath, widen};
+use super::{Dive, InputFile, Scoring, Start, area, checks, swath, widen};
 use crate::frame::Crs;
 use crate::input::{Format, InputText};
 use crate::map::Landmark;
@@ -113,6 +113,9 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
             "vehicle.turn_radius_m is not given: the vehicle is taken to turn on the spot, so no landmark is lost in a turn",
         );
     }
+    let heading_slices = settings.heading_slices?;
+    let cell_budget =
+        settings.cell_budget.unwrap_or_else(|| cell_budget_default(landmarks.len(), heading_slices));
     Some(Dive {
         name: settings.name?,
         issued: settings.issued,
@@ -127,18 +130,25 @@ fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
         dead_reckoning,
         sonar: widened_sonar,
         start: Start { search_area, ..start },
-        scoring: settings.scoring?,
+        scoring: Scoring { cell_budget, ..settings.scoring? },
         area: settings.area?,
         remap: settings.remap?,
         suggest: settings.suggest?,
         improvement_factor: settings.improvement_factor?,
-        heading_slices: settings.heading_slices?,
+        heading_slices,
         budget: settings.budget?,
         nothing_seen_inside,
         inputs,
         notices: std::mem::take(&mut findings.notices),
         stated,
     })
+}
+
+/// Most cells unless told otherwise. The first detection leaves one cell for each landmark and slice, so a budget below that
+/// would leave every run on a large map undecided.
+fn cell_budget_default(landmarks: usize, heading_slices: usize) -> usize {
+    const LEAST: usize = 50_000;
+    (2 * landmarks * heading_slices).max(LEAST)
 }
 
 /// Reads the dive file and all files it names, as far as they can be read.
@@ -220,8 +230,9 @@ fn refuse_without_effect(
     if !lines.is_empty() && lines.iter().all(|i| i.format() != Some(Format::Csv)) {
         refuse("lines", "decimal_comma", "no line file is CSV");
     }
-    if !lines.is_empty() && lines.iter().all(|i| i.format() == Some(Format::Gpx)) {
-        refuse("lines", "crs", "GPX is always WGS 84 latitude and longitude");
+    let is_fixed = |i: &InputText| matches!(i.format(), Some(Format::Gpx | Format::Kml));
+    if !lines.is_empty() && lines.iter().all(is_fixed) {
+        refuse("lines", "crs", "GPX and KML are always WGS 84 latitude and longitude");
     }
 }
 

@@ -41,6 +41,7 @@ pub(super) struct Settings {
     pub nothing_seen: bool,
     pub scatter_m: Option<f64>,
     pub scoring: Option<Scoring>,
+    pub cell_budget: Option<usize>,
     pub area: Option<AreaOptions>,
     pub remap: Option<RemapOptions>,
     pub suggest: Option<SuggestOptions>,
@@ -87,6 +88,7 @@ impl Settings {
         let complete_inside = doc.file("map", "complete_inside", f);
         let nothing_seen = nothing_seen(doc, sonar.as_ref(), gone_chance, f);
         let scoring = scoring(doc, f);
+        let cell_budget = doc.number("scoring", "cell_budget", f).map(|cells| cells as usize);
         let area = area(doc, f);
         let remap = remap(doc, f);
         let suggest = suggest(doc, f);
@@ -124,6 +126,7 @@ impl Settings {
             nothing_seen,
             scatter_m,
             scoring,
+            cell_budget,
             area,
             remap,
             suggest,
@@ -419,7 +422,6 @@ fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
     let segment = number("segment_m", f);
     let draws = number("draws", f);
     let seed = number("seed", f);
-    let cells = number("cell_budget", f);
     let rank_by = doc.text("scoring", "rank_by", f);
     let shapes = if doc.has("scoring", "error_shapes") {
         doc.list("scoring", "error_shapes", f)
@@ -450,6 +452,7 @@ fn scoring(doc: &Document<'_>, f: &mut Findings) -> Option<Scoring> {
         seed: seed? as u64,
         error_shapes,
         rank_by,
-        cell_budget: cells? as usize,
+        // Set when the number of landmarks is known.
+        cell_budget: 0,
     })
 }

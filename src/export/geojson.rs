@@ -59,7 +59,13 @@ impl<'a> GeoJsonFile<'a> {
             stepped(leg[0], leg[1], &mut path);
         }
         path.extend(points.last());
-        let mut parts: Vec<Vec<Position>> = cut::line(&self.all(&path)?).into_iter().map(written).collect();
+        self.waypoints(&path)
+    }
+
+    /// As [`Self::line`] without added positions: for lines that are read again as waypoints, where a position more would
+    /// be a turn.
+    pub(super) fn waypoints(&self, points: &[LocalPoint]) -> Result<GeometryValue, ExportError> {
+        let mut parts: Vec<Vec<Position>> = cut::line(&self.all(points)?).into_iter().map(written).collect();
         Ok(if parts.len() == 1 {
             GeometryValue::LineString { coordinates: parts.remove(0) }
         } else {

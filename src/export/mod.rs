@@ -7,21 +7,28 @@ mod csv;
 mod files;
 mod geojson;
 mod geojson_cut;
+mod geotiff;
+mod geotiff_area;
 mod gpx;
 mod json;
 mod landmarks;
 mod lookalikes;
 mod remap;
+mod sensitivity;
+mod suggest;
 mod table;
 
 pub use area::{AreaCsv, AreaJson, area_table};
 pub use csv::{LinesCsv, LinesGeoJson};
 pub use files::{prepare, write_all};
+pub use geotiff_area::{AreaTiff, NONE_CODE};
 pub use gpx::RecommendedGpx;
 pub use json::{LinesJson, TraceJson, check_json};
 pub use landmarks::LandmarksGeoJson;
 pub use lookalikes::{LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson, lookalikes_table};
 pub use remap::{RemapCsv, RemapGeoJson, RemapJson, remap_table};
+pub use sensitivity::{SensitivityCsv, SensitivityJson, sensitivity_table};
+pub use suggest::{SuggestCsv, SuggestGeoJson, SuggestGpx, SuggestJson, SuggestLinesCsv, suggest_table};
 pub use table::{check_text, lines_table, trace_table};
 
 use std::path::PathBuf;

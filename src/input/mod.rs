@@ -1,9 +1,11 @@
-//! Text files as they come: bytes with a fingerprint, encoding, format, tables and GeoJSON features.
+//! Text files as they come: bytes with a fingerprint, encoding, format, tables, GeoJSON features and KML placemarks.
 //!
 //! What a row means is decided by [`crate::map`] and [`crate::track`]; this module knows where it stands and how it is
 //! written, so that every error can say so.
 
 pub mod geojson;
+pub mod kml;
+mod kml_text;
 pub mod position;
 pub mod table;
 
@@ -12,6 +14,9 @@ use std::path::{Path, PathBuf};
 use sha2::{Digest, Sha256};
 
 use crate::problem::{Findings, Problem};
+
+/// First bytes of a ZIP archive (its local file header signature).
+const ZIP_START: &[u8] = b"PK\x03\x04";
 
 /// A text file, read once.
 #[derive(Clone, Debug)]
@@ -33,6 +38,8 @@ pub enum Format {
     GeoJson,
     /// GPX.
     Gpx,
+    /// KML.
+    Kml,
 }
 
 impl InputText {
@@ -60,6 +67,14 @@ impl InputText {
         if bytes.starts_with(&[0xFF, 0xFE]) || bytes.starts_with(&[0xFE, 0xFF]) {
             findings.problem(
                 Problem::new(name, "is UTF-16 text").accepted("UTF-8 text").advice("save the file as UTF-8"),
+            );
+            return None;
+        }
+        if bytes.starts_with(ZIP_START) {
+            findings.problem(
+                Problem::new(name, "is a compressed archive (ZIP)")
+                    .accepted("text files; of a KMZ archive, the KML file inside")
+                    .advice("unpack it, and name the file inside (in a KMZ archive usually doc.kml)"),
             );
             return None;
         }
@@ -94,9 +109,11 @@ impl InputText {
             "csv" | "txt" | "tsv" => Some(Format::Csv),
             "geojson" | "json" => Some(Format::GeoJson),
             "gpx" => Some(Format::Gpx),
+            "kml" => Some(Format::Kml),
             _ => match self.text.trim_start().chars().next() {
                 Some('{') => Some(Format::GeoJson),
                 Some('<') if self.text.contains("<gpx") => Some(Format::Gpx),
+                Some('<') if self.text.contains("<kml") => Some(Format::Kml),
                 _ => None,
             },
         }

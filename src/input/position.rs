@@ -77,11 +77,16 @@ impl PositionColumns {
     }
 }
 
+/// Advice where a format holds nothing but longitude and latitude.
+const DEGREES_ONLY: &str = "this format holds longitude, then latitude, in degrees; for metres, use another format and state the grid";
+
 /// Checks the coordinates of one file as they come and remembers their extent.
 #[derive(Debug)]
 pub struct PositionCheck<'a> {
     file: PathBuf,
     crs: &'a Crs,
+    /// Whether the format holds nothing but degrees.
+    degrees_only: bool,
     seen: usize,
     outside: usize,
     x: Option<(f64, f64)>,
@@ -91,7 +96,13 @@ pub struct PositionCheck<'a> {
 impl<'a> PositionCheck<'a> {
     /// For one file in `crs`.
     pub fn new(file: &Path, crs: &'a Crs) -> Self {
-        Self { file: file.to_path_buf(), crs, seen: 0, outside: 0, x: None, y: None }
+        Self { file: file.to_path_buf(), crs, degrees_only: false, seen: 0, outside: 0, x: None, y: None }
+    }
+
+    /// For a format that holds nothing but longitude and latitude, so that advice does not speak of stating a grid.
+    #[must_use]
+    pub fn degrees_only(self) -> Self {
+        Self { degrees_only: true, ..self }
     }
 
     fn ranges(&self) -> (Range, Range) {
@@ -167,7 +178,9 @@ impl<'a> PositionCheck<'a> {
                         .line(line)
                         .place(place)
                         .accepted(format!("{range}"))
-                        .advice(if self.crs.is_geographic() {
+                        .advice(if self.degrees_only {
+                            DEGREES_ONLY
+                        } else if self.crs.is_geographic() {
                             "degrees are expected; for metres, state the projected coordinate system"
                         } else {
                             ""
@@ -208,6 +221,8 @@ impl<'a> PositionCheck<'a> {
                 .accepted("latitude −90 to 90 and longitude −180 to 360 degrees")
                 .advice(if swapped {
                     "latitude and longitude look swapped: rename the columns or reorder the values"
+                } else if self.degrees_only {
+                    DEGREES_ONLY
                 } else {
                     "these look like metres: state the projected coordinate system, such as crs = \"EPSG:32631\", and \
                      name the columns easting and northing"

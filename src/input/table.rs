@@ -134,7 +134,7 @@ impl Table {
 }
 
 /// Lower case, blanks and hyphens to underscores, so that `Easting (m)`-like spellings stay readable in the alias list.
-fn normal(name: &str) -> String {
+pub(crate) fn normal(name: &str) -> String {
     name.trim().to_lowercase().replace([' ', '-'], "_")
 }
 

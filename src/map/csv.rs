@@ -15,18 +15,20 @@ use crate::input::{BadRows, InputText};
 use crate::problem::{Findings, Problem};
 use crate::units;
 
-const ID: Column = Column {
+pub(super) const ID: Column = Column {
     key: "id",
     names: &["id", "contact_id", "contact", "landmark", "landmark_id", "name", "label"],
     one_only: false,
 };
-const BOTH: Column =
+pub(super) const BOTH: Column =
     Column { key: "both", names: &["uncertainty_m", "uncertainty", "unc_m"], one_only: true };
-const EAST: Column = Column { key: "u_east", names: &["uncertainty_east_m", "unc_east_m"], one_only: true };
-const NORTH: Column =
+pub(super) const EAST: Column =
+    Column { key: "u_east", names: &["uncertainty_east_m", "unc_east_m"], one_only: true };
+pub(super) const NORTH: Column =
     Column { key: "u_north", names: &["uncertainty_north_m", "unc_north_m"], one_only: true };
 
-const SURVEYED: Column = Column { key: "surveyed", names: &["surveyed", "survey_date"], one_only: true };
+pub(super) const SURVEYED: Column =
+    Column { key: "surveyed", names: &["surveyed", "survey_date"], one_only: true };
 
 pub(super) fn read(
     input: &InputText,

@@ -5,6 +5,7 @@
 mod csv;
 mod geojson;
 pub mod index;
+mod kml;
 pub mod read;
 pub mod uncertainty;
 

@@ -2,7 +2,7 @@
 
 use time::Date;
 
-use super::{csv, geojson};
+use super::{csv, geojson, kml};
 use crate::frame::{Crs, Given};
 use crate::input::{Format, InputText};
 use crate::problem::{Findings, Problem};
@@ -73,10 +73,12 @@ pub fn read(
     match input.format() {
         Some(Format::Csv) => csv::read(input, crs, options, findings),
         Some(Format::GeoJson) => geojson::read(input, crs, options, findings),
+        Some(Format::Kml) => kml::read(input, crs, options, findings),
         Some(Format::Gpx) | None => {
             findings.problem(
-                Problem::new(&input.name, "is in no format that holds landmarks")
-                    .accepted("CSV (.csv, .tsv, .txt) or GeoJSON points (.geojson, .json)"),
+                Problem::new(&input.name, "is in no format that holds landmarks").accepted(
+                    "CSV (.csv, .tsv, .txt), GeoJSON points (.geojson, .json) or KML points (.kml)",
+                ),
             );
             None
         }

@@ -23,13 +23,17 @@ mod ranking;
 mod remap;
 mod ribbon;
 mod scene;
+mod sensitivity;
+mod suggest;
 mod text;
 mod trace;
 
 pub use colours::{CLASSES, ramp};
 pub use scene::{PlacedText, Rect};
 
-use crate::report::{AreaReport, LinesReport, LookAlikesReport, RemapReport, TraceReport};
+use crate::report::{
+    AreaReport, LinesReport, LookAlikesReport, RemapReport, SensitivityReport, SuggestReport, TraceReport,
+};
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
@@ -232,4 +236,43 @@ pub fn remap_png(report: &RemapReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`remap_png`].
 pub fn remap_layout(report: &RemapReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(remap::scene(report, size)?.texts)
+}
+
+/// Draws the suggested dive points with their scatter discs and first runs, numbered, with the list of them.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or the search area has no finite corner.
+pub fn suggest_png(report: &SuggestReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&suggest::scene(report, size)?, size)
+}
+
+/// The texts of [`suggest_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`suggest_png`].
+pub fn suggest_layout(report: &SuggestReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(suggest::scene(report, size)?.texts)
+}
+
+/// Draws what each improved error bound brings, as bars.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn.
+pub fn sensitivity_png(report: &SensitivityReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&sensitivity::scene(report, size)?, size)
+}
+
+/// The texts of [`sensitivity_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`sensitivity_png`].
+pub fn sensitivity_layout(
+    report: &SensitivityReport,
+    size: &ChartSize,
+) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(sensitivity::scene(report, size)?.texts)
 }

@@ -66,8 +66,8 @@ pub struct ImprovedBound {
     pub key: &'static str,
     /// Unit of the values: `m`, `%`, `degrees`, `m/s`.
     pub unit: &'static str,
-    /// Place in the ranking, from 1; equal gains share a place.
-    pub rank: usize,
+    /// Place in the ranking, from 1; equal gains share a place; none when it changes no figure that decides.
+    pub rank: Option<usize>,
     /// Present value.
     pub present: BoundValue,
     /// Improved value.

@@ -74,12 +74,12 @@ pub struct SuggestReport {
     pub search: AreaOptions,
     /// What the figures mean.
     pub statement: &'static str,
+    /// Radius of the scatter disc on the map, m: descent scatter and common shift.
+    pub scatter_m: f64,
     /// The starts computed in a scatter disc, in words.
     pub start_pattern: String,
-    /// Least distance between two dive points of the list whose headings differ by less than `apart_deg`, m.
+    /// Least distance between two dive points of the list, m: the scatter disc's width or twice the sonar's reach.
     pub apart_m: f64,
-    /// Headings that differ by so much are alternatives from any dive point, degrees.
-    pub apart_deg: f64,
     /// Where the cells lie.
     pub grid: AreaGrid,
     /// Cells of the search area.

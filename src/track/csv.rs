@@ -11,7 +11,7 @@ use crate::input::{BadRows, InputText};
 use crate::problem::{Findings, Problem};
 use crate::units;
 
-const LINE: Column =
+pub(super) const LINE: Column =
     Column { key: "line", names: &["line", "line_name", "line_id", "name"], one_only: false };
 const ORDER: Column = Column {
     key: "order",

@@ -5,6 +5,7 @@
 mod csv;
 mod geojson;
 mod gpx;
+mod kml;
 pub mod plan;
 pub mod read;
 

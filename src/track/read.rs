@@ -1,6 +1,6 @@
 //! Line files: what every format has in common.
 
-use super::{csv, geojson, gpx};
+use super::{csv, geojson, gpx, kml};
 use crate::frame::{Crs, Given};
 use crate::input::{Format, InputText};
 use crate::problem::{Findings, Problem};
@@ -54,9 +54,10 @@ pub fn read(input: &InputText, options: ReadOptions<'_>, findings: &mut Findings
         Some(Format::Csv) => csv::read(input, options, findings),
         Some(Format::GeoJson) => geojson::read(input, options.declared, findings),
         Some(Format::Gpx) => gpx::read(input, findings),
+        Some(Format::Kml) => kml::read(input, findings),
         None => {
             findings.problem(Problem::new(&input.name, "is in no format that holds lines").accepted(
-                "CSV waypoints (.csv, .tsv, .txt), GeoJSON lines (.geojson, .json) or GPX routes and tracks (.gpx)",
+                "CSV waypoints (.csv, .tsv, .txt), GeoJSON lines (.geojson, .json), GPX routes and tracks (.gpx) or KML lines (.kml)",
             ));
             None
         }

@@ -754,6 +754,11 @@ fn a_search_that_grows_too_large_is_undecided() {
         "{}",
         ran.stderr
     );
+    // Marks from some of the look-alikes would look like clear ground elsewhere: a list of some is then no list.
+    let dive = dive_of(&map, "line,easting,northing\nA,0,300\nA,700,300\n");
+    let whole = LookAlikeRequest { only_whole: true, ..LookAlikeRequest::default() };
+    let nothing = report(&dive, &whole);
+    assert!(!nothing.complete && nothing.look_alikes.is_empty());
 }
 
 #[test]

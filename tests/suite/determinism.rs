@@ -27,7 +27,7 @@ fn compare(command: &str, extra: &[&str], files: &[&str]) {
 
 #[test]
 fn case_32_scores_of_the_demo_do_not_depend_on_threads() {
-    compare("lines", &[], &["lines.csv", "lines.json", "lines.png"]);
+    compare("lines", &[], &["lines.csv", "lines.geojson", "lines.json", "lines.png", "recommended.gpx"]);
 }
 
 #[test]
@@ -37,7 +37,7 @@ fn a_trace_of_the_demo_does_not_depend_on_threads() {
 
 #[test]
 fn an_area_map_of_the_demo_does_not_depend_on_threads() {
-    let files = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json"];
+    let files = ["area-best.png", "area-share.png", "area-worst.png", "area.csv", "area.json", "area.tif"];
     compare("area", &["--cell-m", "60", "--headings", "8"], &files);
 }
 

@@ -3,6 +3,7 @@
 mod frames;
 mod guard;
 mod happy;
+mod kml;
 mod landmark_files;
 mod line_files;
 mod settings;

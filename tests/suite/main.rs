@@ -13,7 +13,9 @@ mod demo;
 mod determinism;
 mod edge_cases;
 mod export;
+mod gis;
 mod guarantee;
+mod heavy;
 mod intervals;
 mod layers;
 mod load;
@@ -31,10 +33,12 @@ mod render;
 mod reports;
 #[path = "support/scanline.rs"]
 mod scanline;
+mod sensitivity;
 mod sets;
 mod silence;
 mod slices;
 mod soundness;
+mod suggest;
 mod support;
 #[path = "support/template.rs"]
 mod template;

@@ -19,7 +19,7 @@ use crate::support::program::{Ran, Workplace, project};
 /// Set to 1 to write the made parts of the README and `reports/` instead of failing.
 const WRITE: &str = "FIXABILITY_WRITE_REPORTS";
 const MAIN_JOB: &str = "cargo run --release -- lines demo-data/dive.toml --out demo-out";
-const TESTS: &str = "cargo test --release";
+const TESTS: &str = "tests/run";
 /// What stands before the program's own arguments.
 const CARGO_RUN: &str = "cargo run --release -- ";
 /// Pictures of `reports/` and the outputs that they are.
@@ -202,6 +202,7 @@ fn every_command_of_the_readme_runs() {
         "area-worst.png",
         "area.csv",
         "area.json",
+        "area.tif",
         "lookalikes-panels.png",
         "lookalikes.csv",
         "lookalikes.geojson",
@@ -359,7 +360,7 @@ fn every_listed_column_name_is_read() {
 
 #[test]
 fn columns_of_the_files_are_those_written() {
-    for file in ["lines.csv", "area.csv", "lookalikes.csv"] {
+    for file in ["lines.csv", "area.csv", "lookalikes.csv", "suggest.csv", "sensitivity.csv"] {
         let heading = format!("\nColumns of `{file}`");
         let table = section(&README.on_disk, &heading);
         // The tables of several files stand in one section.
@@ -412,7 +413,18 @@ fn commands_and_options_are_those_of_the_help() {
     let table = rows(section(&README.on_disk, "\n## Commands and options"));
     let first: String = table.iter().map(|row| format!("{} ", row[0])).collect();
     let mut known = BTreeSet::new();
-    for command in ["", "check", "lines", "area", "trace", "lookalikes", "remap", "completions"] {
+    for command in [
+        "",
+        "check",
+        "lines",
+        "area",
+        "trace",
+        "lookalikes",
+        "remap",
+        "suggest",
+        "sensitivity",
+        "completions",
+    ] {
         let help = place.run(&format!("{command} --help")).expect(0).stdout;
         let listed: BTreeSet<String> = help
             .lines()

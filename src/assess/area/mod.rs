@@ -155,7 +155,7 @@ fn blocks(places: &[(usize, usize)]) -> Vec<Vec<usize>> {
 }
 
 /// The outcome of one run, with the cause that a segment of a line would get.
-fn outcome(found: StraightOutcome) -> RunOutcome {
+pub(super) fn outcome(found: StraightOutcome) -> RunOutcome {
     match found {
         StraightOutcome::Fix(fix_m) => RunOutcome::Fix(fix_m),
         StraightOutcome::Undecided => RunOutcome::NoFix(Cause::Undecided),

@@ -105,7 +105,10 @@ fn keys_without_effect_are_refused() {
         .errors();
     holds(
         &text,
-        &["key lines.crs: has no effect: GPX is always WGS 84", "key lines.decimal_comma: has no effect"],
+        &[
+            "key lines.crs: has no effect: GPX and KML are always WGS 84",
+            "key lines.decimal_comma: has no effect",
+        ],
     );
     let text = Scene::new().swap("side-looking", "forward-looking").errors();
     holds(&text, &["key sonar.sector_deg: is missing", "needs the opening of its sector"]);
