@@ -120,8 +120,9 @@ impl Feasible {
     }
 }
 
-/// The feasible set after an event, as the solver shows it: a [`Feasible`] whose cells are worked out when they are first
-/// looked at. The set after the first detection has a cell for every landmark, and few who watch a run ask for them.
+/// The feasible set after an event, as the solver shows it: a [`Feasible`] whose cells are worked out when they are
+/// first looked at. The set after the first detection has a cell for every landmark, and few who watch a run ask for
+/// them.
 #[derive(Debug)]
 pub struct EventSet<'a> {
     hulls: &'a [Option<Cell>],

@@ -2,33 +2,30 @@
 //!
 //! The first detection may be any landmark, so its set has one cell per landmark and slice, and the second detection
 //! ends most of them. The answers here are those of [`super::Solver`]'s plain way, to the last digit, found with less
-//! work. It is used without stray budget and without silence as evidence, where a state is no more than its cell and slice.
+//! work. It is used without stray budget and without silence as evidence, where a state is no more than its cell and
+//! slice.
 //!
-//! *1. Whole vantages are not stored.* The cell of landmark j is its vantage [M_j] ⊕ −S cut by the moved search area
-//! A = X_0 ⊕ D. Where the vantage lies inside A, [`Cell::intersection`] returns the vantage itself, whose reaches follow
-//! from the box and the look alone. In each strip of the map ([`Strips`]) the landmarks between two eastings are found for
-//! which that holds in every slice: with N_i the greatest north part of d_i·p in the strip and
-//! c_i = min over slices of A_i − look_i, a box lies far enough inside if its own reach east is at most c_i − N_i in
-//! every direction, an upper limit of its east edge or a lower limit of its west edge. They are *whole*. All others near
-//! the area are intersected one by one and stored: *cut*. Calling a whole one cut costs time and changes nothing.
-//! [`SLACK_M`] lies between the test and the rounding of the reaches, so a whole vantage is inside in the solver's own numbers,
-//! and its box meets the solver's query.
+//! *1. Whole vantages are not stored.* The cell of landmark j is its vantage [M_j] ⊕ −S cut by the moved search area A
+//! = X_0 ⊕ D. Where the vantage lies inside A, [`Cell::intersection`] returns the vantage itself, whose reaches follow
+//! from the box and the look alone. In each strip of the map ([`Strips`]) the landmarks between two eastings are found
+//! for which that holds in every slice: with N_i the greatest north part of d_i·p in the strip and c_i = min over
+//! slices of A_i − look_i, a box lies far enough inside if its own reach east is at most c_i − N_i in every direction,
+//! an upper limit of its east edge or a lower limit of its west edge. They are *whole*. All others near the area are
+//! intersected one by one and stored: *cut*. Calling a whole one cut costs time and changes nothing. [`SLACK_M`] lies
+//! between the test and the rounding of the reaches, so a whole vantage is inside in the solver's own numbers, and its
+//! box meets the solver's query.
 //!
-//! *2. Hulls.* Adding a constant and rounding up is monotone, so the greatest reach of all whole vantages of a slice is the
-//! greatest reach of their boxes, plus that of the look, rounded up: the same number as the greatest of the sums.
+//! *2. Hulls.* Adding a constant and rounding up is monotone, so the greatest reach of all whole vantages of a slice
+//! is the greatest reach of their boxes, plus that of the look, rounded up: the same number as the greatest of the
+//! sums.
 //!
-//! *3. Places.* The plain way joins two cells when their bounding boxes pass [`is_near`]. The same test is made here on the
-//! same boxes, on all pairs that can pass it ([`Strips::near_pairs`], or [`Strips::join`]); their number is in proportion to the number of landmarks. A
-//! whole landmark stands for its cells of all slices: they are called whole only if every two neighbouring slices
-//! of one landmark pass the test with room to spare, so they are one place anyway. Places = cells (a whole landmark counted once)
-//! less joins that united two groups.
+//! *3. Places.* The plain way joins two cells when their bounding boxes pass [`is_near`]. The same test is made here
+//! on the same boxes, on all pairs that can pass it ([`Strips::near_pairs`], or [`Strips::join`]); their number is in
+//! proportion to the number of landmarks. A whole landmark stands for its cells of all slices: they are called whole
+//! only if every two neighbouring slices of one landmark pass the test with room to spare, so they are one place
+//! anyway. Places = cells (a whole landmark counted once) less joins that united two groups.
 //!
-//! *4. The second detection* is asked for each landmark j by the plain way's own query: which boxes meet the bounding box of the moved
-//! cell, grown by the look. For whole vantages the queries of all landmarks are one join. What it finds is cut down by
-//! the sums of the reaches: the moved cell has in direction d_i a reach of at most box_j(i) + look(i) + travel(i), the vantage of k
-//! in the opposite direction box_k(i′) + look′(i′); a sum below zero proves the intersection empty, in the solver's own numbers
-//! too, because of the slack (see [`super::straight`], 3). Whatever is left is decided by the plain way's own operations, in its own
-//! order: by slice, then by the first landmark, then by the second, both in the order of the R-tree.
+//! *4. The second detection*: `second.rs`.
 
 use std::ops::Range;
 
@@ -42,32 +39,32 @@ use crate::interval::{Box2, Interval, larger, smaller, up};
 
 /// Allowance for rounding between a test and the numbers it speaks for, metres. Coordinates stay below 10⁸ m, where one
 /// rounding is below 2·10⁻⁸ m, and fewer than a hundred of them meet in a test.
-const SLACK_M: f64 = 1e-3;
+pub(super) const SLACK_M: f64 = 1e-3;
 
 /// A cell at the border of the search area.
 #[derive(Clone, Copy, Debug)]
-struct CutCell {
-    slice: u16,
+pub(super) struct CutCell {
+    pub slice: u16,
     /// Place of its landmark in the strips.
-    place: usize,
-    cell: Cell,
+    pub place: usize,
+    pub cell: Cell,
 }
 
 /// The feasible set after the first detection.
 #[derive(Debug)]
 pub(super) struct FirstSet<'a> {
-    map: &'a SolverMap,
-    looks: &'a [Option<Look>],
+    pub(super) map: &'a SolverMap,
+    pub(super) looks: &'a [Option<Look>],
     /// Places of the whole vantages, one range for each strip.
-    whole: Vec<Range<usize>>,
+    pub(super) whole: Vec<Range<usize>>,
     whole_count: usize,
     /// The others, by strip, landmark and slice.
-    cut: Vec<CutCell>,
+    pub(super) cut: Vec<CutCell>,
 }
 
 impl<'a> FirstSet<'a> {
-    /// The set after `solver`'s search area has moved by `travel` and `looks` were had; none when it has more cells than the
-    /// budget.
+    /// The set after `solver`'s search area has moved by `travel` and `looks` were had; none when it has more cells
+    /// than the budget.
     pub fn new(solver: &Solver<'a>, travel: &[Reaches], looks: &'a [Option<Look>]) -> Option<Self> {
         let map = solver.map;
         let strips = &map.strips;
@@ -76,8 +73,8 @@ impl<'a> FirstSet<'a> {
         let mut room = [f64::INFINITY; DIRECTION_COUNT];
         let mut near = Box2::EMPTY;
         for (moved, look) in pairs() {
-            for i in 0..DIRECTION_COUNT {
-                room[i] = smaller(room[i], moved.reaches()[i] - look.from_landmark[i] - SLACK_M);
+            for ((room, area), look) in room.iter_mut().zip(moved.reaches()).zip(&look.from_landmark) {
+                *room = smaller(*room, area - look - SLACK_M);
             }
             near = hull(near, moved.bounding_box().minkowski_sum(look.extent));
         }
@@ -131,8 +128,8 @@ impl<'a> FirstSet<'a> {
 
     /// The greatest reach of the boxes of whole vantages in every direction.
     ///
-    /// Landmarks are looked at from the end of a strip that the direction points to, until what is left of the strip cannot
-    /// reach farther.
+    /// Landmarks are looked at from the end of a strip that the direction points to, until what is left of the strip
+    /// cannot reach farther.
     fn greatest_reaches(&self) -> Reaches {
         let strips = &self.map.strips;
         std::array::from_fn(|i| {
@@ -238,150 +235,13 @@ impl<'a> FirstSet<'a> {
         states.sort_unstable_by_key(|(order, state)| (state.slice, *order));
         Feasible { states: states.into_iter().map(|(_, state)| state).collect() }
     }
-
-    /// Moves the set by `travel` and keeps what `looks` explain, before covered cells are dropped; with it whether some cell
-    /// had more than one successor.
-    pub fn advance(&self, solver: &Solver<'_>, travel: &[Reaches], looks: &[Option<Look>]) -> Second {
-        let strips = &self.map.strips;
-        let Some(mut candidates) = self.candidates(solver, travel, looks) else { return Second::Crowded };
-        candidates.sort_unstable_by_key(|candidate| (candidate.slice, candidate.order));
-        let mut set = Feasible::default();
-        let mut has_branched = false;
-        for chunk in candidates.chunk_by(|a, b| (a.slice, a.order[0]) == (b.slice, b.order[0])) {
-            let Candidate { slice, first, .. } = chunk[0];
-            let slice_number = usize::from(slice);
-            let Some(look) = &looks[slice_number] else { continue };
-            let cell = match (first, &self.looks[slice_number]) {
-                (Origin::Whole(place), Some(look)) => {
-                    Cell::from_reaches(self.map.vantage(strips.landmark_at(place as usize), look))
-                }
-                (Origin::Cut(number), _) => self.cut[number as usize].cell,
-                (Origin::Whole(_), None) => continue,
-            };
-            let moved = cell.minkowski_sum(&travel[slice_number]);
-            let query = moved.bounding_box().minkowski_sum(look.extent);
-            let before = set.states.len();
-            for second in chunk.iter().map(|candidate| candidate.second as usize) {
-                if strips.box_at(second).intersection(query).is_empty() {
-                    continue;
-                }
-                let vantage = self.map.vantage(strips.landmark_at(second), look);
-                set.states.extend(moved.intersection(&vantage).map(|cell| state(cell, slice)));
-            }
-            has_branched |= set.states.len() > before + 1;
-            if set.states.len() > solver.cell_budget {
-                return Second::Undecided;
-            }
-        }
-        Second::Set { set, has_branched }
-    }
-
-    /// All pairs of landmarks that may explain the first two detections, and perhaps more; none when they are too many.
-    fn candidates(
-        &self,
-        solver: &Solver<'_>,
-        travel: &[Reaches],
-        looks: &[Option<Look>],
-    ) -> Option<Vec<Candidate>> {
-        let strips = &self.map.strips;
-        let most = CANDIDATES_PER_BUDGET * solver.cell_budget;
-        let mut candidates = Vec::new();
-        let short = |number: usize| u32::try_from(number).expect("fewer than 2³² landmarks");
-        // By slice: how far a box of the second landmark may lie from one of the first, in every direction.
-        let mut limits: Vec<(u16, Reaches)> = Vec::new();
-        let mut window = Box2::EMPTY;
-        for (slice, (travel, looks)) in (0..).zip(travel.iter().zip(self.looks.iter().zip(looks))) {
-            let (Some(first), Some(second)) = looks else { continue };
-            let moved = Cell::from_reaches(first.from_landmark).minkowski_sum(travel);
-            window = hull(window, moved.bounding_box().minkowski_sum(second.extent));
-            let against = |i: usize| second.from_landmark[(i + HALF) % DIRECTION_COUNT];
-            let limit = std::array::from_fn(|i| moved.reaches()[i] + against(i) + SLACK_M);
-            limits.push((slice, limit));
-        }
-        if limits.is_empty() {
-            return Some(candidates);
-        }
-        let slack = Interval::around(0.0, SLACK_M);
-        let window = window.minkowski_sum(Box2 { east: slack, north: slack });
-        strips.join(&self.whole, window, |first, second| {
-            let from = self.map.reaches_of(strips.landmark_at(first));
-            let to = self.map.reaches_of(strips.landmark_at(second));
-            for (slice, limit) in &limits {
-                let keeps = |i: usize| from[i] + limit[i] + to[(i + HALF) % DIRECTION_COUNT] >= 0.0;
-                if (0..DIRECTION_COUNT).all(keeps) {
-                    candidates.push(Candidate {
-                        slice: *slice,
-                        order: [strips.order(first), strips.order(second)],
-                        first: Origin::Whole(short(first)),
-                        second: short(second),
-                    });
-                }
-            }
-            candidates.len() <= most
-        });
-        for (number, cut) in (0..).zip(&self.cut) {
-            let Some(look) = &looks[usize::from(cut.slice)] else { continue };
-            if candidates.len() > most {
-                return None;
-            }
-            let moved = cut.cell.minkowski_sum(&travel[usize::from(cut.slice)]);
-            strips.for_each_meeting(moved.bounding_box().minkowski_sum(look.extent), |second| {
-                candidates.push(Candidate {
-                    slice: cut.slice,
-                    order: [strips.order(cut.place), strips.order(second)],
-                    first: Origin::Cut(number),
-                    second: short(second),
-                });
-            });
-        }
-        (candidates.len() <= most).then_some(candidates)
-    }
 }
 
-/// Candidates per cell budget beyond which the plain way is taken: it stops as soon as the budget is exceeded.
-const CANDIDATES_PER_BUDGET: usize = 2;
-
-/// The set after the second detection.
-#[derive(Debug)]
-pub(super) enum Second {
-    /// The set, and whether a cell had more than one successor.
-    Set {
-        /// The cells, none dropped yet.
-        set: Feasible,
-        /// Whether a cell had more than one successor.
-        has_branched: bool,
-    },
-    /// More cells than the budget.
-    Undecided,
-    /// Too many candidates to be listed: nothing is known.
-    Crowded,
-}
-
-/// What the cell of a candidate's first landmark is.
-#[derive(Clone, Copy, Debug)]
-enum Origin {
-    /// The whole vantage of the landmark at a place in the strips.
-    Whole(u32),
-    /// A cut cell.
-    Cut(u32),
-}
-
-/// Two landmarks that may explain the first two detections, in one slice.
-#[derive(Clone, Copy, Debug)]
-struct Candidate {
-    slice: u16,
-    /// Their ranks in the order of the R-tree.
-    order: [u32; 2],
-    first: Origin,
-    /// Place of the second in the strips.
-    second: u32,
-}
-
-fn state(cell: Cell, slice: u16) -> State {
+pub(super) fn state(cell: Cell, slice: u16) -> State {
     State { cell, slice, strays: 0, missed: Missed::NONE }
 }
 
-fn hull(a: Box2, b: Box2) -> Box2 {
+pub(super) fn hull(a: Box2, b: Box2) -> Box2 {
     Box2 { east: a.east.hull(b.east), north: a.north.hull(b.north) }
 }
 

@@ -2,8 +2,9 @@
 
 use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches, box_reaches};
 use super::feasible::{EventSet, Feasible, State};
-use super::first::{FirstSet, Second};
+use super::first::FirstSet;
 use super::history::{History, NoTrail, Trail};
+use super::second::Second;
 use super::steps::{Look, Step};
 use super::strips::Strips;
 use super::unseen::{Missed, Passage, Silence};

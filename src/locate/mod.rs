@@ -27,6 +27,7 @@ mod feasible;
 mod first;
 mod forward;
 mod history;
+mod second;
 mod steps;
 mod straight;
 mod strips;

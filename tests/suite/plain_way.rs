@@ -1,5 +1,5 @@
-//! The solver's shortcuts change no digit: against the solver written out plainly (`support/plain.rs`), and against its own
-//! plain way, which it takes when a history is recorded or silence is evidence.
+//! The solver's shortcuts change no digit: against the solver written out plainly (`support/plain.rs`), and against
+//! its own plain way, which it takes when a history is recorded or silence is evidence.
 
 use fixability::detect::{DrawnErrors, simulate};
 use fixability::dive::ErrorShape;

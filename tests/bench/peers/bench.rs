@@ -1,14 +1,15 @@
-//! The solver beside others that answer the same question: `cargo bench --bench peers`; with `FIXABILITY_WRITE_REPORTS=1` the
-//! result goes to `reports/peers.md`, otherwise to the screen only. `FIXABILITY_PEERS=small` makes a quick run.
+//! The solver beside others that answer the same question: `cargo bench --bench peers`; with
+//! `FIXABILITY_WRITE_REPORTS=1` the result goes to `reports/peers.md`, otherwise to the screen only.
+//! `FIXABILITY_PEERS=small` makes a quick run.
 //!
-//! Same maps (10³ to 10⁵ landmarks at 100 per km², `open_field`), same dives (straight lines of 1 km anywhere on the map, in any
-//! direction, errors at random, at their bounds and steady in turn), same error bounds. The vehicle may start anywhere on
-//! the map; each run goes up to the solver's fix. Everything runs on one thread. Runs are measured in pairs, one of the program's
-//! right beside one of the other's, and what is reported is the ratio within a pair: other work on the machine slows
-//! both.
+//! Same maps (10³ to 10⁵ landmarks at 100 per km², `open_field`), same dives (straight lines of 1 km anywhere on the
+//! map, in any direction, errors at random, at their bounds and steady in turn), same error bounds. The vehicle may
+//! start anywhere on the map; each run goes up to the solver's fix. Everything runs on one thread. Runs are measured
+//! in pairs, one of the program's right beside one of the other's, and what is reported is the ratio within a pair:
+//! other work on the machine slows both.
 //!
-//! Needs Python 3 with `venv` and the package index once, to install the pinned packages of `requirements.txt` under `target`;
-//! without them the NumPy part is left out and the report says so.
+//! Needs Python 3 with `venv` and the package index once, to install the pinned packages of `requirements.txt` under
+//! `target`; without them the NumPy part is left out and the report says so.
 
 #[path = "../../suite/support/scenes.rs"]
 #[allow(dead_code, reason = "the tests use more of it")]
@@ -27,6 +28,7 @@ use std::time::Instant;
 use fixability::detect::{DrawnErrors, SimulatedDive, simulate};
 use fixability::dive::ErrorShape;
 use fixability::frame::LocalPoint;
+use fixability::interval::smaller;
 use fixability::locate::{EventSummary, Solver, Step, steps};
 use fixability::track::plan::Plan;
 use particles::{Filter, Grid};
@@ -105,7 +107,7 @@ struct Dive {
 
 fn dives(scene: &RandomScene, side_m: f64, count: usize) -> Vec<Dive> {
     let mut rng = ChaCha8Rng::seed_from_u64(0xD1 ^ scene.landmarks.len() as u64);
-    let margin_m = LINE_M.min(0.25 * side_m);
+    let margin_m = smaller(LINE_M, 0.25 * side_m);
     (0..count)
         .map(|number| {
             let mut at = || rng.random_range(margin_m..side_m - margin_m);

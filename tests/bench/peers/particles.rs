@@ -23,7 +23,7 @@ use std::f64::consts::TAU;
 
 use fixability::detect::LogEvent;
 use fixability::frame::LocalPoint;
-use fixability::interval::Interval;
+use fixability::interval::{Interval, larger, smaller};
 use fixability::map::Landmark;
 use fixability::vehicle::horizontal_range;
 use rand::{RngExt, SeedableRng};
@@ -210,11 +210,12 @@ impl<'a> Filter<'a> {
         let share = ROUGHENING_K * (count as f64).powf(-1.0 / 3.0);
         let spread = |of: fn(&Particle) -> f64| {
             let ends = (f64::INFINITY, f64::NEG_INFINITY);
-            let (lo, hi) = self.particles.iter().map(of).fold(ends, |(lo, hi), x| (lo.min(x), hi.max(x)));
+            let (lo, hi) =
+                self.particles.iter().map(of).fold(ends, |(lo, hi), x| (smaller(lo, x), larger(hi, x)));
             share * (hi - lo)
         };
-        let east_m = spread(|p| p.east_m).min(ROUGHENING_MAX_M);
-        let north_m = spread(|p| p.north_m).min(ROUGHENING_MAX_M);
+        let east_m = smaller(spread(|p| p.east_m), ROUGHENING_MAX_M);
+        let north_m = smaller(spread(|p| p.north_m), ROUGHENING_MAX_M);
         let bias_rad = spread(|p| p.bias_rad);
         let bound = self.scene.bounds.dead_reckoning.heading_bias_rad;
         for p in &mut self.particles {

@@ -61,7 +61,7 @@ impl<'a> PlainMap<'a> {
         let slices = first.travel.len();
         let start = |slice| State {
             cell: solver.search_area,
-            slice: u16::try_from(slice).unwrap(),
+            slice: u16::try_from(slice).expect("fewer than 65 536 slices"),
             strays: 0,
             missed: Missed::NONE,
         };
