@@ -1,21 +1,24 @@
 //! A bootstrap particle filter for the same question: unknown start, unknown identities, the same error bounds.
 //!
-//! Gordon, Salmond, Smith, "Novel approach to nonlinear/non-Gaussian Bayesian state estimation", IEE Proceedings F 140 (2),
-//! 1993, 107–113: particles drawn from the prior, moved by the motion model, weighted by the likelihood, resampled at every
-//! measurement, roughened afterwards. Resampling is systematic (one random number for all), which is kinder than
-//! the paper's multinomial one. Edges of 0.25, 1 and 2 bounds and roughening of at most 1, 2 and 3 m were tried on 10³ landmarks
-//! and those kept that found the truth most often:
+//! Gordon, Salmond, Smith, "Novel approach to nonlinear/non-Gaussian Bayesian state estimation", IEE Proceedings F 140
+//! (2), 1993, 107–113: particles drawn from the prior, moved by the motion model, weighted by the likelihood,
+//! resampled at every measurement, roughened afterwards. Resampling is systematic (one random number for all), which
+//! is kinder than the paper's multinomial one. Edges of 0.25, 1 and 2 bounds and roughening of at most 1, 2 and 3 m
+//! were tried on 10³ landmarks and those kept that found the truth most often:
 //!
-//! - *Prior*: uniform over the search area and over the interval of the heading bias. A particle is a position and a bias.
-//! - *Motion*: each straight piece of the report, with a scale error and a heading noise drawn uniformly within their bounds.
-//! - *Likelihood* of a detection without identity: the sum over landmarks near the expected position of k(along) · k(across),
-//!   where along and across are the misfit in range and at right angles to it, in units of their bounds (range error,
-//!   altitude error, beam error, heading noise, the landmark's box), and k(u) is 1 inside the bounds and falls off
-//!   outside as a Gaussian of [`Filter::edge`] bounds, to nothing at three of these. (Bounded errors have a likelihood
-//!   of 1 or 0; a soft edge keeps particles alive that lie near, where roughening may bring them nearer. A wide one
-//!   helps a cloud that is too thin, a narrow one finds the place sooner: both are run.)
+//! - *Prior*: uniform over the search area and over the interval of the heading bias. A particle is a position and a
+//!   bias.
+//! - *Motion*: each straight piece of the report, with a scale error and a heading noise drawn uniformly within their
+//!   bounds.
+//! - *Likelihood* of a detection without identity: the sum over landmarks near the expected position of k(along) ·
+//!   k(across), where along and across are the misfit in range and at right angles to it, in units of their bounds
+//!   (range error, altitude error, beam error, heading noise, the landmark's box), and k(u) is 1 inside the bounds and
+//!   falls off outside as a Gaussian of [`Filter::edge`] bounds, to nothing at three of these. (Bounded errors have a
+//!   likelihood of 1 or 0; a soft edge keeps particles alive that lie near, where roughening may bring them nearer. A
+//!   wide one helps a cloud that is too thin, a narrow one finds the place sooner: both are run.)
 //! - *Roughening*: the paper's K·E·N^(−1/d) with K = 0.2 and d = 3, E the range of a component, but at most
-//!   [`ROUGHENING_MAX_M`]: the range of a cloud with many modes spans the whole field and says nothing about one of them.
+//!   [`ROUGHENING_MAX_M`]: the range of a cloud with many modes spans the whole field and says nothing about one of
+//!   them.
 //! - *Estimate*: the mean of the particles in the most crowded 3 × 3 block of squares as wide as the fix size.
 
 use std::collections::HashMap;
