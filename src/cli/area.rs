@@ -9,7 +9,7 @@ use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
 use crate::export::{self, AreaCsv, AreaJson, AreaTiff, Exporter};
-use crate::render::{self, AreaChart, ChartSize};
+use crate::render::{self, AreaChart};
 
 /// Files that `area` writes.
 const FILES: [&str; 6] =
@@ -52,7 +52,7 @@ pub(super) fn area(path: &Path, asked: &AreaRequest<'_>, common: &Common) -> Res
     bar.finish_and_clear();
     let json = || AreaJson.bytes(&report);
     if let Some(out) = asked.out {
-        let chart = |chart| render::area_png(&report, chart, &ChartSize::default());
+        let chart = |chart| render::area_png(&report, chart, &common.chart_size());
         let bytes = [
             json()?,
             AreaCsv.bytes(&report)?,

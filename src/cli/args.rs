@@ -8,6 +8,7 @@ use clap_complete::Shell;
 use crate::alias::LISTED_DEFAULT;
 use crate::bounds;
 use crate::dive::RankBy;
+use crate::render::{ChartSize, Paper};
 
 /// What `--help` teaches after the options.
 const EXIT_CODES: &str = "\
@@ -54,6 +55,19 @@ pub struct Common {
     /// Threads to use; results do not depend on it [default: all cores]
     #[arg(long, global = true, value_name = "NUMBER", value_parser = clap::value_parser!(u16).range(1..))]
     pub threads: Option<u16>,
+    /// Paper of the charts, landscape
+    #[arg(long, global = true, value_enum, value_name = "PAPER", default_value = "a4")]
+    pub paper: Paper,
+    /// Resolution of the charts, dots per inch
+    #[arg(long, global = true, value_name = "NUMBER", default_value_t = 150, value_parser = clap::value_parser!(u32).range(150..=300))]
+    pub dpi: u32,
+}
+
+impl Common {
+    /// The size of every chart.
+    pub(super) fn chart_size(&self) -> ChartSize {
+        ChartSize::paper(self.paper, self.dpi)
+    }
 }
 
 /// The commands.
@@ -71,7 +85,7 @@ pub enum Command {
     ///
     /// For every line and every segment start the vehicle is taken as lost there. Simulated dives with bounded errors
     /// are solved from an unknown start, and the distance until the position is unambiguous is counted. With --out,
-    /// writes lines.json, lines.csv and lines.png; and, where the map is tied to the Earth, lines.geojson and
+    /// writes lines.json, lines.csv, lines.png and profiles.png; and, where the map is tied to the Earth, lines.geojson and
     /// recommended.gpx (the first-ranked line as a route).
     Lines {
         /// The dive file (TOML)

@@ -10,7 +10,7 @@ use super::terminal::{print_notices, print_result};
 use crate::alias::{self, LookAlikeRequest};
 use crate::assess::Setup;
 use crate::export::{self, Exporter, LookAlikesCsv, LookAlikesGeoJson, LookAlikesJson};
-use crate::render::{self, ChartSize};
+use crate::render;
 use crate::report::{LinesReport, LookAlikesReport};
 
 /// Most dangerous look-alikes that `lines` marks: one digit each, so that the chart can be read.
@@ -34,7 +34,7 @@ pub(super) fn lookalikes(
     let report = found(&Setup::new(&dive), request);
     let json = LookAlikesJson.bytes(&report)?;
     if let Some(out) = out {
-        let size = ChartSize::default();
+        let size = common.chart_size();
         let mut files = vec![
             (names[0], json.clone()),
             (names[1], LookAlikesCsv.bytes(&report)?),

@@ -9,7 +9,7 @@ use super::run::{Exit, read, say_local_metres, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, runs_bar};
 use crate::assess::{self, AREA_STARTS_MAX, RemapProgress, Setup};
 use crate::export::{self, Exporter, RemapCsv, RemapGeoJson, RemapJson};
-use crate::render::{self, ChartSize};
+use crate::render;
 use crate::report::{LinesReport, RemapReport};
 
 pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<Exit> {
@@ -30,7 +30,7 @@ pub(super) fn remap(path: &Path, out: Option<&Path>, common: &Common) -> Result<
         let mut files = vec![
             (names[0], json.clone()),
             (names[1], RemapCsv.bytes(&report)?),
-            (names[2], render::remap_png(&report, &ChartSize::default())?),
+            (names[2], render::remap_png(&report, &common.chart_size())?),
         ];
         if dive.frame.is_local() {
             say_local_metres(&["remap.geojson"], common);

@@ -17,7 +17,7 @@ use crate::assess::{self, Setup, TraceRequest};
 use crate::dive::{Dive, RankBy};
 use crate::export::{self, Exporter, LinesCsv, LinesGeoJson, LinesJson, RecommendedGpx, TraceJson};
 use crate::problem::Notice;
-use crate::render::{self, ChartSize};
+use crate::render;
 use crate::report::LinesReport;
 
 /// How the program ends.
@@ -149,7 +149,7 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     if asked.mark_remap {
         refuse_huge(&setup)?;
     }
-    let mut names = vec!["lines.json", "lines.csv", "lines.png"];
+    let mut names = vec!["lines.json", "lines.csv", "lines.png", "profiles.png"];
     if !dive.frame.is_local() {
         names.extend(["lines.geojson", "recommended.gpx"]);
     }
@@ -165,16 +165,18 @@ fn lines(path: &Path, asked: &LinesOptions<'_>, common: &Common) -> Result<Exit>
     }
     let json = LinesJson.bytes(&report)?;
     if let Some(out) = asked.out {
+        let size = common.chart_size();
         let mut files = vec![
             (names[0], json.clone()),
             (names[1], LinesCsv.bytes(&report)?),
-            (names[2], render::lines_png(&report, &ChartSize::default())?),
+            (names[2], render::lines_png(&report, &size)?),
+            (names[3], render::profiles_png(&report, &size)?),
         ];
         if dive.frame.is_local() {
             say_local_metres(&["lines.geojson", "recommended.gpx"], common);
         } else {
-            files.push((names[3], LinesGeoJson.bytes(&report)?));
-            files.push((names[4], RecommendedGpx.bytes(&report)?));
+            files.push((names[4], LinesGeoJson.bytes(&report)?));
+            files.push((names[5], RecommendedGpx.bytes(&report)?));
         }
         export::write_all(out, &files, common.force)?;
         say_written(out, &names, common);
@@ -232,7 +234,7 @@ fn trace(path: &Path, request: &TraceRequest, out: Option<&Path>, common: &Commo
     let json = TraceJson.bytes(&report)?;
     if let Some(out) = out {
         let files =
-            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &ChartSize::default())?)];
+            [("trace.json", json.clone()), ("trace.png", render::trace_png(&report, &common.chart_size())?)];
         export::write_all(out, &files, common.force)?;
         say_written(out, &files.map(|(name, _)| name), common);
     }

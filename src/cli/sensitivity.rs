@@ -9,7 +9,7 @@ use super::run::{Exit, read, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, Setup};
 use crate::export::{self, Exporter, SensitivityCsv, SensitivityJson};
-use crate::render::{self, ChartSize};
+use crate::render;
 
 /// Files that `sensitivity` writes.
 const FILES: [&str; 3] = ["sensitivity.json", "sensitivity.csv", "sensitivity.png"];
@@ -34,7 +34,7 @@ pub(super) fn sensitivity(
         let files = [
             (FILES[0], json.clone()),
             (FILES[1], SensitivityCsv.bytes(&report)?),
-            (FILES[2], render::sensitivity_png(&report, &ChartSize::default())?),
+            (FILES[2], render::sensitivity_png(&report, &common.chart_size())?),
         ];
         export::write_all(out, &files, common.force)?;
         say_written(out, &FILES, common);

@@ -9,7 +9,7 @@ use super::run::{Exit, read, say_local_metres, say_written, undecided_runs};
 use super::terminal::{print_notices, print_result, progress_bar_over};
 use crate::assess::{self, AREA_STARTS_MAX, Setup};
 use crate::export::{self, Exporter, SuggestCsv, SuggestGeoJson, SuggestGpx, SuggestJson, SuggestLinesCsv};
-use crate::render::{self, ChartSize};
+use crate::render;
 
 /// Files that `suggest` writes for every map, and those of maps on the Earth.
 const FILES: [&str; 4] = ["suggest.json", "suggest.csv", "suggest-lines.csv", "suggest.png"];
@@ -44,7 +44,7 @@ pub(super) fn suggest(path: &Path, out: Option<&Path>, listed: Option<u16>, comm
             json.clone(),
             SuggestCsv.bytes(&report)?,
             SuggestLinesCsv.bytes(&report)?,
-            render::suggest_png(&report, &ChartSize::default())?,
+            render::suggest_png(&report, &common.chart_size())?,
         ];
         if dive.frame.is_local() {
             say_local_metres(&EARTH_FILES, common);

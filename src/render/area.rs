@@ -41,7 +41,7 @@ pub(super) fn scene(report: &AreaReport, chart: AreaChart, size: &ChartSize) -> 
     let bottom = sheet.foot_top(&report.provenance, &report.parameters, &extra);
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
     sheet.foot(&report.provenance, &report.parameters, &extra);
 
     let scale = scale_of(report, chart);
@@ -54,7 +54,7 @@ pub(super) fn scene(report: &AreaReport, chart: AreaChart, size: &ChartSize) -> 
     if chart == AreaChart::Best {
         draw_arrows(&mut sheet, &frame, report);
     }
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     draw_legend(&mut sheet, column, report, chart, scale.as_ref());
     Ok(sheet.scene)
 }
@@ -203,19 +203,37 @@ fn draw_marks(sheet: &mut Sheet, frame: &MapFrame, report: &AreaReport) {
     }
 }
 
-/// Arrows along the best heading, on as many cells as there is room for.
+/// Arrows along the best heading, on as many cells as there is room for; none reaches beyond the cells.
 fn draw_arrows(sheet: &mut Sheet, frame: &MapFrame, report: &AreaReport) {
-    let k = sheet.sizes.k;
-    let every = larger(libm::ceil(ARROWS_PX * k / (report.grid.cell_m * frame.px_per_m)), 1.0) as usize;
-    let chosen =
-        report.cells.iter().filter(|cell| cell.column % every == every / 2 && cell.row % every == every / 2);
+    let (k, grid) = (sheet.sizes.k, &report.grid);
+    let every = larger(libm::ceil(ARROWS_PX * k / (grid.cell_m * frame.px_per_m)), 1.0) as usize;
+    let Some((columns, rows)) = spans(report) else { return };
+    // The lattice stands in the middle of the cells, so that the same is left over on both sides.
+    let first = |(first, last): (usize, usize)| first + ((last + 1 - first) % every) / 2 + every / 2;
+    let (first_column, first_row) = (first(columns), first(rows));
+    let on_lattice = |value: usize, first: usize| value >= first && (value - first).is_multiple_of(every);
+    let corner = |column: usize, row: usize| {
+        frame.px(LocalPoint::new(
+            grid.west_m + column as f64 * grid.cell_m,
+            grid.south_m + row as f64 * grid.cell_m,
+        ))
+    };
+    let ((left, bottom), (right, top)) = (corner(columns.0, rows.0), corner(columns.1 + 1, rows.1 + 1));
+    let ground = Rect::new(left, top, right, bottom);
+    let chosen = report
+        .cells
+        .iter()
+        .filter(|cell| on_lattice(cell.column, first_column) && on_lattice(cell.row, first_row));
     for cell in chosen {
         let Some(heading) = cell.best_heading else { continue };
         let heading_rad = report.headings_deg[heading].to_radians();
         let (dx, dy) = (libm::sin(heading_rad), -libm::cos(heading_rad));
-        let (x, y) = frame.px(report.grid.centre(cell.column, cell.row));
+        let (x, y) = frame.px(grid.centre(cell.column, cell.row));
         let at =
             |ahead: f64, aside: f64| (x + (dx * ahead - dy * aside) * k, y + (dy * ahead + dx * aside) * k);
+        if ![15.0, -12.5].into_iter().all(|ahead| ground.holds(at(ahead, 0.0))) {
+            continue;
+        }
         for (grown, colour) in [(1.5, WHITE), (0.0, INK)] {
             let shaft = vec![at(-11.0 - grown, 0.0), at(4.0, 0.0)];
             sheet.scene.stroke(shaft, (2.2 + 2.0 * grown) * k, colour);
@@ -227,6 +245,14 @@ fn draw_arrows(sheet: &mut Sheet, frame: &MapFrame, report: &AreaReport) {
             sheet.scene.polygon(head, colour);
         }
     }
+}
+
+/// First and last column and row that have a cell.
+fn spans(report: &AreaReport) -> Option<((usize, usize), (usize, usize))> {
+    let of = |value: fn(&AreaCell) -> usize| {
+        Some((report.cells.iter().map(value).min()?, report.cells.iter().map(value).max()?))
+    };
+    Some((of(|cell| cell.column)?, of(|cell| cell.row)?))
 }
 
 fn draw_legend(

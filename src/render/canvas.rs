@@ -6,12 +6,12 @@ use plotters::prelude::{BitMapBackend, DrawingBackend, RGBColor, TextStyle};
 
 use super::colours::{Rgb, WHITE};
 use super::scene::{Item, Px, Rect, Scene};
-use super::{ChartSize, RenderError};
+use super::{ChartSize, RenderError, text};
 
 /// Sub-pixels per pixel in each direction.
 const FINE: usize = 2;
-/// Width of A4 landscape, m: the print size the picture states in its pixel density.
-const PRINT_WIDTH_M: f64 = 0.297;
+/// Metres in an inch.
+const INCH_M: f64 = 0.0254;
 
 type Backend<'a> = BitMapBackend<'a>;
 type Drawn = Result<(), RenderError>;
@@ -42,7 +42,9 @@ fn draw(backend: &mut Backend<'_>, item: &Item) -> Drawn {
             let top = fine_px(*baseline) - description.get_size() / 2.0;
             let colour = colour_of(*colour);
             let style = TextStyle::from(description).color(&colour);
-            backend.draw_text(text, &style, (round(fine_px(*left)), round(top))).map_err(drawing)
+            backend
+                .draw_text(&text::drawn(text), &style, (round(fine_px(*left)), round(top)))
+                .map_err(drawing)
         }
     }
 }
@@ -115,7 +117,7 @@ fn encode(pixels: &[u8], size: &ChartSize) -> Result<Vec<u8>, RenderError> {
     let mut encoder = png::Encoder::new(&mut bytes, size.width_px, size.height_px);
     encoder.set_color(png::ColorType::Rgb);
     encoder.set_depth(png::BitDepth::Eight);
-    let per_metre = (f64::from(size.width_px) / PRINT_WIDTH_M) as u32;
+    let per_metre = libm::round(f64::from(size.dpi) / INCH_M) as u32;
     encoder.set_pixel_dims(Some(png::PixelDimensions {
         xppu: per_metre,
         yppu: per_metre,
@@ -158,7 +160,7 @@ mod tests {
     /// What is measured is what is drawn: no ink of a text lies outside the rectangle the layout reserves for it.
     #[test]
     fn ink_stays_inside_the_measured_rectangle() {
-        let size = ChartSize { width_px: 900, height_px: 80 };
+        let size = ChartSize { width_px: 900, height_px: 80, dpi: 150 };
         for bold in [false, true] {
             for em_px in [15.0, 19.0, 34.0] {
                 let font = Font { em_px, bold };
@@ -168,6 +170,11 @@ mod tests {
                     "Γραμμή ΐ ΰ",
                     "ấ ệ ặ ņ ç",
                     "WWW AVA To. |lij|",
+                    "測線一 測線二",
+                    "קו אחד 12 (א)",
+                    "خط المسح ٣",
+                    "e\u{301}n\u{303}o\u{308}\u{323} Z\u{30c}",
+                    "🌊 ⚓ boat",
                 ] {
                     let mut scene = Scene::default();
                     let rect = scene.text((20.0, 20.0), text, font, (0, 0, 0));

@@ -69,17 +69,19 @@ impl Scale {
         match self.quantity {
             Quantity::Guaranteed if segment.guaranteed.is_some() => Finding::NoFix,
             Quantity::Guaranteed => Finding::NotScored,
-            Quantity::Estimated => {
-                let estimated = &segment.estimated;
-                let Some(no_fix) = estimated.no_fix_share.value else { return Finding::NotScored };
-                // Undecided dives count as dives without a fix; they name the segment when they are most of them.
-                let undecided = estimated.undecided_share;
-                if undecided >= UNDECIDED_SHARE && 2.0 * undecided >= no_fix {
-                    Finding::Undecided
-                } else {
-                    Finding::NoFix
-                }
-            }
+            Quantity::Estimated => Self::estimate_missing(segment),
+        }
+    }
+
+    /// How a segment is drawn for which too many dives have no fix to give a percentile.
+    pub(super) fn estimate_missing(segment: &SegmentReport) -> Finding {
+        let Some(no_fix) = segment.estimated.no_fix_share.value else { return Finding::NotScored };
+        // Undecided dives count as dives without a fix; they name the segment when they are most of them.
+        let undecided = segment.estimated.undecided_share;
+        if undecided >= UNDECIDED_SHARE && 2.0 * undecided >= no_fix {
+            Finding::Undecided
+        } else {
+            Finding::NoFix
         }
     }
 

@@ -1,16 +1,16 @@
 //! What every chart has: title, map frame with grid, scale bar, north arrow, foot. Written once.
 
 use super::colours::{INK, PALE, SOFT_INK, WHITE};
+use super::graticule::{self, Crossing};
 use super::scene::{Px, Rect, Scene};
 use super::text::{self, Font};
-use super::{ChartSize, RenderError, nice};
-use crate::frame::LocalPoint;
+use super::{ChartSize, RenderError, compass, nice};
+use crate::frame::{Frame, LocalPoint};
 use crate::interval::{larger, smaller};
 use crate::report::{Parameters, Provenance};
 
-/// The canvas all sizes refer to: A4 landscape at 150 dots per inch.
-const REFERENCE_PX: (f64, f64) = (1754.0, 1240.0);
-
+/// Distance of the labels on the upper edge from the frame, pixels of the reference canvas.
+pub(super) const EDGE_LABEL_PX: f64 = 9.0;
 /// How far a label of the lower edge may stick out beside the frame, pixels of the reference canvas.
 const OVERHANG_PX: f64 = 34.0;
 
@@ -51,7 +51,7 @@ impl Sheet {
     pub(super) fn new(size: &ChartSize) -> Result<Self, RenderError> {
         size.check()?;
         let (width, height) = (f64::from(size.width_px), f64::from(size.height_px));
-        let k = smaller(width / REFERENCE_PX.0, height / REFERENCE_PX.1);
+        let k = size.scale();
         let inner = Rect::new(0.0, 0.0, width, height).grown(-48.0 * k);
         Ok(Self { scene: Scene::default(), sizes: Sizes { k }, inner })
     }
@@ -91,7 +91,7 @@ impl Sheet {
         let caution = text::wrap(provenance.caution, font, room, 4);
         let pieces = origin(provenance, parameters, extra);
         let pieces: Vec<String> = pieces.iter().map(|piece| text::fit(piece, font, room / 2.0)).collect();
-        let origin = text::wrap_pieces(pieces.iter().map(String::as_str), "  ·  ", font, room, 3);
+        let origin = text::wrap_pieces(pieces.iter().map(String::as_str), "  ·  ", font, room, 4);
         let lines = (caution.len() + origin.len()) as f64;
         let top = self.inner.bottom - lines * font.line_px() - 4.0 * self.sizes.k;
         (caution, origin, top)
@@ -114,12 +114,14 @@ fn origin(provenance: &Provenance, parameters: &Parameters, extra: &[String]) ->
         }
         _ => format!("{} landmarks", parameters.landmarks),
     };
-    let mut pieces = vec![
-        text::printable(&provenance.dive),
+    let mut pieces = vec![text::printable(&provenance.dive)];
+    pieces.extend(provenance.issued.as_ref().map(|date| format!("issued {date}")));
+    pieces.extend([
         provenance.coordinate_system.clone(),
-        landmarks,
+        age_in_words(provenance),
+        format!("{landmarks} ({})", text::printable(&parameters.landmark_uncertainty)),
         format!("fix size {} m", nice::short(parameters.fix_size_m, 2)),
-    ];
+    ]);
     pieces.extend_from_slice(extra);
     pieces.push(format!("seed {} ({})", provenance.seed, provenance.generator));
     pieces.push(format!("fixability {}", provenance.tool_version));
@@ -129,6 +131,20 @@ fn origin(provenance: &Provenance, parameters: &Parameters, extra: &[String]) ->
     });
     pieces.extend(inputs);
     pieces
+}
+
+/// Age of the map.
+fn age_in_words(provenance: &Provenance) -> String {
+    let days = |count: i64| if count.abs() == 1 { "day" } else { "days" };
+    match (&provenance.surveyed, provenance.map_age_days) {
+        (None, _) => "age of the map not stated".to_owned(),
+        (Some(date), None) => format!("landmarks surveyed {date}"),
+        (Some(date), Some(0)) => format!("landmarks surveyed {date} (day of issue)"),
+        (Some(date), Some(age)) => {
+            let side = if age > 0 { "before" } else { "after" };
+            format!("landmarks surveyed {date} ({} {} {side} issue)", age.abs(), days(age))
+        }
+    }
 }
 
 /// Vehicle, sonar and bounds in words, for subtitles.
@@ -196,10 +212,12 @@ impl Extent {
 type Tick = (f64, String);
 
 /// A map frame: a rectangle of canvas that shows a rectangle of ground, north up, same scale both ways.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Debug)]
 pub(super) struct MapFrame {
     pub(super) rect: Rect,
     pub(super) px_per_m: f64,
+    /// What ties the ground to latitude and longitude; none for local metres.
+    pub(super) earth: Option<Frame>,
     /// Ground at the upper left corner.
     west: f64,
     north: f64,
@@ -216,9 +234,23 @@ impl MapFrame {
         Self {
             rect,
             px_per_m,
+            earth: None,
             west: centre.0 - rect.width() / 2.0 / px_per_m,
             north: centre.1 + rect.height() / 2.0 / px_per_m,
         }
+    }
+
+    /// The same frame, tied to the Earth unless `frame` is plain local metres.
+    pub(super) fn on_earth(self, frame: &Frame) -> Self {
+        Self { earth: (!frame.is_local()).then(|| frame.clone()), ..self }
+    }
+
+    /// The ground at a place of the canvas.
+    pub(super) fn ground(&self, (x, y): Px) -> LocalPoint {
+        LocalPoint::new(
+            self.west + (x - self.rect.left) / self.px_per_m,
+            self.north - (y - self.rect.top) / self.px_per_m,
+        )
     }
 
     pub(super) fn px(&self, point: LocalPoint) -> Px {
@@ -291,42 +323,68 @@ impl MapFrame {
     /// labels end.
     pub(super) fn draw_edges(&self, sheet: &mut Sheet) -> f64 {
         let (font, k) = (sheet.sizes.small(), sheet.sizes.k);
-        let Rect { left, top: _, right, bottom } = self.rect;
+        let Rect { left, top, right, bottom } = self.rect;
         let line = larger(1.0, 1.5 * k);
         sheet.scene.outline(self.rect.grown(line), line, INK);
         let (east, north) = self.ticks(font);
         let labels_top = bottom + 9.0 * k;
         for (x, label) in east {
             let half = text::width(&label, font) / 2.0;
-            sheet.scene.fill(Rect::new(x, bottom, x + line, bottom + 6.0 * k), INK);
             // A label at a corner may stick out as far as the space beside the frame goes.
             if x - half >= left - OVERHANG_PX * k && x + half <= right + OVERHANG_PX * k {
+                sheet.scene.fill(Rect::new(x, bottom, x + line, bottom + 6.0 * k), INK);
                 sheet.scene.text((x - half, labels_top), &label, font, INK);
             }
         }
         for (y, label) in north {
-            sheet.scene.fill(Rect::new(left - 6.0 * k, y, left, y + line), INK);
             let x = left - 11.0 * k - text::width(&label, font);
             let label_top = y - font.height_px() / 2.0;
-            if label_top + font.height_px() <= bottom + 4.0 * k {
+            // A label may stick out as far as the name of the axis above and the easting labels below leave room.
+            if label_top >= top - EDGE_LABEL_PX * k
+                && label_top + font.height_px() <= bottom + EDGE_LABEL_PX * k
+            {
+                sheet.scene.fill(Rect::new(left - 6.0 * k, y, left, y + line), INK);
                 sheet.scene.text((x, label_top), &label, font, INK);
             }
         }
         labels_top + font.height_px()
     }
 
+    /// Ticks of longitude on the upper edge, from `left` on, and of latitude on the right edge; nothing for local metres.
+    pub(super) fn draw_graticule(&self, sheet: &mut Sheet, left: f64) {
+        let (font, k) = (sheet.sizes.small(), sheet.sizes.k);
+        let (rect, line) = (self.rect, larger(1.0, 1.5 * k));
+        for Crossing { at: x, label } in graticule::meridians(self, font) {
+            // A tick goes with its label: without one it tells nothing.
+            let half = text::width(&label, font) / 2.0;
+            if x - half >= left && x + half <= rect.right + OVERHANG_PX * k {
+                let x_line = x - line / 2.0;
+                sheet.scene.fill(Rect::new(x_line, rect.top - 6.0 * k, x_line + line, rect.top), INK);
+                let label_top = rect.top - font.height_px() - EDGE_LABEL_PX * k;
+                sheet.scene.text((x - half, label_top), &label, font, INK);
+            }
+        }
+        for Crossing { at: y, label } in graticule::parallels(self, font) {
+            let label_top = y - font.height_px() / 2.0;
+            if label_top >= rect.top - 4.0 * k && label_top + font.height_px() <= rect.bottom + 4.0 * k {
+                let y_line = y - line / 2.0;
+                sheet.scene.fill(Rect::new(rect.right, y_line, rect.right + 6.0 * k, y_line + line), INK);
+                sheet.scene.text((rect.right + 11.0 * k, label_top), &label, font, INK);
+            }
+        }
+    }
+
     /// Scale bar and north arrow with their right edge at `right` and their upper edge at `top`; returns their left
     /// edge.
     pub(super) fn draw_scale(&self, sheet: &mut Sheet, right: f64, top: f64) -> f64 {
         let (font, k) = (sheet.sizes.small(), sheet.sizes.k);
-        let arrow = Rect::new(right - 18.0 * k, top + 1.0 * k, right, top + 38.0 * k);
-        north_arrow(sheet, arrow);
+        let compass_left = compass::draw(sheet, self, (right, top));
         let end_label = |length: f64| format!("{} m", nice::short(length, 3));
         let length_m = nice::step_down(self.width_m() * 0.25);
         let end = end_label(length_m);
         let bar_px = length_m * self.px_per_m;
-        let (end_half, n_left) = (text::width(&end, font) / 2.0, arrow.left - 24.0 * k);
-        let bar_right = n_left - 20.0 * k - end_half;
+        let end_half = text::width(&end, font) / 2.0;
+        let bar_right = compass_left - 24.0 * k - end_half;
         let bar = Rect::new(bar_right - bar_px, top + 24.0 * k, bar_right, top + 32.0 * k);
         sheet.scene.fill(bar, INK);
         let line = larger(1.0, 1.5 * k);
@@ -340,19 +398,4 @@ impl MapFrame {
         sheet.scene.text((bar.right - end_half, top), &end, font, INK);
         bar.left - zero_half
     }
-}
-
-/// An arrow to grid north, its "N" at its left.
-fn north_arrow(sheet: &mut Sheet, rect: Rect) {
-    let font = sheet.sizes.small();
-    let (x, _) = rect.centre();
-    let notch = (x, rect.bottom - rect.height() * 0.25);
-    sheet.scene.polygon(vec![(x, rect.top), (rect.right, rect.bottom), notch], INK);
-    sheet.scene.stroke(
-        vec![(x, rect.top), (rect.left, rect.bottom), notch],
-        larger(1.0, 1.5 * sheet.sizes.k),
-        INK,
-    );
-    let left = rect.left - text::width("N", font) - 4.0 * sheet.sizes.k;
-    sheet.scene.text((left, rect.top), "N", font, INK);
 }

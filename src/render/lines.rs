@@ -2,14 +2,14 @@
 
 use super::classes::{Finding, Scale};
 use super::colours::{GREY, INK, SOFT_INK};
-use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
+use super::furniture::{EDGE_LABEL_PX, Extent, MapFrame, Sheet, bounds_in_words};
 use super::place::Taken;
 use super::ribbon::Ribbon;
 use super::scene::{Px, Rect, Scene};
 use super::text::Font;
-use super::{ChartSize, RenderError, legend, ranking, text};
+use super::{ChartSize, RenderError, graticule, legend, ranking, text};
 use crate::interval::larger;
-use crate::report::{ChartLandmark, LineReport, LinesReport, SegmentReport};
+use crate::report::{ChartLandmark, LineReport, LinesReport, Provenance, SegmentReport};
 
 /// Least size at which a landmark's box is drawn true to scale, pixels; smaller ones become a square of this size.
 pub(super) const BOX_LEAST_PX: f64 = 4.0;
@@ -32,7 +32,7 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
         sheet.foot_top(&report.provenance, &report.parameters, &extra_pieces(report, report.landmarks.len()));
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
     let outside = report.landmarks.iter().filter(|mark| !frame.rect.holds(frame.px(mark.position))).count();
     sheet.foot(&report.provenance, &report.parameters, &extra_pieces(report, outside));
 
@@ -57,7 +57,7 @@ pub(super) fn scene(report: &LinesReport, size: &ChartSize) -> Result<Scene, Ren
     let has_look_alikes =
         draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::LOOK_ALIKES);
     let has_regions = draw_marks(&mut sheet, &frame, report, ribbon.half(), &mut taken, Mark::REMAP_REGIONS);
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     let legend_bottom =
         legend::draw(&mut sheet, column, column.top, &scale, &findings, [has_look_alikes, has_regions]);
     let rest = Rect::new(column.left, legend_bottom + 22.0 * k, column.right, column.bottom);
@@ -86,28 +86,39 @@ fn extra_pieces(report: &LinesReport, outside: usize) -> Vec<String> {
     pieces
 }
 
-/// The map frame between header and foot, left of `right`.
-pub(super) fn fit_frame(sheet: &Sheet, extent: Extent, top: f64, bottom: f64, right: f64) -> MapFrame {
+/// The map frame between header and foot, left of `right`, tied to the Earth where the report is.
+pub(super) fn fit_frame(
+    sheet: &Sheet,
+    provenance: &Provenance,
+    extent: Extent,
+    (top, bottom): (f64, f64),
+    right: f64,
+) -> MapFrame {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
-    // Above: the name of the northings. Below: easting labels, then scale bar and north arrow.
+    // Above: the name of the northings and the longitudes. Below: easting labels, then scale bar and north arrow.
     let (above, below) = (12.0 * k + font.line_px() + 8.0 * k, font.line_px() + 66.0 * k);
-    let frame_at = |left: f64| {
+    let frame_at = |left: f64, right: f64| {
         let rect = Rect::new(left, top + above, right, bottom - below);
-        MapFrame::showing(extent, rect, 56.0 * k)
+        MapFrame::showing(extent, rect, 56.0 * k).on_earth(&provenance.frame)
     };
-    let guess = frame_at(sheet.inner.left + 90.0 * k);
-    frame_at(sheet.inner.left + guess.gutter(font, k))
+    let guess = frame_at(sheet.inner.left + 90.0 * k, right);
+    // The gutter of the latitudes takes part of the space that callers leave beside the frame.
+    let latitudes = graticule::parallels(&guess, font);
+    let widest = latitudes.iter().map(|tick| text::width(&tick.label, font)).fold(0.0, larger);
+    let right = if latitudes.is_empty() { right } else { right - widest + 5.0 * k };
+    frame_at(sheet.inner.left + guess.gutter(font, k), right)
 }
 
-/// Axis names, tick labels, scale bar and north arrow around the frame.
-pub(super) fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, coordinate_system: &str) {
+/// Axis names, tick labels, latitudes and longitudes, scale bar and north arrow around the frame.
+pub(super) fn draw_surround(sheet: &mut Sheet, frame: &MapFrame, provenance: &Provenance) {
     let (k, font) = (sheet.sizes.k, sheet.sizes.small());
     let labels_bottom = frame.draw_edges(sheet);
-    let above = frame.rect.top - font.height_px() - 13.0 * k;
-    sheet.scene.text((sheet.inner.left, above), "Northing, m", font, SOFT_INK);
+    let above = frame.rect.top - font.height_px() - EDGE_LABEL_PX * k;
+    let name = sheet.scene.text((sheet.inner.left, above), "Northing, m", font, SOFT_INK);
+    frame.draw_graticule(sheet, name.right + 10.0 * k);
     let row = labels_bottom + 10.0 * k;
     let scale_left = frame.draw_scale(sheet, frame.rect.right, row);
-    let name = format!("Easting, m  ·  {coordinate_system}, grid north up");
+    let name = format!("Easting, m  ·  {}, grid north up", provenance.coordinate_system);
     let name = text::fit(&name, font, scale_left - frame.rect.left - 24.0 * k);
     sheet.scene.text((frame.rect.left, row), &name, font, SOFT_INK);
 }
@@ -250,11 +261,11 @@ fn smaller_index(a: usize, b: usize) -> usize {
     if a < b { a } else { b }
 }
 
-/// Name of a line as the map shows it. A name that must be cut begins with its rank, so that two long names with the
-/// same beginning can be told apart in the ranking.
+/// Name of a line as the map shows it. A name that must be cut, or that has letters which cannot be drawn, begins with its
+/// rank, so that two such names can be told apart in the ranking.
 fn map_name(line: &LineReport, font: Font, room: f64) -> String {
     let name = text::printable(&line.name);
-    if text::width(&name, font) <= room {
+    if text::width(&name, font) <= room && text::has_every_letter(&name) {
         name
     } else {
         text::fit(&format!("{}: {name}", line.rank), font, room)

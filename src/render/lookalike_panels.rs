@@ -2,10 +2,11 @@
 
 use super::colours::{ACCENT, BAR, GREY, INK, SOFT_INK, UNDECIDED_GROUND, WHITE};
 use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
-use super::lookalikes::{scale_in_words, title};
+use super::lookalikes::{IDENTIFIER_SHARE, scale_in_words, title};
 use super::scene::{Px, Rect, Scene};
+use super::text::{self, Font};
 use super::trace::{clipped_stroke, panel_frame, raster};
-use super::{ChartSize, RenderError, nice, text};
+use super::{ChartSize, RenderError, nice};
 use crate::frame::LocalPoint;
 use crate::interval::{larger, smaller};
 use crate::report::{ChartLandmark, LookAlike, LookAlikesReport, TellTale};
@@ -53,7 +54,7 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
         let room = frame.rect.width();
         let caption = text::fit(&format!("{}: {}", entry.number, title(entry)), sheet.sizes.heading(), room);
         sheet.scene.text((frame.rect.left, cell.top), &caption, sheet.sizes.heading(), INK);
-        let notes = text::wrap(&note(entry), font, room, 2);
+        let notes = text::wrap(&note(entry, font, room), font, room, 2);
         sheet.scene.lines((frame.rect.left, cell.top + sheet.sizes.heading().line_px()), &notes, font, INK);
         overlaid.draw(&mut sheet, &frame);
     }
@@ -74,7 +75,7 @@ fn subtitle(report: &LookAlikesReport, shown: usize) -> String {
 }
 
 /// Offset, agreement and what tells the grounds apart, in words.
-fn note(entry: &LookAlike) -> String {
+fn note(entry: &LookAlike, font: Font, room: f64) -> String {
     let turn = if entry.turn_deg.abs() > TURNED_DEG {
         format!(", turned by {:.0}°", entry.turn_deg)
     } else {
@@ -85,7 +86,7 @@ fn note(entry: &LookAlike) -> String {
         |tell| {
             format!(
                 "{} tells, {} m from ground {}",
-                text::printable(&tell.landmark),
+                text::fit(&text::printable(&tell.landmark), font, room * IDENTIFIER_SHARE),
                 nice::metres(tell.from_edge_m),
                 tell.ground
             )

@@ -7,7 +7,7 @@ use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
 use super::lines::{draw_landmarks, draw_surround, fit_frame};
 use super::place::Taken;
 use super::scene::{Px, Rect, Scene};
-use super::text;
+use super::text::{self, Font};
 use super::trace::clipped_stroke;
 use super::{ChartSize, RenderError, nice};
 use crate::frame::LocalPoint;
@@ -18,6 +18,8 @@ use crate::report::{LookAlike, LookAlikeKind, LookAlikesReport};
 const DRAWN: usize = 9;
 /// Least size of landmarks, pixels.
 const LANDMARK_PX: f64 = 4.0;
+/// Widest identifier of a landmark over the width of its line.
+pub(super) const IDENTIFIER_SHARE: f64 = 0.35;
 /// How far outlines stay off their landmarks, pixels.
 const OUTLINE_PX: f64 = 9.0;
 
@@ -34,11 +36,12 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
     let bottom = sheet.foot(&report.provenance, &report.parameters, &extra);
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
 
     frame.draw_ground(&mut sheet);
     draw_landmarks(&mut sheet.scene, &frame, &report.landmarks, LANDMARK_PX * larger(1.0, k));
     let mut taken = Taken::new(frame.rect.grown(-4.0 * k), 4.0 * k);
+    taken.dots = report.landmarks.iter().map(|mark| frame.px(mark.position)).collect();
     for line in &report.lines {
         let path = frame.path(&line.path);
         clipped_stroke(&mut sheet.scene, &frame, &path, larger(1.0, 2.0 * k), SOFT_INK);
@@ -58,7 +61,7 @@ pub(super) fn scene(report: &LookAlikesReport, size: &ChartSize) -> Result<Scene
             draw_number(&mut sheet, &frame, &mut taken, outline, entry.number);
         }
     }
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     let rest = draw_legend(&mut sheet, column);
     draw_list(&mut sheet, Rect { top: rest + 14.0 * k, ..column }, report, drawn);
     Ok(sheet.scene)
@@ -234,7 +237,10 @@ fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[
     let heading =
         if drawn.is_empty() { "No look-alikes beyond the fix size" } else { "Most dangerous first" };
     let mut y = sheet.scene.text((area.left, area.top), heading, sizes.heading(), INK).bottom + 2.0 * k;
-    let note = "by the landmarks that agree, then by the metres of line over the ground";
+    let note = match drawn {
+        [] => "",
+        _ => "by the landmarks that agree, then by the metres of line over the ground",
+    };
     for line in text::wrap(note, sizes.small(), area.width(), 2) {
         sheet.scene.text((area.left, y), &line, sizes.small(), SOFT_INK);
         y += sizes.small().line_px();
@@ -251,17 +257,21 @@ fn draw_list(sheet: &mut Sheet, area: Rect, report: &LookAlikesReport, drawn: &[
         let left = area.left + 30.0 * k;
         let title = text::fit(&title(entry), sizes.body(), area.right - left);
         sheet.scene.text((left, y), &title, sizes.body(), INK);
-        let details = text::fit(&details(entry), sizes.small(), area.right - left);
+        let room = area.right - left;
+        let details = text::fit(&details(entry, sizes.small(), room), sizes.small(), room);
         sheet.scene.text((left, y + sizes.body().line_px()), &details, sizes.small(), SOFT_INK);
         y += pitch;
         listed += 1;
     }
     let layouts = drawn[..listed].iter().filter(|entry| entry.kind != LookAlikeKind::Pair).count();
     let more = report.found - report.within_fix_size - report.in_layouts - (listed - layouts);
-    let rest = format!(
-        "and {more} more pairs; {} shifts of rows and grids; {} no farther apart than the fix size",
-        report.in_layouts, report.within_fix_size
-    );
+    let rest = match drawn {
+        [] => format!("{} no farther apart than the fix size", report.within_fix_size),
+        _ => format!(
+            "and {more} more pairs; {} shifts of rows and grids; {} no farther apart than the fix size",
+            report.in_layouts, report.within_fix_size
+        ),
+    };
     for line in text::wrap(&rest, sizes.small(), area.width(), 2) {
         sheet.scene.text((area.left, y), &line, sizes.small(), SOFT_INK);
         y += sizes.small().line_px();
@@ -284,12 +294,13 @@ pub(super) fn title(entry: &LookAlike) -> String {
     }
 }
 
-/// What else there is to say.
-fn details(entry: &LookAlike) -> String {
+/// What else there is to say; a long identifier leaves room for the figures.
+fn details(entry: &LookAlike, font: Font, room: f64) -> String {
     let tell = entry.nearest_tell_tale().map_or_else(
         || "nothing tells them apart".to_owned(),
         |tell| {
-            format!("told by {}, {} m on", text::printable(&tell.landmark), nice::metres(tell.from_edge_m))
+            let landmark = text::fit(&text::printable(&tell.landmark), font, room * IDENTIFIER_SHARE);
+            format!("told by {landmark}, {} m on", nice::metres(tell.from_edge_m))
         },
     );
     let breaks = scale_in_words(entry.break_scale);

@@ -1,7 +1,8 @@
 //! Charts: a report value in, the bytes of a PNG file out. Nothing here touches a file or decides a result.
 //!
-//! *Type.* One compiled-in family, three sizes, none under 7 points when the picture is printed on A4 landscape
-//! across its full width; a larger or smaller picture scales everything alike.
+//! *Type.* One compiled-in family, three sizes: 16, 9 and 7.7 points when the picture is printed at its resolution
+//! ([`ChartSize::dpi`]), on every paper. A larger paper has more ground and longer lists, not larger type: it is read at
+//! the same distance, and whoever wants larger type prints A4 enlarged.
 //!
 //! *Layout.* Every text, label and piece of furniture has a rectangle. Fixed furniture stands outside the map's
 //! frame; labels inside are tried at candidate places against the rectangles and line corridors already taken, so
@@ -11,7 +12,9 @@ mod area;
 mod canvas;
 mod classes;
 mod colours;
+mod compass;
 mod furniture;
+mod graticule;
 mod legend;
 mod lines;
 mod lookalike_panels;
@@ -19,6 +22,8 @@ mod lookalikes;
 mod nice;
 mod pattern;
 mod place;
+mod plot;
+mod profile;
 mod ranking;
 mod remap;
 mod ribbon;
@@ -37,12 +42,38 @@ use crate::report::{
 
 /// Smallest picture on which the furniture leaves room for a map, pixels.
 const SMALLEST_PX: (u32, u32) = (800, 560);
-/// Most pixels of a picture: A2 landscape at 150 dpi with room to spare. Painting takes 12 bytes of memory for each.
-const MOST_PIXELS: u64 = 16_000_000;
+/// Most pixels of a picture: A3 at 300 dpi with a little room. Painting takes 12 bytes of memory for each.
+const MOST_PIXELS: u64 = 18_000_000;
 /// Longest side over shortest side.
 const MOST_ASPECT: f64 = 3.0;
+/// The resolution at which A4 landscape has the size of the reference canvas, dots per inch.
+const REFERENCE_DPI: f64 = 150.0;
+/// The canvas all sizes of furniture refer to: A4 landscape at [`REFERENCE_DPI`].
+const REFERENCE_PX: (f64, f64) = (1754.0, 1240.0);
+/// Whole pixels make a paper up to this much smaller than it is.
+const PAPER_SLACK: f64 = 1e-3;
 
-/// Size of a picture.
+/// A paper of ISO 216, landscape.
+#[derive(Clone, Copy, Debug, Default, PartialEq, Eq, clap::ValueEnum)]
+pub enum Paper {
+    /// 297 mm by 210 mm.
+    #[default]
+    A4,
+    /// 420 mm by 297 mm.
+    A3,
+}
+
+impl Paper {
+    /// Width and height, millimetres.
+    pub fn size_mm(self) -> (f64, f64) {
+        match self {
+            Self::A4 => (297.0, 210.0),
+            Self::A3 => (420.0, 297.0),
+        }
+    }
+}
+
+/// Size of a picture and the resolution at which it is printed.
 ///
 /// *Units.* Pixels. The default is A4 landscape at 150 dots per inch.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -51,15 +82,36 @@ pub struct ChartSize {
     pub width_px: u32,
     /// Height, pixels.
     pub height_px: u32,
+    /// Dots per inch at print size: what makes type so many points high.
+    pub dpi: u32,
 }
 
 impl Default for ChartSize {
     fn default() -> Self {
-        Self { width_px: 1754, height_px: 1240 }
+        Self::paper(Paper::A4, 150)
     }
 }
 
 impl ChartSize {
+    /// A whole sheet of `paper` at `dpi` dots per inch.
+    pub fn paper(paper: Paper, dpi: u32) -> Self {
+        let (width_mm, height_mm) = paper.size_mm();
+        let pixels = |mm: f64| libm::round(mm / 25.4 * f64::from(dpi)) as u32;
+        Self { width_px: pixels(width_mm), height_px: pixels(height_mm), dpi }
+    }
+
+    /// A picture of this many pixels whose furniture scales with it, as if printed so that A4 landscape just fits inside.
+    pub fn pixels(width_px: u32, height_px: u32) -> Self {
+        let (width, height) = (f64::from(width_px), f64::from(height_px));
+        let scale = crate::order::smaller(width / REFERENCE_PX.0, height / REFERENCE_PX.1);
+        Self { width_px, height_px, dpi: libm::floor(REFERENCE_DPI * scale) as u32 }
+    }
+
+    /// Pixels per pixel of the reference canvas: the scale of type and furniture.
+    fn scale(&self) -> f64 {
+        f64::from(self.dpi) / REFERENCE_DPI
+    }
+
     /// Checks that a chart of this size can be drawn.
     ///
     /// # Errors
@@ -70,12 +122,18 @@ impl ChartSize {
         let (width, height) = (self.width_px, self.height_px);
         let pixels = u64::from(width) * u64::from(height);
         let (long, short) = (width.max(height), width.min(height));
+        let least = |reference: f64| reference * self.scale() * (1.0 - PAPER_SLACK);
         let reason = if width < SMALLEST_PX.0 || height < SMALLEST_PX.1 {
             format!("it must be at least {} × {} pixels to be read", SMALLEST_PX.0, SMALLEST_PX.1)
         } else if pixels > MOST_PIXELS {
             format!("it would have {pixels} pixels, and at most {MOST_PIXELS} are drawn")
         } else if f64::from(long) > f64::from(short) * MOST_ASPECT {
             format!("its long side may be at most {MOST_ASPECT} times its short side")
+        } else if self.dpi == 0
+            || f64::from(width) < least(REFERENCE_PX.0)
+            || f64::from(height) < least(REFERENCE_PX.1)
+        {
+            format!("at {} dpi its type needs at least 297 × 210 mm", self.dpi)
         } else {
             return Ok(());
         };
@@ -88,7 +146,7 @@ impl ChartSize {
 pub enum RenderError {
     /// The size asked for cannot be drawn.
     #[error(
-        "chart of {width_px} × {height_px} pixels: {reason}; ask for another size (A4 landscape at 150 dpi is 1754 × 1240)"
+        "chart of {width_px} × {height_px} pixels: {reason}; ask for another size (A4 landscape at 150 dpi is 1754 × 1240, A3 at 300 dpi is 4961 × 3508)"
     )]
     Size {
         /// Width asked for, pixels.
@@ -125,6 +183,25 @@ pub fn lines_png(report: &LinesReport, size: &ChartSize) -> Result<Vec<u8>, Rend
 /// As [`lines_png`].
 pub fn lines_layout(report: &LinesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
     Ok(lines::scene(report, size)?.texts)
+}
+
+/// Draws one panel for each of the first-ranked lines: guaranteed and estimated fix distance against the place on the line
+/// where the vehicle is lost, and the number of places against the distance run.
+///
+/// # Errors
+///
+/// [`RenderError`] when the size cannot be drawn or no line has a segment.
+pub fn profiles_png(report: &LinesReport, size: &ChartSize) -> Result<Vec<u8>, RenderError> {
+    canvas::paint(&profile::scene(report, size)?, size)
+}
+
+/// The texts of [`profiles_png`] and where they stand.
+///
+/// # Errors
+///
+/// As [`profiles_png`].
+pub fn profiles_layout(report: &LinesReport, size: &ChartSize) -> Result<Vec<PlacedText>, RenderError> {
+    Ok(profile::scene(report, size)?.texts)
 }
 
 /// Which figure of the area map a chart shows.

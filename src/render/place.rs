@@ -7,7 +7,7 @@ const DIRECTIONS: usize = 16;
 /// Candidate distances from the point, as multiples of the gap.
 const RINGS: [f64; 4] = [1.0, 2.5, 4.5, 7.0];
 /// How much a covered landmark weighs against a place further down the list of candidates.
-const COVERED_WEIGHT: f64 = 4.0;
+const COVERED_WEIGHT: f64 = 8.0;
 
 /// What labels must not touch.
 pub(super) struct Taken {

@@ -29,7 +29,7 @@ pub(super) fn scene(report: &RemapReport, size: &ChartSize) -> Result<Scene, Ren
     let bottom = sheet.foot(&report.provenance, &report.parameters, &extra);
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
 
     frame.draw_ground(&mut sheet);
     let mut area = frame.path(&report.search_area);
@@ -56,7 +56,7 @@ pub(super) fn scene(report: &RemapReport, size: &ChartSize) -> Result<Scene, Ren
         clipped_stroke(&mut sheet.scene, &frame, &track, larger(1.0, 1.4 * k), INK);
     }
     draw_labels(&mut sheet, &frame, report);
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     let legend_bottom = legend(&mut sheet, column, report);
     list(&mut sheet, Rect { top: legend_bottom + 18.0 * k, ..column }, report);
     Ok(sheet.scene)

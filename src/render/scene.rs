@@ -44,7 +44,8 @@ impl Rect {
         self.bottom - self.top
     }
 
-    pub(super) fn centre(&self) -> Px {
+    /// Its centre.
+    pub fn centre(&self) -> (f64, f64) {
         ((self.left + self.right) / 2.0, (self.top + self.bottom) / 2.0)
     }
 
@@ -202,7 +203,7 @@ impl Scene {
             font,
             colour,
         });
-        self.texts.push(PlacedText { text: text.to_owned(), rect, em_px: font.em_px });
+        self.texts.push(PlacedText { text: text::without_steering(text), rect, em_px: font.em_px });
         rect
     }
 

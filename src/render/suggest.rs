@@ -32,7 +32,7 @@ pub(super) fn scene(report: &SuggestReport, size: &ChartSize) -> Result<Scene, R
     let bottom = sheet.foot(&report.provenance, &report.parameters, &extra);
     let column =
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
-    let frame = fit_frame(&sheet, extent, top, bottom, column.left - 36.0 * k);
+    let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
 
     let fixes: Vec<f64> = report.suggestions.iter().map(|s| s.fix_m).collect();
     let scale = Scale::of_guaranteed(&fixes, report.parameters.required_fix_m);
@@ -52,7 +52,7 @@ pub(super) fn scene(report: &SuggestReport, size: &ChartSize) -> Result<Scene, R
         draw_run(&mut sheet, &frame, report, suggestion, &scale);
     }
     draw_numbers(&mut sheet, &frame, report);
-    draw_surround(&mut sheet, &frame, &report.provenance.coordinate_system);
+    draw_surround(&mut sheet, &frame, &report.provenance);
     let legend_bottom = legend(&mut sheet, column, report, &scale);
     list(&mut sheet, Rect { top: legend_bottom + 16.0 * k, ..column }, report);
     Ok(sheet.scene)

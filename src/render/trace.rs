@@ -54,7 +54,8 @@ pub(super) fn scene(report: &TraceReport, size: &ChartSize) -> Result<Scene, Ren
         let (left, top) =
             (area.left + (index % columns) as f64 * pitch_x, area.top + (index / columns) as f64 * pitch_y);
         let cell = Rect::new(left, top, left + pitch_x - 16.0 * k, top + pitch_y - font.line_px() - 22.0 * k);
-        let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell });
+        let frame = panel_frame(&sheet, panel.extent, Rect { top: cell.top + captions, ..cell })
+            .on_earth(&report.provenance.frame);
         let room = frame.rect.width();
         let title = text::fit(&panel.title, sheet.sizes.heading(), room);
         sheet.scene.text((frame.rect.left, cell.top), &title, sheet.sizes.heading(), INK);

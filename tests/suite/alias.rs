@@ -623,7 +623,7 @@ fn charts_keep_their_texts_apart() {
         let report = report(&dive, &LookAlikeRequest::default());
         assert_eq!(!report.look_alikes.is_empty(), has_some);
         for (width_px, height_px) in [(1754, 1240), (1000, 700), (1240, 1754)] {
-            let size = ChartSize { width_px, height_px };
+            let size = ChartSize::pixels(width_px, height_px);
             let texts = render::lookalikes_layout(&report, &size).unwrap();
             assert!(texts.len() > 15);
             assert_clear(&texts, &size);

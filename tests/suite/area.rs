@@ -392,7 +392,7 @@ fn texts_of_the_charts_keep_clear_of_each_other() {
     let report =
         area(&Setup::new(&dive), &AreaOptions { cell_m: 200.0, headings: 3, longest_run_m: 600.0 }, &|_| {});
     for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754)] {
-        let size = ChartSize { width_px, height_px };
+        let size = ChartSize::pixels(width_px, height_px);
         for chart in [AreaChart::Worst, AreaChart::Best, AreaChart::Share] {
             let texts = area_layout(&report, chart, &size).unwrap();
             let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));

@@ -33,6 +33,21 @@ fn help_teaches() {
     }
 }
 
+/// A3 at 200 dots per inch: 420 mm and 297 mm over 25.4 mm.
+#[test]
+fn paper_and_resolution_reach_every_chart() {
+    let place = Workplace::with_small_dive();
+    place.run("lines dive.toml --draws 1 --out out --paper a3 --dpi 200 -q").expect(0);
+    place.run("trace dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
+    place.run("lookalikes dive.toml --out out --paper a3 --dpi 200 -q --force").expect(0);
+    for name in ["lines.png", "profiles.png", "trace.png", "lookalikes.png", "lookalikes-panels.png"] {
+        let bytes = place.bytes(format!("out/{name}"));
+        // The size stands in the first chunk of a PNG file, after 16 bytes, most significant byte first.
+        let number = |at: usize| u32::from_be_bytes(bytes[at..at + 4].try_into().unwrap());
+        assert_eq!((number(16), number(20)), (3307, 2339), "{name}");
+    }
+}
+
 #[test]
 fn wrong_command_lines_exit_with_2_and_say_why() {
     let place = Workplace::with_small_dive();
@@ -43,6 +58,8 @@ fn wrong_command_lines_exit_with_2_and_say_why() {
         ("lines dive.toml --require 2", "a share from 0 to 1"),
         ("lines dive.toml --draws 0", "--draws"),
         ("lines dive.toml --threads 0", "--threads"),
+        ("lines dive.toml --dpi 600", "150..=300"),
+        ("lines dive.toml --paper a5", "a4, a3"),
         ("check dive.toml --out x", "--out"),
         ("trace dive.toml --from-m far", "--from-m"),
         ("completions sh", "bash"),
@@ -95,7 +112,7 @@ fn case_35_existing_output_is_refused_without_force_and_left_as_it_was() {
 
     let forced = place.run("lines dive.toml --out out --force").expect(0);
     assert!(forced.stderr.contains("wrote"), "{}", forced.stderr);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "notes.txt"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "notes.txt", "profiles.png"]);
     assert!(place.bytes("out/lines.csv").starts_with(b"line,"));
     assert_eq!(place.bytes("out/notes.txt"), b"mine too");
 
@@ -199,7 +216,7 @@ fn an_unmet_requirement_exits_with_1_and_still_writes() {
     let unmet = place.run("lines dive.toml --require 1 --out out").expect(1);
     assert_eq!(met.stdout, unmet.stdout);
     assert!(unmet.stderr.contains("below the 100.0 % asked for"), "{}", unmet.stderr);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
 }
 
 /// Fewer cells allowed than the first detection needs: the answer is "undecided", never a fix.
@@ -304,7 +321,7 @@ fn case_39_names_need_not_be_ascii() {
         Ran::of(place.command(["lines", "größe/dive.toml", "--out", "größe/сюда"]).output().expect("starts"))
             .expect(0);
     assert!(scored.stdout.contains(name), "{}", scored.stdout);
-    assert_eq!(place.names("größe/сюда"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("größe/сюда"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
     let json: serde_json::Value = serde_json::from_slice(&place.bytes("größe/сюда/lines.json")).unwrap();
     assert_eq!((json["dive"].as_str(), json["lines"][0]["name"].as_str()), (Some(title), Some(name)));
     let traced = Ran::of(

@@ -18,7 +18,7 @@ fn a_full_run_over_a_real_field_gives_scores() {
     let arguments = ["lines", dive.to_str().expect("a plain path"), "--quiet", "--out", "out"];
     let ran = Ran::of(place.command(arguments).output().expect("the program starts")).expect(0);
     assert!(ran.stdout.contains("north") && ran.stdout.contains("south"), "{}", ran.stdout);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
 
     let table = place.bytes("out/lines.csv");
     let mut reader = csv::Reader::from_reader(table.as_slice());

@@ -27,7 +27,11 @@ fn compare(command: &str, extra: &[&str], files: &[&str]) {
 
 #[test]
 fn case_32_scores_of_the_demo_do_not_depend_on_threads() {
-    compare("lines", &[], &["lines.csv", "lines.geojson", "lines.json", "lines.png", "recommended.gpx"]);
+    compare(
+        "lines",
+        &[],
+        &["lines.csv", "lines.geojson", "lines.json", "lines.png", "profiles.png", "recommended.gpx"],
+    );
 }
 
 #[test]

@@ -234,7 +234,7 @@ fn local_metres_give_no_files_for_the_earth_and_say_so() {
     let place = Workplace::with_small_dive();
     let ran = place.run("lines dive.toml --out out").expect(0);
     assert!(ran.stderr.contains("lines.geojson, recommended.gpx are not written"), "{}", ran.stderr);
-    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png"]);
+    assert_eq!(place.names("out"), ["lines.csv", "lines.json", "lines.png", "profiles.png"]);
     let ran = place.run("remap dive.toml --out remap").expect(0);
     assert!(ran.stderr.contains("remap.geojson is not written"), "{}", ran.stderr);
     place.run("area dive.toml --cell-m 100 --headings 4 --out area").expect(0);

@@ -195,7 +195,7 @@ fn every_command_of_the_readme_runs() {
         assert!(!ran.stderr.contains("warning"), "{command} warns: {}", ran.stderr);
     }
     let names: Vec<&str> = README.outputs.keys().map(String::as_str).collect();
-    let scores = ["lines.csv", "lines.geojson", "lines.json", "lines.png", "recommended.gpx"];
+    let scores = ["lines.csv", "lines.geojson", "lines.json", "lines.png", "profiles.png", "recommended.gpx"];
     let others = [
         "area-best.png",
         "area-share.png",

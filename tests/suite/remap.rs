@@ -371,7 +371,7 @@ fn files_of_the_demo() {
 fn the_chart_is_legible() {
     let (_, report) = mixed().report();
     for size in [(1754, 1240), (2400, 1000), (1000, 1400)] {
-        let size = fixability::render::ChartSize { width_px: size.0, height_px: size.1 };
+        let size = fixability::render::ChartSize::pixels(size.0, size.1);
         let texts = fixability::render::remap_layout(&report, &size).unwrap();
         let sheet =
             fixability::render::Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));

@@ -4,7 +4,7 @@
 
 use std::io::Cursor;
 
-use fixability::render::{self, CLASSES, ChartSize, PlacedText, Rect, RenderError, ramp};
+use fixability::render::{self, CLASSES, ChartSize, Paper, PlacedText, Rect, RenderError, ramp};
 use fixability::report::{CAUTION, LinesReport};
 
 use crate::reports;
@@ -88,7 +88,7 @@ fn all_text(texts: &[PlacedText]) -> String {
 #[test]
 fn canvas_has_the_size_asked_for() {
     for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754), (2400, 900)] {
-        let size = ChartSize { width_px, height_px };
+        let size = ChartSize::pixels(width_px, height_px);
         let picture = Picture::decode(&render::lines_png(&reports::four_lines(), &size).unwrap());
         assert_eq!((picture.width, picture.height), (width_px as usize, height_px as usize));
         let picture = Picture::decode(&render::trace_png(&reports::trace(5), &size).unwrap());
@@ -96,13 +96,50 @@ fn canvas_has_the_size_asked_for() {
     }
 }
 
+/// ISO 216: A4 is 210 mm by 297 mm, A3 297 mm by 420 mm; an inch is 25.4 mm.
+#[test]
+fn papers_have_their_pixels_and_say_their_resolution() {
+    let size = |paper, dpi| {
+        let size = ChartSize::paper(paper, dpi);
+        (size.width_px, size.height_px)
+    };
+    assert_eq!(size(Paper::A4, 150), (1754, 1240));
+    assert_eq!(size(Paper::A4, 300), (3508, 2480));
+    assert_eq!(size(Paper::A3, 150), (2480, 1754));
+    assert_eq!(size(Paper::A3, 300), (4961, 3508));
+    for paper in [Paper::A4, Paper::A3] {
+        for dpi in 150..=300 {
+            ChartSize::paper(paper, dpi).check().unwrap();
+        }
+    }
+    let bytes = render::lines_png(&uniform(Some(100.0), 0.0), &ChartSize::paper(Paper::A3, 300)).unwrap();
+    let reader = png::Decoder::new(Cursor::new(&bytes)).read_info().unwrap();
+    // 300 dots per inch are 11 811 per metre.
+    let density = reader.info().pixel_dims.unwrap();
+    assert_eq!((density.xppu, density.yppu), (11_811, 11_811));
+    let picture = Picture::decode(&bytes);
+    assert_eq!((picture.width, picture.height), (4961, 3508));
+    assert!(picture.count(ramp()[4]) > 50_000, "the line is drawn");
+}
+
+#[test]
+fn case_38_a_huge_picture_is_refused_with_the_computed_size() {
+    let size = ChartSize::paper(Paper::A3, 600);
+    let refusal = render::profiles_png(&reports::four_lines(), &size).unwrap_err().to_string();
+    assert!(refusal.contains("9921 × 7016"), "{refusal}");
+    assert!(refusal.contains("69605736 pixels, and at most 18000000"), "{refusal}");
+    let small = ChartSize { dpi: 300, ..ChartSize::default() };
+    let refusal = render::lines_png(&reports::four_lines(), &small).unwrap_err().to_string();
+    assert!(refusal.contains("at 300 dpi its type needs at least 297 × 210 mm"), "{refusal}");
+}
+
 #[test]
 fn case_38_sizes_that_cannot_be_drawn_are_refused_with_the_reason() {
     let refusal = |width_px, height_px| {
-        let size = ChartSize { width_px, height_px };
+        let size = ChartSize::pixels(width_px, height_px);
         render::lines_png(&reports::four_lines(), &size).unwrap_err().to_string()
     };
-    assert!(refusal(100_000, 100_000).contains("10000000000 pixels, and at most 16000000"));
+    assert!(refusal(100_000, 100_000).contains("10000000000 pixels, and at most 18000000"));
     assert!(refusal(799, 560).contains("at least 800 × 560"));
     assert!(refusal(6000, 1000).contains("3 times its short side"));
     assert!(refusal(0, 0).contains("0 × 0"));
@@ -177,12 +214,14 @@ fn ramp_keeps_its_order_in_grey_and_shows_on_white() {
 #[test]
 fn texts_never_overlap_nor_leave_the_canvas() {
     let sizes = [(1754, 1240), (900, 640), (1240, 1754)]
-        .map(|(width_px, height_px)| ChartSize { width_px, height_px });
+        .map(|(width_px, height_px)| ChartSize::pixels(width_px, height_px));
     for seed in 0..10 {
         let report = reports::random_scene(seed);
         for size in &sizes {
             let texts = render::lines_layout(&report, size).unwrap();
             assert_clear(&texts, size, &format!("seed {seed}, {size:?}"));
+            let texts = render::profiles_layout(&report, size).unwrap();
+            assert_clear(&texts, size, &format!("profiles, seed {seed}, {size:?}"));
             let texts = render::lines_layout(&reports::guaranteed(report.clone()), size).unwrap();
             assert_clear(&texts, size, &format!("guaranteed, seed {seed}, {size:?}"));
         }
@@ -260,6 +299,118 @@ fn chart_says_what_it_shows() {
     assert!(!words.contains("95th percentile of simulated dives"));
 }
 
+/// Latitude and longitude stand on the edges opposite the grid's; without a grid there are none. The scene lies at
+/// 56°13′N 3°11′E (the demo's zone, west of the meridian's 0.2° of convergence per 0.25° of longitude).
+#[test]
+fn georeferenced_maps_have_latitude_longitude_and_true_north() {
+    let report = reports::four_lines();
+    let texts = render::lines_layout(&report, &ChartSize::default()).unwrap();
+    let find = |end: &str| {
+        let found = texts.iter().filter(|t| t.text.ends_with(end) && t.text.contains('°'));
+        found.map(|t| t.rect.centre()).collect::<Vec<_>>()
+    };
+    let (north, east) = (find("′N"), find("′E"));
+    assert!(north.len() >= 3 && east.len() >= 3, "{north:?} {east:?}");
+    assert!(north.iter().all(|&(x, _)| x > 1100.0), "on the right edge: {north:?}");
+    assert!(east.iter().all(|&(_, y)| y < 200.0), "on the upper edge: {east:?}");
+    let words = all_text(&texts);
+    assert!(words.contains("true north 0.2° west of grid north"), "{words}");
+    let mut local = report.clone();
+    local.provenance.frame = fixability::frame::Frame::local();
+    let words = all_text(&render::lines_layout(&local, &ChartSize::default()).unwrap());
+    assert!(!words.contains("′N") && !words.contains("true north"), "{words}");
+}
+
+#[test]
+fn foot_states_issue_age_and_uncertainty() {
+    let words = |change: fn(&mut LinesReport)| {
+        let mut report = reports::four_lines();
+        change(&mut report);
+        all_text(&render::lines_layout(&report, &ChartSize::default()).unwrap())
+    };
+    let plain = words(|_| {});
+    assert!(plain.contains("age of the map not stated") && !plain.contains("issued"));
+    assert!(plain.contains("400 landmarks, half-width 1–3 m (bounds as given)"));
+    let dated = words(|report| {
+        report.provenance.issued = Some("2026-12-01".to_owned());
+        report.provenance.surveyed = Some("2026-03-01".to_owned());
+        report.provenance.map_age_days = Some(275);
+    });
+    assert!(dated.contains("issued 2026-12-01"));
+    assert!(dated.contains("landmarks surveyed 2026-03-01 (275 days before issue)"));
+    let surveyed = words(|report| report.provenance.surveyed = Some("2026-03-01".to_owned()));
+    assert!(surveyed.contains("landmarks surveyed 2026-03-01") && !surveyed.contains("issue)"));
+    let long = words(|report| report.parameters.landmark_uncertainty = "as declared ".repeat(40));
+    assert!(long.contains("(as declared as declared") && long.contains('…'));
+}
+
+#[test]
+fn profiles_say_what_they_show_and_what_they_leave_out() {
+    let size = ChartSize::default();
+    let report = reports::guaranteed(reports::four_lines());
+    let texts = render::profiles_layout(&report, &size).unwrap();
+    let words = all_text(&texts);
+    for wanted in [
+        "How far must the vehicle run, depending on where it is lost?",
+        "estimated, 95th percentile",
+        "estimated, median",
+        "required fix distance 450 m",
+        "strips from above: guaranteed, 95th percentile, median",
+        CAUTION,
+    ] {
+        assert!(words.contains(wanted), "{wanted:?} in {words:?}");
+    }
+    for name in ["A", "B", "C", "D"] {
+        assert_eq!(texts.iter().filter(|text| text.text == name).count(), 1, "{name}");
+    }
+    assert_eq!(texts.iter().filter(|text| text.text == "none").count(), 4);
+    assert!(!words.contains("not drawn"));
+    // Without a guarantee nothing is called so.
+    let words = all_text(&render::profiles_layout(&reports::four_lines(), &size).unwrap());
+    assert!(!words.to_lowercase().contains("guaranteed"), "{words}");
+
+    let lines = (0..9).map(|n| {
+        let corners = [reports::at(0.0, 90.0 * n as f64), reports::at(900.0, 90.0 * n as f64)];
+        reports::line(&format!("line {n}"), n + 1, &corners, |_, _| reports::estimated(Some(90.0), 0.0))
+    });
+    let many = reports::report(lines.rev().collect(), Vec::new());
+    let texts = render::profiles_layout(&many, &size).unwrap();
+    assert_clear(&texts, &size, "nine lines");
+    let words = all_text(&texts);
+    assert!(words.contains("3 more lines are not drawn (ranks 7 to 9): see lines.csv"), "{words}");
+    assert!(words.contains("line 5") && !words.contains("line 6"));
+    let none = reports::report(Vec::new(), Vec::new());
+    assert!(matches!(render::profiles_png(&none, &size), Err(RenderError::Nothing(_))));
+}
+
+/// Guaranteed is drawn in ink and through, estimated broken; the accent crosses the plot at the required distance; the
+/// strip of what is missing is hatched.
+#[test]
+fn profiles_keep_guaranteed_and_estimated_apart_without_colour() {
+    let corners = [reports::at(0.0, 0.0), reports::at(1000.0, 0.0)];
+    let line = reports::line("A", 1, &corners, |n, _| {
+        if n < 15 { reports::estimated(Some(300.0), 0.0) } else { reports::estimated(None, 0.0) }
+    });
+    let report = reports::guaranteed(reports::report(vec![line], Vec::new()));
+    let picture = Picture::decode(&render::profiles_png(&report, &ChartSize::default()).unwrap());
+    let longest = |of: &dyn Fn([u8; 3]) -> bool, y: usize| {
+        picture.row(y).split(|&pixel| !of(pixel)).map(<[_]>::len).max().unwrap_or(0)
+    };
+    // Rows between the frame's edges that hold a long stroke of each colour.
+    let in_plot = 400..1000;
+    let ink = |p: [u8; 3]| p == [24, 32, 40];
+    let accent = |p: [u8; 3]| p == [190, 30, 45];
+    let (r, g, b) = ramp()[3];
+    let estimated = |p: [u8; 3]| p == [r, g, b];
+    let most = |of: &dyn Fn([u8; 3]) -> bool| in_plot.clone().map(|y| longest(of, y)).max().unwrap();
+    assert!((600..900).contains(&most(&ink)), "{}: three quarters of the plot", most(&ink));
+    let across = (250..1000).map(|y| longest(&accent, y)).max().unwrap();
+    assert!(across > 900, "{across}");
+    assert!((5..=14).contains(&most(&estimated)), "{}: dashes", most(&estimated));
+    let dashed = in_plot.clone().map(|y| picture.row(y).iter().filter(|&&p| estimated(p)).count()).max();
+    assert!(dashed.unwrap() > 350, "the dashes reach over the same ground: {dashed:?}");
+}
+
 #[test]
 fn every_line_is_named_on_the_map_and_in_the_ranking() {
     let texts = render::lines_layout(&reports::four_lines(), &ChartSize::default()).unwrap();
@@ -307,10 +458,14 @@ fn write_pictures() {
     let four = reports::four_lines();
     write("lines.png", render::lines_png(&four, &size).unwrap());
     write("lines-guaranteed.png", render::lines_png(&reports::guaranteed(four.clone()), &size).unwrap());
-    let small = ChartSize { width_px: 900, height_px: 640 };
+    let small = ChartSize::pixels(900, 640);
     write("lines-small.png", render::lines_png(&four, &small).unwrap());
-    let tall = ChartSize { width_px: 1240, height_px: 1754 };
+    let tall = ChartSize::pixels(1240, 1754);
     write("lines-tall.png", render::lines_png(&four, &tall).unwrap());
+    let profiles = |report: &LinesReport, size| render::profiles_png(report, size).unwrap();
+    write("profiles.png", profiles(&reports::guaranteed(four.clone()), &size));
+    write("profiles-estimated-small.png", profiles(&four, &small));
+    write("profiles-tall.png", profiles(&reports::guaranteed(reports::random_scene(3)), &tall));
     for count in [0, 1, 3, 9, 14] {
         let bytes = render::trace_png(&reports::trace(count), &size).unwrap();
         write(&format!("trace-{count}.png"), bytes);

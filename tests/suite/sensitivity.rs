@@ -362,7 +362,7 @@ fn texts_of_the_chart_keep_clear_of_each_other() {
     reports.push(long);
     for (number, report) in reports.iter().enumerate() {
         for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754), (2480, 1754)] {
-            let size = ChartSize { width_px, height_px };
+            let size = ChartSize::pixels(width_px, height_px);
             let texts = render::sensitivity_layout(report, &size).unwrap();
             let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));
             for (index, text) in texts.iter().enumerate() {
@@ -389,7 +389,7 @@ fn write_pictures_of_sensitivity() {
     let Some(folder) = std::env::var_os("FIXABILITY_PICTURES") else { return };
     let folder = std::path::PathBuf::from(folder);
     let none = report_of(&Ground { landmarks: 2, ..Ground::new(1) }.dive(1.0), 0.5);
-    let small = ChartSize { width_px: 800, height_px: 560 };
+    let small = ChartSize::pixels(800, 560);
     let some = report_of(&Ground::new(3).dive(1.0), 0.5);
     for (name, report, size) in [
         ("none", &none, ChartSize::default()),

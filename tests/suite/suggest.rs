@@ -415,7 +415,7 @@ fn texts_of_the_chart_keep_clear_of_each_other() {
     let crowds = (0..10).map(|seed| crowded(seed, 1 + 2 * seed as usize)).chain([empty]);
     for (number, report) in crowds.enumerate() {
         for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754)] {
-            let size = ChartSize { width_px, height_px };
+            let size = ChartSize::pixels(width_px, height_px);
             let texts = render::suggest_layout(&report, &size).unwrap();
             let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));
             for (index, text) in texts.iter().enumerate() {

@@ -155,15 +155,23 @@ pub fn line(
         estimated: estimated(Some(180.0 + 110.0 * rank as f64), 0.0),
         segments_p95_within_share: 0.8,
         segments,
-        profile: vec![ProfilePoint {
-            run_m: 0.0,
-            dives: 200,
-            places_median: None,
-            places_p95: None,
-            spread_median_m: None,
-            spread_p95_m: None,
-            fixed_share: 0.0,
-        }],
+        profile: (0..=(along / 50.0) as usize).map(profile_point).collect(),
+    }
+}
+
+/// Places after 50 m times `step`: none before the first detection, then ever fewer.
+fn profile_point(step: usize) -> ProfilePoint {
+    let places = |from: usize, halving: f64| {
+        (step >= from).then(|| (250.0 * 0.5_f64.powf((step - from) as f64 / halving)).ceil())
+    };
+    ProfilePoint {
+        run_m: 50.0 * step as f64,
+        dives: 200,
+        places_median: places(1, 0.7),
+        places_p95: places(3, 1.5),
+        spread_median_m: None,
+        spread_p95_m: None,
+        fixed_share: 0.0,
     }
 }
 
