@@ -28,6 +28,7 @@ mod one_dimension;
 mod oracle;
 mod pack;
 mod page;
+mod plain_way;
 mod projection;
 mod readme;
 mod remap;
