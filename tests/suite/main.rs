@@ -17,6 +17,7 @@ mod export;
 mod gis;
 mod guarantee;
 mod heavy;
+mod hostile;
 mod intervals;
 mod labels;
 mod layers;
@@ -47,4 +48,5 @@ mod support;
 #[path = "support/template.rs"]
 mod template;
 mod tightness;
+mod trees;
 mod verdict;
