@@ -109,6 +109,18 @@ pub const GRID_METRES: Range = Range::closed(-1e8, 1e8, "m");
 /// Range of an uncertainty.
 pub const UNCERTAINTY: Range = Range::closed(0.0, 10_000.0, "m");
 
+/// Largest input file, bytes: 256 MiB. A row of a table has about 50 bytes, so this is some five million landmarks, far more
+/// than any survey of one site holds.
+pub const FILE_SIZE_MAX: u64 = 256 << 20;
+
+/// Largest dive file, bytes: 256 KiB, room for the names of ten thousand line files.
+pub const DIVE_SIZE_MAX: usize = 256 << 10;
+
+/// [`FILE_SIZE_MAX`] in words.
+pub fn file_size_words() -> String {
+    format!("{} MiB", FILE_SIZE_MAX >> 20)
+}
+
 /// How dates are written.
 pub const DATE_FORM: &str = "a date as year-month-day, such as 2026-05-31";
 

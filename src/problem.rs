@@ -20,11 +20,38 @@ pub struct Problem {
     pub accepted: String,
     /// What to do about it; empty when obvious.
     pub advice: String,
+    /// Further problems of the same file that were counted after this one and not kept.
+    pub more: usize,
+}
+
+/// Longest text of a message that is kept, characters. The longest list of names that the program prints by itself is shorter.
+const TEXT_MAX: usize = 2000;
+
+/// Text from a file as it may be printed: control characters and marks that turn the direction of writing are spelled out,
+/// so that nothing in a file can steer a terminal or split a message, and what is longer than [`TEXT_MAX`] is cut visibly.
+pub fn printable(text: &str) -> String {
+    let is_plain = |c: char| {
+        !c.is_control()
+            && !matches!(c, '\u{200e}' | '\u{200f}' | '\u{202a}'..='\u{202e}' | '\u{2066}'..='\u{2069}')
+    };
+    let mut out = String::new();
+    for (i, c) in text.chars().enumerate() {
+        if i == TEXT_MAX {
+            out.push('…');
+            break;
+        }
+        if is_plain(c) {
+            out.push(c);
+        } else {
+            out.extend(c.escape_default());
+        }
+    }
+    out
 }
 
 impl fmt::Display for Problem {
     fn fmt(&self, f: &mut fmt::Formatter<'_>) -> fmt::Result {
-        write!(f, "{}", self.file.display())?;
+        write!(f, "{}", printable(&self.file.display().to_string()))?;
         if let Some(line) = self.line {
             write!(f, ":{line}")?;
         }
@@ -49,9 +76,10 @@ impl Problem {
             file: file.into(),
             line: None,
             place: None,
-            what: what.into(),
+            what: printable(&what.into()),
             accepted: String::new(),
             advice: String::new(),
+            more: 0,
         }
     }
 
@@ -65,27 +93,110 @@ impl Problem {
     /// With the place in the line or file.
     #[must_use]
     pub fn place(mut self, place: impl Into<String>) -> Self {
-        self.place = Some(place.into());
+        self.place = Some(printable(&place.into()));
         self
     }
 
     /// With what would be accepted.
     #[must_use]
     pub fn accepted(mut self, accepted: impl Into<String>) -> Self {
-        self.accepted = accepted.into();
+        self.accepted = printable(&accepted.into());
         self
     }
 
     /// With what to do about it.
     #[must_use]
     pub fn advice(mut self, advice: impl Into<String>) -> Self {
-        self.advice = advice.into();
+        self.advice = printable(&advice.into());
         self
     }
 }
 
-/// Most problems of one file that are printed; the rest are counted. All of them stay in [`Problems`].
+/// Most problems of one file that are printed; the rest are counted.
 pub const PRINTED_PER_FILE: usize = 50;
+
+/// Most problems in a row of one file that are kept; the rest are counted in [`Problem::more`], so that a file that is wrong
+/// throughout costs no more memory than a sound one.
+pub const KEPT_PER_FILE: usize = 1000;
+
+/// Problems in the order found.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct ProblemList {
+    kept: Vec<Problem>,
+    /// How many at the end of `kept` are of the same file.
+    of_last_file: usize,
+    count: usize,
+}
+
+impl ProblemList {
+    /// Adds one.
+    pub fn push(&mut self, problem: Problem) {
+        self.count += 1 + problem.more;
+        match self.kept.last_mut() {
+            Some(last) if last.file == problem.file => {
+                if self.of_last_file >= KEPT_PER_FILE {
+                    last.more += 1 + problem.more;
+                    return;
+                }
+                self.of_last_file += 1;
+            }
+            _ => self.of_last_file = 1,
+        }
+        self.kept.push(problem);
+    }
+
+    /// Adds one of `file` that is only made when it is kept.
+    pub fn push_with(&mut self, file: &Path, make: impl FnOnce() -> Problem) {
+        match self.kept.last_mut() {
+            Some(last) if self.of_last_file >= KEPT_PER_FILE && last.file == file => {
+                last.more += 1;
+                self.count += 1;
+            }
+            _ => self.push(make()),
+        }
+    }
+
+    /// Number of all problems, kept or not.
+    pub fn len(&self) -> usize {
+        self.count
+    }
+
+    /// Whether there is none.
+    pub fn is_empty(&self) -> bool {
+        self.count == 0
+    }
+
+    /// The first one.
+    pub fn first(&self) -> Option<&Problem> {
+        self.kept.first()
+    }
+
+    /// Those that were kept.
+    pub fn iter(&self) -> std::slice::Iter<'_, Problem> {
+        self.kept.iter()
+    }
+}
+
+impl Extend<Problem> for ProblemList {
+    fn extend<T: IntoIterator<Item = Problem>>(&mut self, problems: T) {
+        problems.into_iter().for_each(|problem| self.push(problem));
+    }
+}
+
+impl IntoIterator for ProblemList {
+    type Item = Problem;
+    type IntoIter = std::vec::IntoIter<Problem>;
+
+    fn into_iter(self) -> Self::IntoIter {
+        self.kept.into_iter()
+    }
+}
+
+impl From<ProblemList> for Problems {
+    fn from(list: ProblemList) -> Self {
+        Self(list.kept)
+    }
+}
 
 /// All problems found in the inputs of one dive, in file order. Never empty.
 #[derive(Clone, Debug, PartialEq, thiserror::Error)]
@@ -97,16 +208,19 @@ impl fmt::Display for Problems {
         let mut first = true;
         while let Some(head) = rest.first() {
             let of_file = rest.iter().take_while(|p| p.file == head.file).count();
-            for problem in &rest[..of_file.clamp(0, PRINTED_PER_FILE)] {
+            let (here, others) = rest.split_at(of_file);
+            for problem in here.iter().take(PRINTED_PER_FILE) {
                 if !std::mem::take(&mut first) {
                     writeln!(f)?;
                 }
                 write!(f, "{problem}")?;
             }
-            if of_file > PRINTED_PER_FILE {
-                write!(f, "\n{}: and {} more problems", head.file.display(), of_file - PRINTED_PER_FILE)?;
+            let all: usize = here.iter().map(|p| 1 + p.more).sum();
+            if all > PRINTED_PER_FILE {
+                let file = printable(&head.file.display().to_string());
+                write!(f, "\n{file}: and {} more problems", all - PRINTED_PER_FILE)?;
             }
-            rest = &rest[of_file..];
+            rest = others;
         }
         Ok(())
     }
@@ -127,7 +241,7 @@ pub struct Notice {
 #[derive(Clone, Debug, Default)]
 pub struct Findings {
     /// What stops the run.
-    pub problems: Vec<Problem>,
+    pub problems: ProblemList,
     /// What does not.
     pub notices: Vec<Notice>,
 }
@@ -140,11 +254,15 @@ impl Findings {
 
     /// Adds a warning.
     pub fn warn(&mut self, file: Option<&Path>, text: impl Into<String>) {
-        self.notices.push(Notice { file: file.map(Path::to_path_buf), text: text.into(), is_warning: true });
+        self.notice(file, text.into(), true);
     }
 
     /// Adds information.
     pub fn inform(&mut self, file: Option<&Path>, text: impl Into<String>) {
-        self.notices.push(Notice { file: file.map(Path::to_path_buf), text: text.into(), is_warning: false });
+        self.notice(file, text.into(), false);
+    }
+
+    fn notice(&mut self, file: Option<&Path>, text: String, is_warning: bool) {
+        self.notices.push(Notice { file: file.map(Path::to_path_buf), text: printable(&text), is_warning });
     }
 }

@@ -9,7 +9,7 @@ use crate::frame::{Crs, Frame, Given, LocalPoint};
 use crate::input::position::PositionCheck;
 use crate::input::{Format, InputText, geojson as features};
 use crate::interval::{down, larger, smaller, up};
-use crate::problem::{Findings, Problem};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::track::Line;
 use crate::units::length_words;
 
@@ -59,8 +59,8 @@ pub(super) fn polygon(
     }
     let content = features::read(input, findings)?;
     let crs = features::settle_crs(input, content.crs, declared, Crs::wgs84(), findings)?;
-    if let Some(faulty) = content.faulty.into_iter().next() {
-        findings.problem(faulty);
+    if let Some(faulty) = content.faulty.first() {
+        findings.problem(faulty.clone());
         return None;
     }
     let [only] = content.list.as_slice() else {
@@ -75,7 +75,7 @@ pub(super) fn polygon(
     if coordinates.len() > 1 {
         findings.inform(Some(&input.name), format!("holes of the {role} are ignored"));
     }
-    let mut problems = Vec::new();
+    let mut problems = ProblemList::default();
     let mut check = PositionCheck::new(&input.name, &crs);
     let mut corners: Vec<LocalPoint> = Vec::new();
     for (i, position) in coordinates.first().map_or(&[][..], Vec::as_slice).iter().enumerate() {

@@ -1,6 +1,7 @@
 //! Checks of the whole: identifiers, uncertainty, lines, and whether map, lines and sonar fit together.
 
 use std::collections::{BTreeMap, BTreeSet};
+use std::path::Path;
 
 use rstar::primitives::{GeomWithData, Rectangle};
 use rstar::{AABB, RTree};
@@ -33,6 +34,36 @@ fn joined_with(mut names: Vec<String>, between: &str) -> String {
     names.truncate(NAMED);
     let list = names.join(between);
     if more > 0 { format!("{list} and {more} more") } else { list }
+}
+
+/// Puts identifiers and names of lines on one line, as blanks and line ends of XML and JSON may spread them, and refuses
+/// what other control characters they hold: names are printed, drawn and written to other files.
+pub(super) fn plain_names(sources: &mut Sources, findings: &mut Findings) {
+    let mut plain = |name: &mut String, file: &Path, line: Option<u64>, place: &str| {
+        if !name.contains(char::is_control) {
+            return;
+        }
+        *name = name.split_whitespace().collect::<Vec<_>>().join(" ");
+        if name.contains(char::is_control) {
+            findings.problems.push_with(file, || {
+                Problem::new(file, format!("the name \"{name}\" holds a control character"))
+                    .line(line)
+                    .place(place)
+                    .accepted("printable characters")
+            });
+        }
+    };
+    for row in &mut sources.landmarks.rows {
+        let place = row.where_words();
+        if let Some(id) = &mut row.id {
+            plain(id, &sources.landmark_file, row.line, &place);
+        }
+    }
+    for (file, content) in &mut sources.lines {
+        for line in &mut content.lines {
+            plain(&mut line.name, file, None, &line.origin);
+        }
+    }
 }
 
 /// Refuses landmarks that share an identifier.

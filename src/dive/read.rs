@@ -1,14 +1,15 @@
 //! From the dive file to a [`Dive`]: every file read once, every problem collected before anything is refused.
 
-use std::path::{Path, PathBuf};
+use std::path::{Component, Path, PathBuf};
 
 use super::improve::Stated;
 use super::section::Document;
 use super::settings::Settings;
 use super::site::{Site, Sources};
 use super::{Dive, InputFile, Scoring, Start, area, checks, swath, widen};
+use crate::bounds::DIVE_SIZE_MAX;
 use crate::frame::Crs;
-use crate::input::{Format, InputText};
+use crate::input::{self, Format, InputText, Source};
 use crate::map::Landmark;
 use crate::problem::{Findings, Problem, Problems};
 use crate::{map, track};
@@ -19,15 +20,23 @@ impl Dive {
     /// # Errors
     /// All problems found in all files, in the order the files were read. Nothing is written.
     pub fn read(path: &Path) -> Result<Self, Problems> {
+        Self::read_from(path, &input::disk)
+    }
+
+    /// Reads a dive file and everything it names through `source`.
+    ///
+    /// # Errors
+    /// As [`Dive::read`].
+    pub fn read_from(path: &Path, source: Source<'_>) -> Result<Self, Problems> {
         let mut findings = Findings::default();
-        match read(path, &mut findings) {
+        match read(path, source, &mut findings) {
             Some(dive) if findings.problems.is_empty() => Ok(dive),
             _ => {
                 if findings.problems.is_empty() {
                     // Every way to no dive has stated its problem; say so rather than fail in silence.
                     findings.problem(Problem::new(path, "could not be understood"));
                 }
-                Err(Problems(findings.problems))
+                Err(findings.problems.into())
             }
         }
     }
@@ -42,8 +51,8 @@ struct Read {
     complete: Option<InputText>,
 }
 
-fn read(path: &Path, findings: &mut Findings) -> Option<Dive> {
-    let read = read_files(path, findings)?;
+fn read(path: &Path, source: Source<'_>, findings: &mut Findings) -> Option<Dive> {
+    let read = read_files(path, source, findings)?;
     if !findings.problems.is_empty() {
         return None;
     }
@@ -152,15 +161,30 @@ fn cell_budget_default(landmarks: usize, heading_slices: usize) -> usize {
 }
 
 /// Reads the dive file and all files it names, as far as they can be read.
-fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
-    let input = InputText::read(path, path, findings)?;
+fn read_files(path: &Path, source: Source<'_>, findings: &mut Findings) -> Option<Read> {
+    let input = InputText::read(path, path, source, findings)?;
+    if input.text.len() > DIVE_SIZE_MAX {
+        findings.problem(
+            Problem::new(path, "is too large for a dive file")
+                .accepted(format!("at most {} KiB of TOML", DIVE_SIZE_MAX >> 10))
+                .advice("landmarks and lines go into files of their own, which the dive file names"),
+        );
+        return None;
+    }
     let document = Document::parse(path, &input.text, findings)?;
     let settings = Settings::read(&document, findings);
     let folder = path.parent().unwrap_or_else(|| Path::new(""));
     let name = path.file_name().map_or_else(String::new, |n| n.to_string_lossy().into_owned());
     let mut inputs = vec![InputFile { name, sha256: input.sha256.clone() }];
     let mut open = |name: &Path, findings: &mut Findings| {
-        let input = InputText::read(&folder.join(name), name, findings)?;
+        let path = folder.join(name);
+        let input = InputText::read(&path, name, source, findings)?;
+        if leaves(folder, name, &path) {
+            findings.inform(
+                Some(name),
+                "lies outside the folder of the dive file: a copy of that folder alone does not hold every input",
+            );
+        }
         inputs.push(InputFile { name: name.display().to_string(), sha256: input.sha256.clone() });
         Some(input)
     };
@@ -195,12 +219,13 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
         }
     }
     refuse_without_effect(&document, landmark_input.as_ref(), &line_inputs, findings);
-    let sources = Sources {
+    let mut sources = Sources {
         dive_file: path.to_path_buf(),
         landmark_file: settings.landmarks.clone()?,
         landmarks: landmarks?,
         lines,
     };
+    checks::plain_names(&mut sources, findings);
     checks::identifiers(&sources, findings);
     if let Some(rows) = checks::missing_uncertainty(&sources, &settings) {
         for problem in rows {
@@ -208,6 +233,26 @@ fn read_files(path: &Path, findings: &mut Findings) -> Option<Read> {
         }
     }
     Some(Read { settings, inputs, sources, area, complete })
+}
+
+/// Whether a file lies outside the folder of the dive file: by its name, or because a symbolic link leads out.
+fn leaves(folder: &Path, name: &Path, path: &Path) -> bool {
+    let mut depth = 0_i64;
+    let by_name = name.components().any(|part| {
+        match part {
+            Component::ParentDir => depth -= 1,
+            Component::Normal(_) => depth += 1,
+            Component::CurDir => {}
+            Component::RootDir | Component::Prefix(_) => return true,
+        }
+        depth < 0
+    });
+    let folder = if folder.as_os_str().is_empty() { Path::new(".") } else { folder };
+    match (folder.canonicalize(), path.canonicalize()) {
+        (Ok(folder), Ok(path)) => !path.starts_with(folder),
+        // Not on the disk, so the name is all there is.
+        _ => by_name,
+    }
 }
 
 /// Refuses keys that say something about a format that none of the files has.

@@ -11,7 +11,6 @@ use toml::de::{DeTable, DeValue};
 
 use crate::bounds::{self, KEYS, Key, Kind, Need};
 use crate::frame::Crs;
-use crate::input::line_at;
 use crate::problem::{Findings, Problem};
 use crate::units;
 
@@ -19,8 +18,13 @@ use crate::units;
 pub(super) struct Document<'a> {
     file: &'a Path,
     text: &'a str,
+    /// Offsets of the line feeds.
+    line_ends: Vec<usize>,
     root: DeTable<'a>,
 }
+
+/// Longest part of a line that is quoted, characters.
+const LINE_SHOWN: usize = 120;
 
 type Value<'a> = Spanned<DeValue<'a>>;
 
@@ -28,23 +32,29 @@ impl<'a> Document<'a> {
     /// Parses the text; syntax errors and unknown keys become findings. None when nothing can be made of it.
     pub(super) fn parse(file: &'a Path, text: &'a str, findings: &mut Findings) -> Option<Self> {
         let (root, errors) = DeTable::parse_recoverable(text);
+        let line_ends = text.match_indices('\n').map(|(at, _)| at).collect();
+        let document = Self { file, text, line_ends, root: root.into_inner() };
         for e in &errors {
-            let at = e.span().map_or(0, |s| s.start);
-            let line = line_at(text, at);
-            let shown = text.lines().nth(line as usize - 1).unwrap_or("").trim();
-            findings.problem(
-                Problem::new(file, format!("\"{shown}\": {}", e.message().replace('\n', ", ")))
-                    .line(line)
-                    .accepted("TOML: [table] headers and key = value lines"),
-            );
+            findings.problems.push_with(file, || {
+                let line = document.line_at(e.span().map_or(0, |s| s.start));
+                let start = (line as usize).checked_sub(2).map_or(0, |before| document.line_ends[before] + 1);
+                let shown: String =
+                    text[start..].chars().take_while(|c| *c != '\n').take(LINE_SHOWN).collect();
+                let what = format!("\"{}\": {}", shown.trim(), e.message().replace('\n', ", "));
+                Problem::new(file, what).line(line).accepted("TOML: [table] headers and key = value lines")
+            });
         }
-        let document = Self { file, text, root: root.into_inner() };
         if !errors.is_empty() {
             // What recovery made of a broken file may lack keys that are there: no further messages.
             return None;
         }
         document.check_names(findings);
         Some(document)
+    }
+
+    /// Line number, from 1, of a byte offset.
+    fn line_at(&self, offset: usize) -> u64 {
+        1 + self.line_ends.partition_point(|end| *end < offset) as u64
     }
 
     /// Refuses keys and tables that are not in the table of keys, with the nearest one that is.
@@ -56,47 +66,42 @@ impl<'a> Document<'a> {
         };
         for (key, value) in &self.root {
             let name: &str = key.get_ref();
-            let line = line_at(self.text, key.span().start);
+            let at = key.span().start;
             match value.get_ref() {
                 DeValue::Table(table) if sections.contains(&name) => {
                     for inner in table.keys() {
                         let inner_name: &str = inner.get_ref();
                         if !KEYS.iter().any(|k| k.section == name && k.name == inner_name) {
-                            findings.problem(self.unknown(
-                                name,
-                                inner_name,
-                                line_at(self.text, inner.span().start),
-                            ));
+                            let at = inner.span().start;
+                            findings.problems.push_with(self.file, || self.unknown(name, inner_name, at));
                         }
                     }
                 }
-                DeValue::Table(_) => {
+                DeValue::Table(_) => findings.problems.push_with(self.file, || {
                     let nearest = nearest(name, &sections);
-                    findings.problem(
-                        Problem::new(self.file, format!("the table [{name}] is not known"))
-                            .line(line)
-                            .accepted(format!("[{}]", sections.join("], [")))
-                            .advice(nearest.map_or_else(String::new, |n| format!("did you mean [{n}]?"))),
-                    );
-                }
+                    Problem::new(self.file, format!("the table [{name}] is not known"))
+                        .line(self.line_at(at))
+                        .accepted(format!("[{}]", sections.join("], [")))
+                        .advice(nearest.map_or_else(String::new, |n| format!("did you mean [{n}]?")))
+                }),
                 _ if sections.contains(&name) => findings.problem(
                     Problem::new(self.file, "is a value where a table is needed")
-                        .line(line)
+                        .line(self.line_at(at))
                         .place(format!("key {name}"))
                         .accepted(format!("a table header [{name}] with keys below it")),
                 ),
                 _ if !KEYS.iter().any(|k| k.section.is_empty() && k.name == name) => {
-                    findings.problem(self.unknown("", name, line));
+                    findings.problems.push_with(self.file, || self.unknown("", name, at));
                 }
                 _ => {}
             }
         }
     }
 
-    fn unknown(&self, section: &str, name: &str, line: u64) -> Problem {
+    fn unknown(&self, section: &str, name: &str, at: usize) -> Problem {
         let full = if section.is_empty() { name.to_owned() } else { format!("{section}.{name}") };
         let problem = Problem::new(self.file, "is not known and would have no effect")
-            .line(line)
+            .line(self.line_at(at))
             .place(format!("key {full}"));
         if let Some(elsewhere) = KEYS.iter().find(|k| k.name == name && k.section != section) {
             let home = if elsewhere.section.is_empty() {
@@ -133,7 +138,7 @@ impl<'a> Document<'a> {
         let key = bounds::find(section, name);
         let at = self.value(section, name).or_else(|| self.root.get(section)).map(Spanned::span);
         Problem::new(self.file, what)
-            .line(at.map(|s| line_at(self.text, s.start)))
+            .line(at.map(|s| self.line_at(s.start)))
             .place(format!("key {}", key.full_name()))
     }
 
@@ -217,6 +222,10 @@ impl<'a> Document<'a> {
         };
         if text.trim().is_empty() {
             self.wrong(key, value, "is empty", findings);
+            return None;
+        }
+        if text.trim().contains(char::is_control) {
+            self.wrong(key, value, "holds a line end or another control character", findings);
             return None;
         }
         if let Kind::Choice(words) = key.kind
@@ -312,6 +321,11 @@ impl<'a> Document<'a> {
 fn nearest<'w>(word: &str, words: &[&'w str]) -> Option<&'w str> {
     /// Share of letters that must agree for a suggestion to help rather than puzzle.
     const NEAR: f64 = 0.4;
+    /// Longest word that is compared, bytes: the work and memory grow with the length, and no key has half as many.
+    const LONGEST: usize = 64;
+    if word.len() > LONGEST {
+        return None;
+    }
     words
         .iter()
         .map(|w| (strsim::normalized_damerau_levenshtein(word, w), *w))

@@ -2,7 +2,8 @@
 
 use ::geojson::{Feature, Geometry, JsonObject, JsonValue, Position};
 
-use super::InputText;
+use super::strict_json::Strict;
+use super::{BadRows, InputText};
 use crate::frame::Crs;
 use crate::problem::{Findings, Problem};
 
@@ -21,7 +22,7 @@ pub struct Features {
     /// Sound features, in file order.
     pub list: Vec<NumberedFeature>,
     /// Those that are not.
-    pub faulty: Vec<Problem>,
+    pub faulty: BadRows,
     /// The `crs` member, which RFC 7946 has dropped but GIS programs still write.
     pub crs: Option<Crs>,
 }
@@ -29,8 +30,8 @@ pub struct Features {
 /// Splits a file into features. None, with findings, when it is no GeoJSON at all.
 pub fn read(input: &InputText, findings: &mut Findings) -> Option<Features> {
     let file = input.name.as_path();
-    let value: JsonValue = match serde_json::from_str(&input.text) {
-        Ok(value) => value,
+    let value = match serde_json::from_str(&input.text) {
+        Ok(Strict(value)) => value,
         Err(e) => {
             findings.problem(
                 Problem::new(file, format!("is not valid JSON: {e}"))
@@ -58,7 +59,7 @@ pub fn read(input: &InputText, findings: &mut Findings) -> Option<Features> {
         }
     };
     let kind = object.get("type").and_then(JsonValue::as_str).unwrap_or("").to_owned();
-    let mut faulty = Vec::new();
+    let mut faulty = BadRows::default();
     let mut list = Vec::new();
     match kind.as_str() {
         "FeatureCollection" => {
@@ -69,13 +70,13 @@ pub fn read(input: &InputText, findings: &mut Findings) -> Option<Features> {
             for (i, item) in items.into_iter().enumerate() {
                 match serde_json::from_value::<Feature>(item) {
                     Ok(feature) => list.push(NumberedFeature { number: i + 1, feature }),
-                    Err(e) => faulty.push(not_geojson(e.to_string()).place(format!("feature {}", i + 1))),
+                    Err(e) => faulty.add([not_geojson(e.to_string()).place(format!("feature {}", i + 1))]),
                 }
             }
         }
         "Feature" => match serde_json::from_value::<Feature>(object.into()) {
             Ok(feature) => list.push(NumberedFeature { number: 1, feature }),
-            Err(e) => faulty.push(not_geojson(e.to_string()).place("feature 1")),
+            Err(e) => faulty.add([not_geojson(e.to_string()).place("feature 1")]),
         },
         "" => {
             findings.problem(not_geojson("has no member \"type\"".into()));
@@ -83,7 +84,7 @@ pub fn read(input: &InputText, findings: &mut Findings) -> Option<Features> {
         }
         _ => match serde_json::from_value::<Geometry>(object.into()) {
             Ok(geometry) => list.push(NumberedFeature { number: 1, feature: Feature::from(geometry) }),
-            Err(e) => faulty.push(not_geojson(e.to_string())),
+            Err(e) => faulty.add([not_geojson(e.to_string())]),
         },
     }
     Some(Features { list, faulty, crs })

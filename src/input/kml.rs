@@ -5,7 +5,7 @@
 //! Names of elements count without their prefix. Styles, views and times are passed over; other geometry is counted.
 //!
 //! *What is refused.* A document type declaration (so there are no entities to expand), any other root than `kml`, another
-//! encoding than UTF-8, and elements nested deeper than [`DEPTH_MAX`].
+//! encoding than UTF-8, and elements nested deeper than [`DEPTH_MAX`] or with more attributes than [`super::xml::ATTRIBUTES_MAX`].
 //!
 //! [`OGC_KML`]: crate::bibliography::OGC_KML
 
@@ -15,12 +15,10 @@ use quick_xml::reader::Reader;
 
 use super::InputText;
 use super::kml_text::{Located, tuples};
-use crate::problem::{Findings, Problem};
+use super::xml::{DEPTH_MAX, Lines, check_attributes};
+use crate::problem::{Findings, Problem, ProblemList};
 
 pub use super::kml_text::Tuple;
-
-/// Deepest nesting of elements that is read. Files of GIS programs stay below 20 (common practice).
-pub const DEPTH_MAX: usize = 64;
 
 /// The placemarks of a file.
 #[derive(Debug, Default)]
@@ -71,7 +69,7 @@ pub struct Shape {
     /// Its positions: exactly one for a point without problems.
     pub tuples: Vec<Tuple>,
     /// What is wrong with it.
-    pub problems: Vec<Problem>,
+    pub problems: ProblemList,
 }
 
 impl Placemark {
@@ -134,8 +132,7 @@ struct Parser<'a> {
     skipped: Option<usize>,
     /// Name of the open `Data` element.
     data_name: Option<String>,
-    /// Offset up to which lines are counted, and the line there.
-    counted: (usize, u64),
+    lines: Lines<'a>,
 }
 
 type Refused = Box<Problem>;
@@ -152,7 +149,7 @@ impl<'a> Parser<'a> {
             target: None,
             skipped: None,
             data_name: None,
-            counted: (0, 1),
+            lines: Lines::new(&input.text),
         }
     }
 
@@ -160,23 +157,14 @@ impl<'a> Parser<'a> {
         Box::new(Problem::new(&self.input.name, what).line(line).accepted("KML 2.2 or 2.3 as UTF-8 text"))
     }
 
-    /// Line of a byte offset; offsets come in growing order.
-    fn line_at(&mut self, offset: usize) -> u64 {
-        let (from, line) = self.counted;
-        let to = offset.clamp(from, self.input.text.len());
-        let more = self.input.text.as_bytes()[from..to].iter().filter(|&&b| b == b'\n').count() as u64;
-        self.counted = (to, line + more);
-        line + more
-    }
-
     fn run(&mut self) -> Result<(), Refused> {
         let mut reader = Reader::from_str(&self.input.text);
         loop {
-            let line = self.line_at(reader.buffer_position() as usize);
+            let line = self.lines.at(reader.buffer_position() as usize);
             let event = match reader.read_event() {
                 Ok(event) => event,
                 Err(error) => {
-                    let line = self.line_at(reader.error_position() as usize);
+                    let line = self.lines.at(reader.error_position() as usize);
                     return Err(self.refuse(line, format!("is not well-formed XML: {error}")));
                 }
             };
@@ -223,7 +211,7 @@ impl<'a> Parser<'a> {
                 Event::Eof => break,
             }
         }
-        let line = self.line_at(self.input.text.len());
+        let line = self.lines.at(self.input.text.len());
         if let Some(name) = self.open.last() {
             return Err(self.refuse(line, format!("ends inside the element {name}: the file is cut off")));
         }
@@ -240,6 +228,9 @@ impl<'a> Parser<'a> {
                 return Err(self.refuse(line, format!("has the root element {name}, not kml")));
             }
             self.has_root = true;
+        }
+        if let Err(what) = check_attributes(start) {
+            return Err(self.refuse(line, what));
         }
         if self.open.len() >= DEPTH_MAX {
             return Err(self.refuse(line, format!("elements are nested deeper than {DEPTH_MAX}")));
@@ -272,7 +263,7 @@ impl<'a> Parser<'a> {
             }
             "Point" | "LineString" if self.shape.is_none() => {
                 let is_point = name == "Point";
-                let shape = Shape { is_point, line, tuples: Vec::new(), problems: Vec::new() };
+                let shape = Shape { is_point, line, tuples: Vec::new(), problems: ProblemList::default() };
                 self.shape = Some((shape, Located::default()));
             }
             "coordinates" if self.shape.is_some() => {

@@ -1,7 +1,7 @@
 //! Text of a KML element that knows on which line each part of it stands, and the positions written in it.
 
 use super::InputText;
-use crate::problem::Problem;
+use crate::problem::{Problem, ProblemList};
 use crate::units;
 
 /// Text put together from pieces of a file.
@@ -84,7 +84,7 @@ pub(super) fn tuples(
     input: &InputText,
     place: &str,
     coordinates: &Located,
-    problems: &mut Vec<Problem>,
+    problems: &mut ProblemList,
 ) -> Vec<Tuple> {
     let mut found = Vec::new();
     for (line, token) in coordinates.tokens() {

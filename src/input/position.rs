@@ -6,7 +6,7 @@ use super::table::{Column, Row, Table};
 use crate::bounds::{self, Range};
 use crate::frame::{Crs, GeoPoint, Given, LocalPoint};
 use crate::interval::{larger, smaller};
-use crate::problem::{Findings, Problem};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units::{self, Axis};
 
 /// Columns that hold coordinates.
@@ -70,7 +70,7 @@ impl PositionColumns {
                 if geographic { "EPSG:32631" } else { "EPSG:4326" },
             ));
         } else {
-            problem = problem.advice(format!("the header has: {}", table.header.join(", ")));
+            problem = problem.advice(format!("the header has: {}", table.header_words()));
         }
         findings.problem(problem);
         None
@@ -117,10 +117,10 @@ impl<'a> PositionCheck<'a> {
     pub fn row(
         &mut self,
         table: &Table,
-        row: &Row,
+        row: Row<'_>,
         columns: PositionColumns,
         decimal_comma: bool,
-        problems: &mut Vec<Problem>,
+        problems: &mut ProblemList,
     ) -> Option<Given> {
         let geographic = self.crs.is_geographic();
         let mut read = |column: usize, axis: Axis| {
@@ -160,7 +160,7 @@ impl<'a> PositionCheck<'a> {
         line: Option<u64>,
         x_place: &str,
         y_place: &str,
-        problems: &mut Vec<Problem>,
+        problems: &mut ProblemList,
     ) -> Option<Given> {
         let grow = |old: Option<(f64, f64)>, v: f64| {
             Some(old.map_or((v, v), |(lo, hi)| (smaller(lo, v), larger(hi, v))))

@@ -5,7 +5,7 @@
 
 use std::path::{Path, PathBuf};
 
-use super::InputText;
+use super::{BadRows, InputText};
 use crate::problem::{Findings, Problem};
 
 /// A column the reader knows, with the names it goes by.
@@ -26,27 +26,39 @@ pub struct Table {
     pub file: PathBuf,
     /// The header as written.
     pub header: Vec<String>,
-    /// Rows that have as many fields as the header.
-    pub rows: Vec<Row>,
-    /// Rows that have not.
-    pub misfits: Vec<Problem>,
+    /// Rows that have not as many fields as the header.
+    pub misfits: BadRows,
     found: Vec<(&'static str, usize)>,
+    /// Lines of the rows that have.
+    lines: Vec<u64>,
+    /// Their fields, one after the other: a file of many short fields is to cost little more than its size.
+    cells: String,
+    /// Where each field ends in `cells`.
+    ends: Vec<usize>,
 }
 
 /// One row.
-#[derive(Debug)]
-pub struct Row {
+#[derive(Clone, Copy, Debug)]
+pub struct Row<'a> {
     /// Line on which it starts, from 1.
     pub line: u64,
-    record: csv::StringRecord,
+    /// Number of its first field among those of the table.
+    first: usize,
+    table: &'a Table,
 }
 
-impl Row {
+impl<'a> Row<'a> {
     /// Text of a field, without surrounding blanks.
-    pub fn text(&self, column: usize) -> &str {
-        self.record.get(column).unwrap_or("").trim()
+    pub fn text(&self, column: usize) -> &'a str {
+        let end = |field: usize| self.table.ends.get(field).copied().unwrap_or(self.table.cells.len());
+        let field = self.first + column;
+        let start = if field == 0 { 0 } else { end(field - 1) };
+        self.table.cells.get(start..end(field)).unwrap_or("").trim()
     }
 }
+
+/// Longest name of a column in messages, characters. They name the column of every bad row.
+const NAME_SHOWN: usize = 80;
 
 const SEPARATORS: [u8; 3] = [b',', b';', b'\t'];
 
@@ -61,19 +73,21 @@ impl Table {
             .flexible(true)
             .from_reader(input.text.as_bytes());
         let mut header = None;
-        let mut rows = Vec::new();
-        let mut misfits = Vec::new();
+        let (mut lines, mut cells, mut ends) = (Vec::new(), String::new(), Vec::new());
+        let mut misfits = BadRows::default();
         let mut blank = 0usize;
-        let mut lines = LineCounter::new(&input.text);
-        for record in reader.records() {
-            let record = match record {
-                Ok(record) => record,
+        let mut counter = LineCounter::new(&input.text);
+        let mut record = csv::StringRecord::new();
+        loop {
+            match reader.read_record(&mut record) {
+                Ok(true) => {}
+                Ok(false) => break,
                 Err(e) => {
                     findings.problem(Problem::new(file, format!("cannot be split into fields: {e}")));
                     break;
                 }
-            };
-            let line = lines.line_of(record.position().map_or(0, csv::Position::byte) as usize);
+            }
+            let line = counter.line_of(record.position().map_or(0, csv::Position::byte) as usize);
             let Some(width) = header.as_ref().map(Vec::len) else {
                 header = Some(record.iter().map(|f| f.trim().to_owned()).collect());
                 continue;
@@ -82,23 +96,26 @@ impl Table {
                 blank += 1;
             } else if record.iter().any(|f| f.contains('\n')) {
                 // An unclosed quotation mark would swallow every row up to the next one without a trace.
-                misfits.push(
-                    Problem::new(file, "a field runs over more than one line")
-                        .line(line)
-                        .accepted("fields that end on their line")
-                        .advice("close the quotation mark, or double it inside a field"),
-                );
+                misfits.add([Problem::new(file, "a field runs over more than one line")
+                    .line(line)
+                    .accepted("fields that end on their line")
+                    .advice("close the quotation mark, or double it inside a field")]);
             } else if record.len() != width {
-                misfits.push(
-                    Problem::new(file, format!("the row has {} fields, the header {width}", record.len()))
-                        .line(line)
-                        .accepted(format!("{width} fields"))
-                        .advice(
-                            "quote fields that contain the separator; with decimal commas, separate by semicolons",
-                        ),
-                );
+                misfits.add([Problem::new(
+                    file,
+                    format!("the row has {} fields, the header {width}", record.len()),
+                )
+                .line(line)
+                .accepted(format!("{width} fields"))
+                .advice(
+                    "quote fields that contain the separator; with decimal commas, separate by semicolons",
+                )]);
             } else {
-                rows.push(Row { line, record });
+                lines.push(line);
+                for field in &record {
+                    cells.push_str(field);
+                    ends.push(cells.len());
+                }
             }
         }
         if blank > 0 {
@@ -107,7 +124,13 @@ impl Table {
         }
         let header: Vec<String> = header?;
         let found = find_columns(file, &header, columns, findings)?;
-        Some(Self { file: file.to_path_buf(), header, rows, misfits, found })
+        Some(Self { file: file.to_path_buf(), header, misfits, found, lines, cells, ends })
+    }
+
+    /// Rows that have as many fields as the header.
+    pub fn rows(&self) -> impl ExactSizeIterator<Item = Row<'_>> {
+        let width = self.header.len();
+        self.lines.iter().enumerate().map(move |(i, &line)| Row { line, first: i * width, table: self })
     }
 
     /// Position of a column, if the file has it.
@@ -117,7 +140,12 @@ impl Table {
 
     /// `column northing_m`, with the name as the file writes it.
     pub fn place(&self, column: usize) -> String {
-        format!("column {}", self.header[column])
+        format!("column {}", shortened(&self.header[column]))
+    }
+
+    /// The header in messages: its first names.
+    pub fn header_words(&self) -> String {
+        listed(&self.header.iter().map(String::as_str).collect::<Vec<_>>())
     }
 
     /// Tells which columns were not used, `used` being those that were.
@@ -128,8 +156,26 @@ impl Table {
             .filter(|n| !n.is_empty())
             .collect();
         if !names.is_empty() {
-            findings.inform(Some(&self.file), format!("columns not used: {}", names.join(", ")));
+            findings.inform(Some(&self.file), format!("columns not used: {}", listed(&names)));
         }
+    }
+}
+
+/// Most names of columns in one message.
+const NAMES_SHOWN: usize = 40;
+
+/// The first names, and how many more there are.
+pub fn listed(names: &[&str]) -> String {
+    let shown: Vec<String> = names.iter().take(NAMES_SHOWN).map(|name| shortened(name)).collect();
+    let more = names.len() - shown.len();
+    let list = shown.join(", ");
+    if more > 0 { format!("{list} and {more} more") } else { list }
+}
+
+fn shortened(name: &str) -> String {
+    match name.char_indices().nth(NAME_SHOWN) {
+        Some((end, _)) => format!("{}…", &name[..end]),
+        None => name.to_owned(),
     }
 }
 
@@ -212,7 +258,12 @@ fn find_columns(
         }
         if hits.len() > 1 {
             hits.sort_unstable();
-            let twice = hits.iter().map(|i| header[*i].as_str()).collect::<Vec<_>>().join("\" and \"");
+            let twice = hits
+                .iter()
+                .take(NAMES_SHOWN)
+                .map(|i| shortened(&header[*i]))
+                .collect::<Vec<_>>()
+                .join("\" and \"");
             findings.problem(
                 Problem::new(file, format!("the columns \"{twice}\" mean the same"))
                     .line(1)

@@ -9,10 +9,10 @@ use time::Date;
 use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
 use crate::frame::Crs;
+use crate::input::InputText;
 use crate::input::position::{COORDINATE_COLUMNS, PositionCheck, PositionColumns};
 use crate::input::table::{Column, Row, Table};
-use crate::input::{BadRows, InputText};
-use crate::problem::{Findings, Problem};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 
 pub(super) const ID: Column = Column {
@@ -51,14 +51,11 @@ pub(super) fn read(
     used.extend(uncertainty.columns());
     table.report_unused(&used, findings);
 
-    let mut bad = BadRows::default();
-    for misfit in std::mem::take(&mut table.misfits) {
-        bad.add([misfit]);
-    }
+    let mut bad = std::mem::take(&mut table.misfits);
     let mut check = PositionCheck::new(&input.name, crs);
-    let mut rows = Vec::with_capacity(table.rows.len());
-    for row in &table.rows {
-        let mut problems = Vec::new();
+    let mut rows = Vec::with_capacity(table.rows().len());
+    for row in table.rows() {
+        let mut problems = ProblemList::default();
         let position = check.row(&table, row, place, options.decimal_comma, &mut problems);
         let uncertainty_m = uncertainty.of(&table, row, options.decimal_comma, &mut problems);
         let surveyed = surveyed.and_then(|column| date(&table, row, column, &mut problems));
@@ -81,7 +78,7 @@ pub(super) fn read(
 }
 
 /// The date in a field, or none when it is empty; a problem of the row goes to `problems`.
-fn date(table: &Table, row: &Row, column: usize, problems: &mut Vec<Problem>) -> Option<Date> {
+fn date(table: &Table, row: Row<'_>, column: usize, problems: &mut ProblemList) -> Option<Date> {
     let text = row.text(column);
     if text.is_empty() {
         return None;
@@ -143,9 +140,9 @@ impl Uncertainty {
     fn of(
         self,
         table: &Table,
-        row: &Row,
+        row: Row<'_>,
         decimal_comma: bool,
-        problems: &mut Vec<Problem>,
+        problems: &mut ProblemList,
     ) -> Option<(f64, f64)> {
         let mut read = |column: usize| -> Option<f64> {
             let text = row.text(column);

@@ -10,8 +10,8 @@ use super::read::{LandmarkFile, LandmarkRow, ReadOptions};
 use crate::bounds;
 use crate::frame::Crs;
 use crate::input::position::PositionCheck;
-use crate::input::{BadRows, InputText, geojson};
-use crate::problem::{Findings, Problem};
+use crate::input::{InputText, geojson};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 
 pub(super) fn read(
@@ -22,10 +22,7 @@ pub(super) fn read(
 ) -> Option<LandmarkFile> {
     let features = geojson::read(input, findings)?;
     let crs = geojson::settle_crs(input, features.crs, Some(declared), Crs::wgs84(), findings)?;
-    let mut bad = BadRows::default();
-    for problem in features.faulty {
-        bad.add([problem]);
-    }
+    let mut bad = features.faulty;
     let mut check = PositionCheck::new(&input.name, &crs);
     let mut rows = Vec::new();
     for numbered in &features.list {
@@ -45,7 +42,7 @@ pub(super) fn read(
                 continue;
             }
         };
-        let mut problems = Vec::new();
+        let mut problems = ProblemList::default();
         let uncertainty_m = uncertainty(feature, &problem, &mut problems);
         let surveyed = surveyed(feature, &problem, &mut problems);
         let id = geojson::text_property(feature, &["id", "contact_id", "contact", "name"])
@@ -90,7 +87,7 @@ pub(super) fn read(
 fn surveyed(
     feature: &Feature,
     problem: &dyn Fn(String) -> Problem,
-    problems: &mut Vec<Problem>,
+    problems: &mut ProblemList,
 ) -> Option<Date> {
     let value = feature.property("surveyed").filter(|value| !value.is_null())?;
     let date = value.as_str().and_then(units::parse_date);
@@ -104,7 +101,7 @@ fn surveyed(
 fn uncertainty(
     feature: &Feature,
     problem: &dyn Fn(String) -> Problem,
-    problems: &mut Vec<Problem>,
+    problems: &mut ProblemList,
 ) -> Option<(f64, f64)> {
     let mut read = |name: &str| -> Option<f64> {
         let value = feature.property(name).filter(|v| !v.is_null())?;

@@ -4,6 +4,8 @@
 //! [`super::csv`]; without an identifier there, the placemark's `name` counts, then its `id` attribute. Several points of one
 //! placemark are landmarks of their own.
 
+use std::collections::BTreeSet;
+
 use time::Date;
 
 use super::csv::{BOTH, EAST, ID, NORTH, SURVEYED};
@@ -12,9 +14,9 @@ use crate::bounds;
 use crate::frame::Crs;
 use crate::input::kml::{self, Datum, Placemark};
 use crate::input::position::PositionCheck;
-use crate::input::table::{Column, normal};
+use crate::input::table::{Column, listed, normal};
 use crate::input::{BadRows, InputText};
-use crate::problem::{Findings, Problem};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 
 pub(super) fn read(
@@ -53,7 +55,7 @@ pub(super) fn read(
         if points.is_empty() {
             continue;
         }
-        let mut problems = Vec::new();
+        let mut problems = ProblemList::default();
         let uncertainty_m = uncertainty(input, placemark, &mut problems);
         let surveyed = surveyed(input, placemark, &mut problems);
         let id = id(input, placemark, &mut problems);
@@ -93,7 +95,7 @@ fn value<'a>(
     input: &InputText,
     placemark: &'a Placemark,
     column: &Column,
-    problems: &mut Vec<Problem>,
+    problems: &mut ProblemList,
 ) -> Option<&'a Datum> {
     let mut hits: Vec<&Datum> = Vec::new();
     for name in column.names {
@@ -115,12 +117,12 @@ fn value<'a>(
     Some(first).filter(|datum| !datum.text.is_empty())
 }
 
-fn id(input: &InputText, placemark: &Placemark, problems: &mut Vec<Problem>) -> Option<String> {
+fn id(input: &InputText, placemark: &Placemark, problems: &mut ProblemList) -> Option<String> {
     let in_data = value(input, placemark, &ID, problems).map(|datum| datum.text.clone());
     in_data.or_else(|| placemark.name.clone()).or_else(|| placemark.id.clone())
 }
 
-fn uncertainty(input: &InputText, placemark: &Placemark, problems: &mut Vec<Problem>) -> Option<(f64, f64)> {
+fn uncertainty(input: &InputText, placemark: &Placemark, problems: &mut ProblemList) -> Option<(f64, f64)> {
     let before = problems.len();
     let mut read = |column: &Column| -> Option<f64> {
         let datum = value(input, placemark, column, problems)?;
@@ -161,7 +163,7 @@ fn uncertainty(input: &InputText, placemark: &Placemark, problems: &mut Vec<Prob
     }
 }
 
-fn surveyed(input: &InputText, placemark: &Placemark, problems: &mut Vec<Problem>) -> Option<Date> {
+fn surveyed(input: &InputText, placemark: &Placemark, problems: &mut ProblemList) -> Option<Date> {
     let datum = value(input, placemark, &SURVEYED, problems)?;
     let date = units::parse_date(&datum.text);
     if date.is_none() {
@@ -177,16 +179,16 @@ fn surveyed(input: &InputText, placemark: &Placemark, problems: &mut Vec<Problem
 
 /// Names the data that mean nothing here, each once.
 fn report_unknown_data(input: &InputText, placemarks: &[Placemark], findings: &mut Findings) {
-    let mut names: Vec<&str> = Vec::new();
+    let (mut names, mut seen) = (Vec::new(), BTreeSet::new());
     for datum in placemarks.iter().flat_map(|placemark| &placemark.data) {
         let name = normal(&datum.name);
         let is_known =
             [ID, BOTH, EAST, NORTH, SURVEYED].iter().any(|column| column.names.contains(&name.as_str()));
-        if !is_known && !names.contains(&datum.name.as_str()) {
-            names.push(&datum.name);
+        if !is_known && seen.insert(datum.name.as_str()) {
+            names.push(datum.name.as_str());
         }
     }
     if !names.is_empty() {
-        findings.inform(Some(&input.name), format!("data not used: {}", names.join(", ")));
+        findings.inform(Some(&input.name), format!("data not used: {}", listed(&names)));
     }
 }

@@ -5,10 +5,10 @@
 
 use super::read::{LineFile, LineRows, ReadOptions, WaypointRow};
 use crate::frame::Crs;
+use crate::input::InputText;
 use crate::input::position::{COORDINATE_COLUMNS, PositionCheck, PositionColumns};
 use crate::input::table::{Column, Table};
-use crate::input::{BadRows, InputText};
-use crate::problem::{Findings, Problem};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 
 pub(super) const LINE: Column =
@@ -33,7 +33,7 @@ pub(super) fn read(input: &InputText, options: ReadOptions<'_>, findings: &mut F
             Problem::new(&input.name, "no column line with the name of the line each waypoint belongs to")
                 .line(1)
                 .accepted(format!("line (or {})", LINE.names[1..].join(", ")))
-                .advice(format!("the header has: {}", table.header.join(", "))),
+                .advice(format!("the header has: {}", table.header_words())),
         );
         return None;
     };
@@ -43,15 +43,12 @@ pub(super) fn read(input: &InputText, options: ReadOptions<'_>, findings: &mut F
     used.extend(order_column);
     table.report_unused(&used, findings);
 
-    let mut bad = BadRows::default();
-    for misfit in std::mem::take(&mut table.misfits) {
-        bad.add([misfit]);
-    }
+    let mut bad = std::mem::take(&mut table.misfits);
     let mut check = PositionCheck::new(&input.name, &crs);
     let mut lines: Vec<(String, u64, Vec<Ordered>)> = Vec::new();
     let mut number_of_name = std::collections::HashMap::new();
-    for row in &table.rows {
-        let mut problems = Vec::new();
+    for row in table.rows() {
+        let mut problems = ProblemList::default();
         let name = row.text(name_column);
         if name.is_empty() {
             problems.push(

@@ -5,17 +5,14 @@ use ::geojson::{GeometryValue, Position};
 use super::read::{LineFile, LineRows, WaypointRow};
 use crate::frame::Crs;
 use crate::input::position::PositionCheck;
-use crate::input::{BadRows, InputText, geojson};
-use crate::problem::{Findings, Problem};
+use crate::input::{InputText, geojson};
+use crate::problem::{Findings, Problem, ProblemList};
 
 pub(super) fn read(input: &InputText, declared: Option<&Crs>, findings: &mut Findings) -> Option<LineFile> {
     let features = geojson::read(input, findings)?;
     let crs = geojson::settle_crs(input, features.crs, declared, Crs::wgs84(), findings)?;
     let stem = input.name.file_stem().and_then(|s| s.to_str()).unwrap_or("line").to_owned();
-    let mut bad = BadRows::default();
-    for problem in features.faulty {
-        bad.add([problem]);
-    }
+    let mut bad = features.faulty;
     let mut check = PositionCheck::new(&input.name, &crs);
     let mut lines = Vec::new();
     for numbered in &features.list {
@@ -43,7 +40,7 @@ pub(super) fn read(input: &InputText, declared: Option<&Crs>, findings: &mut Fin
             } else {
                 (format!("{name} part {}", i + 1), format!("{place}, part {}", i + 1))
             };
-            let mut problems = Vec::new();
+            let mut problems = ProblemList::default();
             let mut waypoints = Vec::new();
             for (k, position) in part.iter().enumerate() {
                 let at = format!("{origin}, position {}", k + 1);

@@ -1,16 +1,23 @@
 //! Lines from GPX: every route, and every segment of every track. Always WGS 84.
 //!
-//! The `gpx` crate stops at the first fault and does not say where. So when it fails, the opening tags of the points are
-//! gone through here, counted, and every one with a bad latitude or longitude is named with its line.
+//! The `gpx` crate stops at the first fault and does not say where. So when it fails, the points are gone through here,
+//! counted, and every one with a bad latitude or longitude is named with its line.
+
+use quick_xml::events::Event;
+use quick_xml::reader::Reader;
 
 use super::read::{LineFile, LineRows, WaypointRow};
 use crate::bounds;
 use crate::frame::{Crs, GeoPoint, Given};
-use crate::input::InputText;
-use crate::problem::{Findings, Problem};
+use crate::input::{InputText, xml};
+use crate::problem::{Findings, Problem, ProblemList};
 use crate::units;
 
 pub(super) fn read(input: &InputText, findings: &mut Findings) -> Option<LineFile> {
+    if let Err(problem) = xml::guard(input) {
+        findings.problem(*problem);
+        return None;
+    }
     let document = match ::gpx::read(input.text.as_bytes()) {
         Ok(document) => document,
         Err(e) => {
@@ -73,51 +80,43 @@ fn line(name: String, origin: String, points: &[::gpx::Waypoint]) -> LineRows {
 }
 
 /// Every point whose latitude or longitude is missing, no number, or out of range.
-fn bad_points(input: &InputText) -> Vec<Problem> {
-    let mut problems = Vec::new();
-    let text = input.text.as_str();
-    for tag in ["wpt", "rtept", "trkpt"] {
-        let open = format!("<{tag}");
-        for (i, (at, _)) in text.match_indices(open.as_str()).enumerate() {
-            let rest = &text[at + open.len()..];
-            let element = &rest[..rest.find('>').unwrap_or(rest.len())];
-            for (attribute, range) in [("lat", bounds::LATITUDE), ("lon", bounds::LONGITUDE)] {
-                let what = match attribute_text(element, attribute) {
-                    None => "is missing".to_owned(),
-                    Some(value) => match units::parse_number(value, false) {
-                        Ok(x) if range.contains(x) && x <= 180.0 => continue,
-                        Ok(_) => format!("\"{value}\" is out of range"),
-                        Err(fault) => format!("\"{value}\" {}", fault.what),
-                    },
-                };
-                problems.push(
-                    Problem::new(&input.name, what)
-                        .line(input.line_at(at))
-                        .place(format!("{tag} {}, attribute {attribute}", i + 1))
-                        .accepted(if attribute == "lat" {
-                            "−90 to 90 degrees"
-                        } else {
-                            "−180 to 180 degrees"
-                        }),
-                );
-            }
-        }
-    }
-    problems.sort_by_key(|p| p.line);
-    problems
-}
-
-fn attribute_text<'a>(element: &'a str, name: &str) -> Option<&'a str> {
-    let mut from = 0;
+fn bad_points(input: &InputText) -> ProblemList {
+    const TAGS: [&str; 3] = ["wpt", "rtept", "trkpt"];
+    let mut problems = ProblemList::default();
+    let mut seen = [0_usize; TAGS.len()];
+    let mut reader = Reader::from_str(&input.text);
+    let mut lines = xml::Lines::new(&input.text);
     loop {
-        let at = from + element[from..].find(name)?;
-        let before_ok = element[..at].ends_with(char::is_whitespace);
-        let after = element[at + name.len()..].trim_start();
-        if let (true, Some(value)) = (before_ok, after.strip_prefix('=')) {
-            let value = value.trim_start();
-            let quote = value.chars().next().filter(|c| matches!(c, '"' | '\''))?;
-            return value[1..].find(quote).map(|end| &value[1..=end]);
+        let line = lines.at(reader.buffer_position() as usize);
+        let element = match reader.read_event() {
+            Ok(Event::Start(element) | Event::Empty(element)) => element,
+            // The text is well-formed (the guard has been through it), so this is the end.
+            Ok(Event::Eof) | Err(_) => return problems,
+            Ok(_) => continue,
+        };
+        let Some(kind) = TAGS.iter().position(|tag| *tag == element.local_name().as_ref()) else { continue };
+        seen[kind] += 1;
+        for (name, range) in [("lat", bounds::LATITUDE), ("lon", bounds::LONGITUDE)] {
+            let value = element
+                .attributes()
+                .with_checks(false)
+                .flatten()
+                .find(|attribute| attribute.key.as_ref() == name)
+                .map(|attribute| attribute.value);
+            let what = match value {
+                None => "is missing".to_owned(),
+                Some(value) => match units::parse_number(&value, false) {
+                    Ok(x) if range.contains(x) && x <= 180.0 => continue,
+                    Ok(_) => format!("\"{value}\" is out of range"),
+                    Err(fault) => format!("\"{value}\" {}", fault.what),
+                },
+            };
+            problems.push(
+                Problem::new(&input.name, what)
+                    .line(line)
+                    .place(format!("{} {}, attribute {name}", TAGS[kind], seen[kind]))
+                    .accepted(if name == "lat" { "−90 to 90 degrees" } else { "−180 to 180 degrees" }),
+            );
         }
-        from = at + name.len();
     }
 }

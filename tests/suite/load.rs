@@ -51,7 +51,7 @@ fix_size_m = 20
 required_fix_m = 300
 "#;
 
-const REEF: &str = "id,easting,northing,uncertainty_m\n\
+pub const REEF: &str = "id,easting,northing,uncertainty_m\n\
     A,500100,6200100,2\nB,500300,6200050,2\nC,500500,6200120,3\nD,500700,6200080,2\n";
 
 const LINES: &str = "line,easting,northing\nnorth,500000,6200060\nnorth,500800,6200060\n\
