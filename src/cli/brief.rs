@@ -147,6 +147,15 @@ fn files(setup: &Setup<'_>, found: &Findings, size: &ChartSize) -> Result<Vec<(S
     }
     let names: Vec<String> =
         files.iter().map(|(name, _)| name.clone()).chain(["pack.json".to_owned()]).collect();
+    // The page has its charts at one size, whatever that of the files: it is to be sent, and is read on a screen.
+    let of_page: Vec<(String, Vec<u8>)>;
+    let charts = if *size == ChartSize::default() {
+        &files
+    } else {
+        let all = of_commands(&ChartSize::default())?.into_iter();
+        of_page = all.map(|(name, bytes)| (name.to_owned(), bytes)).collect();
+        &of_page
+    };
     let page = Page {
         verdict: &found.verdict,
         lines: &found.lines,
@@ -156,7 +165,7 @@ fn files(setup: &Setup<'_>, found: &Findings, size: &ChartSize) -> Result<Vec<(S
         suggest: &found.suggest,
         sensitivity: &found.sensitivity,
         traces: &found.traces,
-        charts: &files,
+        charts,
         files: &names,
     };
     let page = export::page_html(&page);

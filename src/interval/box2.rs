@@ -57,3 +57,12 @@ impl Box2 {
         Self { east: self.east.intersection(other.east), north: self.north.intersection(other.north) }
     }
 }
+
+/// The mirrored box { −p } (exact).
+impl std::ops::Neg for Box2 {
+    type Output = Self;
+
+    fn neg(self) -> Self {
+        Self { east: -self.east, north: -self.north }
+    }
+}

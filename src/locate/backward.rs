@@ -150,21 +150,24 @@ impl History {
             let from = chunk[0].1;
             let boxes = chunk.iter().map(|&(link, _)| origins[link].bounding_box()).collect();
             let group = groups(boxes, 0.0);
-            let apart = (1..group.len()).filter(|&i| group[i] == i && i != group[0]).count();
+            let apart = (1..)
+                .zip(&group[1..])
+                .filter(|&(i, &representative)| representative == i && i != group[0])
+                .count();
             // A copy of every incoming link per part: more of them than outgoing links would be out of proportion.
             if apart == 0 || apart * coming_in[from as usize] as usize > LINKS_PER_SPLIT_MAX {
                 continue;
             }
             let mut number_of: Vec<u32> = vec![from; group.len()];
             for i in 0..group.len() {
-                if group[i] == i && i != group[0] {
+                if group[i] as usize == i && group[i] != group[0] {
                     number_of[i] = u32::try_from(before.states.len()).expect("fewer than 2³² states");
                     before.states.push(before.states[from as usize]);
                     parts.push((from, number_of[i]));
                 }
             }
             for (&(link, _), &representative) in chunk.iter().zip(&group) {
-                links[link].from = number_of[representative];
+                links[link].from = number_of[representative as usize];
             }
         }
         let mut copies: Vec<Link> = Vec::new();

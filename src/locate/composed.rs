@@ -53,7 +53,7 @@ use std::collections::BTreeMap;
 use super::Bounds;
 use super::cell::{Reaches, add_reaches, disc_reaches, mirrored, polar_reaches};
 use super::certain::{CertainSighting, certain_sightings};
-use super::feasible::Feasible;
+use super::feasible::EventSet;
 use super::forward::Solver;
 use super::steps::{Look, RESOLUTION_M, RESOLUTION_RAD, Step, TravelError};
 use super::watch::FixWatch;
@@ -151,7 +151,7 @@ impl ComposedRun {
         solver: &Solver<'_>,
         misses: u8,
         start_m: f64,
-        mut visit: impl FnMut(f64, &Feasible),
+        mut visit: impl FnMut(f64, &EventSet<'_>),
     ) -> ComposedOutcome {
         let first = 1 + self
             .steps
@@ -247,10 +247,11 @@ impl CertainSighting {
 }
 
 /// Spread of ⋃ (W ⊕ E) over the windows of bias.
-fn spread_over_window(set: &Feasible, drift_apart: &[Reaches]) -> Option<f64> {
-    set.states
-        .iter()
-        .map(|state| state.cell.minkowski_sum(&drift_apart[usize::from(state.slice)]))
+fn spread_over_window(set: &EventSet<'_>, drift_apart: &[Reaches]) -> Option<f64> {
+    // The hull of sums with one set is the sum with the hull, to the last digit: rounding up is monotone.
+    let hulls = set.slice_hulls().iter().zip(drift_apart);
+    hulls
+        .filter_map(|(hull, apart)| Some(hull.as_ref()?.minkowski_sum(apart)))
         .reduce(|a, b| a.hull(&b))
         .map(|hull| hull.diameter_m())
 }

@@ -1,6 +1,11 @@
 //! The feasible set: a union of cells, its spread, and its places.
 
+use std::cell::OnceCell;
+use std::cmp::Ordering;
+use std::ops::Deref;
+
 use super::cell::Cell;
+use super::first::FirstSet;
 use super::unseen::Missed;
 use crate::frame::LocalPoint;
 use crate::interval::{Box2, Interval};
@@ -31,6 +36,16 @@ impl Feasible {
         self.states.iter().map(|state| state.cell).reduce(|a, b| a.hull(&b))
     }
 
+    /// The smallest cell that holds all cells of a slice, for each of `slices` slices; none for a slice without cells.
+    pub fn slice_hulls(&self, slices: usize) -> Vec<Option<Cell>> {
+        let mut hulls = vec![None; slices];
+        for state in &self.states {
+            let hull: &mut Option<Cell> = &mut hulls[usize::from(state.slice)];
+            *hull = Some(hull.map_or(state.cell, |h| h.hull(&state.cell)));
+        }
+        hulls
+    }
+
     /// Whether a position is in the set.
     pub fn contains(&self, p: LocalPoint) -> bool {
         self.states.iter().any(|state| state.cell.contains(p))
@@ -46,7 +61,7 @@ impl Feasible {
     pub fn places(&self, fix_size_m: f64) -> usize {
         let boxes = self.states.iter().map(|state| state.cell.bounding_box()).collect();
         let group = groups(boxes, fix_size_m);
-        (0..group.len()).filter(|&i| group[i] == i).count()
+        group.iter().zip(0..).filter(|&(&representative, i)| representative == i).count()
     }
 
     /// Drops every cell that lies inside another one with the same slice and no more strays, which missed no
@@ -105,17 +120,80 @@ impl Feasible {
     }
 }
 
+/// The feasible set after an event, as the solver shows it: a [`Feasible`] whose cells are worked out when they are
+/// first looked at. The set after the first detection has a cell for every landmark, and few who watch a run ask for
+/// them.
+#[derive(Debug)]
+pub struct EventSet<'a> {
+    hulls: &'a [Option<Cell>],
+    source: Source<'a>,
+}
+
+#[derive(Debug)]
+enum Source<'a> {
+    Cells(&'a Feasible),
+    First(&'a FirstSet<'a>, OnceCell<Feasible>),
+}
+
+impl<'a> EventSet<'a> {
+    /// A set whose cells are there, with the hulls of its slices.
+    pub(super) fn of_cells(set: &'a Feasible, hulls: &'a [Option<Cell>]) -> Self {
+        Self { hulls, source: Source::Cells(set) }
+    }
+
+    /// The set after the first detection, with the hulls of its slices.
+    pub(super) fn of_first(set: &'a FirstSet<'a>, hulls: &'a [Option<Cell>]) -> Self {
+        Self { hulls, source: Source::First(set, OnceCell::new()) }
+    }
+
+    /// The smallest cell that holds all cells of a slice, for each slice; none for a slice without cells.
+    pub fn slice_hulls(&self) -> &[Option<Cell>] {
+        self.hulls
+    }
+}
+
+impl Deref for EventSet<'_> {
+    type Target = Feasible;
+
+    fn deref(&self) -> &Feasible {
+        match &self.source {
+            Source::Cells(set) => set,
+            Source::First(first, cells) => cells.get_or_init(|| first.to_feasible()),
+        }
+    }
+}
+
 /// A sweep's list of open boxes is cleared of those left behind when it has grown to twice its last length plus this:
 /// clearing then costs a constant share per box. What is left behind is told apart where the list is read.
 const SWEEP_SLACK: usize = 16;
 
+/// The order in which [`groups`] takes boxes.
+fn by_corner(a: &Box2, b: &Box2) -> Ordering {
+    a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo()))
+}
+
+/// Whether two boxes are within `gap_m` of each other, as [`groups`] finds it: the sums are rounded, and which numbers
+/// are added depends on which box comes first.
+#[inline]
+pub(super) fn is_near(a: Box2, b: Box2, gap_m: f64) -> bool {
+    // Of two boxes with the same corner either may be the first: they are near in any case.
+    let (first, b) = if by_corner(&a, &b).is_gt() { (b, a) } else { (a, b) };
+    is_near_next(first, b, gap_m)
+}
+
+/// As [`is_near`], for boxes in their order.
+#[inline]
+fn is_near_next(first: Box2, b: Box2, gap_m: f64) -> bool {
+    first.east.hi() + gap_m >= b.east.lo()
+        && first.north.lo() - gap_m <= b.north.hi()
+        && b.north.lo() <= first.north.hi() + gap_m
+}
+
 /// For each box the number of the box that represents its group. Each box of a group is within `gap_m` of another one.
-pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
-    let mut group: Vec<usize> = (0..boxes.len()).collect();
+pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<u32> {
+    let mut group: Vec<u32> = (0..).take(boxes.len()).collect();
     let mut ordered: Vec<(Box2, usize)> = boxes.into_iter().zip(0..).collect();
-    ordered.sort_by(|(a, _), (b, _)| {
-        a.east.lo().total_cmp(&b.east.lo()).then(a.north.lo().total_cmp(&b.north.lo()))
-    });
+    ordered.sort_by(|(a, _), (b, _)| by_corner(a, b));
     // Boxes that may still be met by one farther east.
     let mut open: Vec<(Box2, usize)> = Vec::new();
     let mut swept = 0;
@@ -125,12 +203,9 @@ pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
             swept = open.len();
         }
         for &(other, j) in &open {
-            let is_near = other.east.hi() + gap_m >= b.east.lo()
-                && other.north.lo() - gap_m <= b.north.hi()
-                && b.north.lo() <= other.north.hi() + gap_m;
-            if is_near {
+            if is_near_next(other, b, gap_m) {
                 let (mine, theirs) = (root(&mut group, i), root(&mut group, j));
-                group[mine] = theirs;
+                group[mine as usize] = theirs;
             }
         }
         open.push((b, i));
@@ -141,13 +216,14 @@ pub(super) fn groups(boxes: Vec<Box2>, gap_m: f64) -> Vec<usize> {
     group
 }
 
-/// Representative of a group, with path halving.
-fn root(group: &mut [usize], mut i: usize) -> usize {
-    while group[i] != i {
-        group[i] = group[group[i]];
-        i = group[i];
+/// Representative of a group, with path halving. Numbers are below 2³², as cells are.
+pub(super) fn root(group: &mut [u32], i: usize) -> u32 {
+    let mut i = i;
+    while group[i] as usize != i {
+        group[i] = group[group[i] as usize];
+        i = group[i] as usize;
     }
-    i
+    group[i]
 }
 
 #[cfg(test)]

@@ -1,18 +1,22 @@
 //! The forward pass from an unknown start.
 
 use super::cell::{Cell, DIRECTION_COUNT, Reaches, add_reaches, box_reaches};
-use super::feasible::{Feasible, State};
+use super::feasible::{EventSet, Feasible, State};
+use super::first::FirstSet;
 use super::history::{History, NoTrail, Trail};
+use super::second::Second;
 use super::steps::{Look, Step};
+use super::strips::Strips;
 use super::unseen::{Missed, Passage, Silence};
 use crate::interval::Box2;
 use crate::map::Landmark;
 use crate::map::index::LandmarkIndex;
 
-/// The map as the solver uses it: an R-tree and the reaches of every box.
+/// The map as the solver uses it: an R-tree, strips, and the reaches of every box.
 #[derive(Debug)]
 pub struct SolverMap {
     index: LandmarkIndex,
+    pub(super) strips: Strips,
     boxes: Vec<Box2>,
     reaches: Vec<Reaches>,
 }
@@ -20,10 +24,13 @@ pub struct SolverMap {
 impl SolverMap {
     /// Indexes `landmarks`.
     pub fn new(landmarks: &[Landmark]) -> Self {
+        let index = LandmarkIndex::new(landmarks);
+        let boxes: Vec<Box2> = landmarks.iter().map(Landmark::bounds).collect();
         Self {
-            index: LandmarkIndex::new(landmarks),
-            boxes: landmarks.iter().map(Landmark::bounds).collect(),
-            reaches: landmarks.iter().map(|landmark| box_reaches(landmark.bounds())).collect(),
+            strips: Strips::new(&boxes, &index),
+            index,
+            reaches: boxes.iter().map(|b| box_reaches(*b)).collect(),
+            boxes,
         }
     }
 
@@ -37,18 +44,16 @@ impl SolverMap {
         self.boxes[landmark]
     }
 
+    /// The reaches of the box of landmark number `landmark`.
+    pub(super) fn reaches_of(&self, landmark: usize) -> &Reaches {
+        &self.reaches[landmark]
+    }
+
     /// The positions from which landmark number `landmark` may have been seen when `look` explains its detection.
     pub(super) fn vantage(&self, landmark: usize, look: &Look) -> Reaches {
         let mut vantage = self.reaches[landmark];
         add_reaches(&mut vantage, &look.from_landmark);
         vantage
-    }
-
-    /// Calls `found` with the number and the [`SolverMap::vantage`] of every landmark that `place` allows.
-    fn for_each_vantage(&self, place: Box2, look: &Look, mut found: impl FnMut(usize, Reaches)) {
-        for j in self.index.meeting(place.minkowski_sum(look.extent)) {
-            found(j, self.vantage(j, look));
-        }
     }
 }
 
@@ -91,6 +96,46 @@ impl Outcome {
     }
 }
 
+/// The feasible set between two events of a solve.
+enum Known<'a> {
+    /// The search area, before the first sighting.
+    Start(Feasible),
+    /// After the first sighting.
+    First(FirstSet<'a>),
+    /// All cells.
+    Cells(Feasible),
+}
+
+impl Known<'_> {
+    fn len(&self) -> usize {
+        match self {
+            Self::First(first) => first.len(),
+            Self::Start(set) | Self::Cells(set) => set.states.len(),
+        }
+    }
+
+    fn places(&self, fix_size_m: f64) -> usize {
+        match self {
+            Self::First(first) => first.places(fix_size_m),
+            Self::Start(set) | Self::Cells(set) => set.places(fix_size_m),
+        }
+    }
+
+    fn slice_hulls(&self, slices: usize) -> Vec<Option<Cell>> {
+        match self {
+            Self::First(first) => first.slice_hulls(),
+            Self::Start(set) | Self::Cells(set) => set.slice_hulls(slices),
+        }
+    }
+
+    fn shown<'a>(&'a self, hulls: &'a [Option<Cell>]) -> EventSet<'a> {
+        match self {
+            Self::First(first) => EventSet::of_first(first, hulls),
+            Self::Start(set) | Self::Cells(set) => EventSet::of_cells(set, hulls),
+        }
+    }
+}
+
 /// The solver for one map and one search area.
 #[derive(Clone, Copy, Debug)]
 pub struct Solver<'a> {
@@ -110,10 +155,10 @@ pub struct Solver<'a> {
     pub fix_size_m: f64,
 }
 
-impl Solver<'_> {
+impl<'a> Solver<'a> {
     /// Runs the forward pass over `steps`, lost in the search area just before the first of them. The travel of the
     /// first step is part of the run. `visit` is called with every event's feasible set.
-    pub fn run(&self, steps: &[Step], visit: impl FnMut(EventSummary, &Feasible)) -> Outcome {
+    pub fn run(&self, steps: &[Step], visit: impl FnMut(EventSummary, &EventSet<'_>)) -> Outcome {
         self.run_where(steps, |_| true, visit)
     }
 
@@ -123,7 +168,7 @@ impl Solver<'_> {
         &self,
         steps: &[Step],
         uses: impl Fn(usize) -> bool,
-        visit: impl FnMut(EventSummary, &Feasible),
+        visit: impl FnMut(EventSummary, &EventSet<'_>),
     ) -> Outcome {
         self.solve(steps, uses, visit, &mut NoTrail)
     }
@@ -132,7 +177,7 @@ impl Solver<'_> {
     pub fn run_recorded(
         &self,
         steps: &[Step],
-        visit: impl FnMut(EventSummary, &Feasible),
+        visit: impl FnMut(EventSummary, &EventSet<'_>),
     ) -> (Outcome, History) {
         let mut history = History::default();
         let outcome = self.solve(steps, |_| true, visit, &mut history);
@@ -143,12 +188,12 @@ impl Solver<'_> {
         &self,
         steps: &[Step],
         uses: impl Fn(usize) -> bool,
-        mut visit: impl FnMut(EventSummary, &Feasible),
+        mut visit: impl FnMut(EventSummary, &EventSet<'_>),
         trail: &mut impl Trail,
     ) -> Outcome {
         let Some(first) = steps.first() else { return Outcome::default() };
         let slices = first.travel.len();
-        let mut set = Feasible {
+        let start = Feasible {
             states: (0..slices)
                 .map(|slice| State {
                     cell: self.search_area,
@@ -158,7 +203,8 @@ impl Solver<'_> {
                 })
                 .collect(),
         };
-        trail.start(&set);
+        trail.start(&start);
+        let mut known = Known::Start(start);
         let mut outcome = Outcome::default();
         let mut travel = vec![[0.0; DIRECTION_COUNT]; slices];
         let mut passages = vec![Some(Passage::NONE); slices];
@@ -170,28 +216,70 @@ impl Solver<'_> {
                 *so_far = so_far.take().zip(more.as_ref()).map(|(passage, more)| passage.then(more));
             }
             let Some(looks) = step.sighting.as_ref().filter(|_| uses(number)) else { continue };
-            let Some(next) = self.advance(&set, &travel, &passages, looks, trail) else {
+            let Some(next) = self.next(&known, &travel, &passages, looks, trail) else {
                 outcome.is_undecided = true;
                 break;
             };
-            set = next;
-            trail.event(number, &travel, looks, &set);
+            known = next;
+            if let Known::Start(set) | Known::Cells(set) = &known {
+                trail.event(number, &travel, looks, set);
+            }
             travel.fill([0.0; DIRECTION_COUNT]);
             passages.fill(Some(Passage::NONE));
+            let hulls = known.slice_hulls(slices);
             let summary = EventSummary {
                 step: number,
                 along_m: step.along_m,
-                cells: set.states.len(),
-                places: set.places(self.fix_size_m),
-                spread_m: set.spread_m(),
+                cells: known.len(),
+                places: known.places(self.fix_size_m),
+                spread_m: hulls
+                    .iter()
+                    .flatten()
+                    .copied()
+                    .reduce(|a, b| a.hull(&b))
+                    .map(|hull| hull.diameter_m()),
             };
             outcome.events.push(summary);
-            visit(summary, &set);
-            if set.states.is_empty() {
+            visit(summary, &known.shown(&hulls));
+            if summary.cells == 0 {
                 break;
             }
         }
         outcome
+    }
+
+    /// What is known after the next sighting; `None` when the cell budget is exhausted.
+    fn next<'b, T: Trail>(
+        &self,
+        known: &Known<'_>,
+        travel: &[Reaches],
+        passages: &[Option<Passage>],
+        looks: &'b [Option<Look>],
+        trail: &mut T,
+    ) -> Option<Known<'b>>
+    where
+        'a: 'b,
+    {
+        match known {
+            Known::Start(_) if !T::IS_KEPT && self.stray_budget == 0 && self.silence.is_none() => {
+                FirstSet::new(self, travel, looks).map(Known::First)
+            }
+            Known::Start(set) | Known::Cells(set) => {
+                self.advance(set, travel, passages, looks, trail).map(Known::Cells)
+            }
+            Known::First(first) => match first.advance(self, travel, looks) {
+                Second::Set { mut set, has_branched } => {
+                    if has_branched && first.len() > travel.len() {
+                        set.drop_covered();
+                    }
+                    Some(Known::Cells(set))
+                }
+                Second::Undecided => None,
+                Second::Crowded => {
+                    self.advance(&first.to_feasible(), travel, passages, looks, trail).map(Known::Cells)
+                }
+            },
+        }
     }
 
     /// Moves the set by `travel` and keeps what the sighting explains; `None` when the cell budget is exhausted.
@@ -205,6 +293,7 @@ impl Solver<'_> {
     ) -> Option<Feasible> {
         let mut next = Feasible::default();
         let mut has_branched = false;
+        let mut meeting = Vec::new();
         for (number, state) in set.states.iter().enumerate() {
             let slice = usize::from(state.slice);
             let moved = state.cell.minkowski_sum(&travel[slice]);
@@ -212,12 +301,14 @@ impl Solver<'_> {
             let state = &State { missed, ..*state };
             let before = next.states.len();
             if let Some(look) = &looks[slice] {
-                self.map.for_each_vantage(moved.bounding_box(), look, |landmark, vantage| {
-                    if let Some(cell) = moved.intersection(&vantage) {
+                let strips = &self.map.strips;
+                strips.meeting(moved.bounding_box().minkowski_sum(look.extent), &mut meeting);
+                for landmark in meeting.iter().map(|&place| strips.landmark_at(place)) {
+                    if let Some(cell) = moved.intersection(&self.map.vantage(landmark, look)) {
                         next.states.push(State { cell, ..*state });
                         trail.child(number, Some(landmark));
                     }
-                });
+                }
             }
             if state.strays < self.stray_budget {
                 next.states.push(State { cell: moved, strays: state.strays + 1, ..*state });

@@ -21,6 +21,8 @@ use super::steps::Look;
 
 /// What a solve tells about where its states come from.
 pub(super) trait Trail {
+    /// Whether anything is kept of what is told.
+    const IS_KEPT: bool = true;
     /// The states before the first event.
     fn start(&mut self, set: &Feasible);
     /// A state of the coming event was made, next in order, from state number `from` of the event before.
@@ -36,6 +38,7 @@ pub(super) trait Trail {
 pub(super) struct NoTrail;
 
 impl Trail for NoTrail {
+    const IS_KEPT: bool = false;
     #[inline]
     fn start(&mut self, _: &Feasible) {}
     #[inline]

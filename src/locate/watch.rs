@@ -5,7 +5,7 @@
 //! lost at such a moment; the *lasting* fix is the first after the last relapse.
 
 use super::cell::{Cell, DIRECTION_COUNT, add_reaches};
-use super::feasible::Feasible;
+use super::feasible::EventSet;
 use super::steps::Step;
 
 /// What a watch has seen.
@@ -37,7 +37,7 @@ impl<'a> FixWatch<'a> {
 
     /// Takes the set after the sighting of step number `step`, whose spread the caller has computed. Returns whether this
     /// is the first fix of the run.
-    pub fn see(&mut self, step: usize, set: &Feasible, spread_m: Option<f64>) -> bool {
+    pub fn see(&mut self, step: usize, set: &EventSet<'_>, spread_m: Option<f64>) -> bool {
         self.look_before(step);
         let along_m = self.steps[step].along_m;
         let had_none = self.history.first_along_m.is_none();
@@ -47,12 +47,7 @@ impl<'a> FixWatch<'a> {
         } else {
             self.lose();
         }
-        let mut hulls = vec![None; self.steps[step].travel.len()];
-        for state in &set.states {
-            let hull: &mut Option<Cell> = &mut hulls[usize::from(state.slice)];
-            *hull = Some(hull.map_or(state.cell, |h| h.hull(&state.cell)));
-        }
-        self.last = Some((step, hulls));
+        self.last = Some((step, set.slice_hulls().to_vec()));
         had_none && self.history.first_along_m.is_some()
     }
 

@@ -6,8 +6,10 @@ use super::scene::{Px, Rect};
 const DIRECTIONS: usize = 16;
 /// Candidate distances from the point, as multiples of the gap.
 const RINGS: [f64; 4] = [1.0, 2.5, 4.5, 7.0];
+/// Labels on this ring and beyond need a leader to be understood.
+const LED_FROM_RING: usize = 2;
 /// How much a covered landmark weighs against a place further down the list of candidates.
-const COVERED_WEIGHT: f64 = 8.0;
+const COVERED_WEIGHT: f64 = 4.0;
 
 /// What labels must not touch.
 pub(super) struct Taken {
@@ -82,15 +84,19 @@ impl Taken {
                 let (x, y) = (libm::cos(angle), libm::sin(angle));
                 let reach = gap * multiple;
                 let centre = (point.0 + x * reach + x * width / 2.0, point.1 + y * reach + y * height / 2.0);
-                (Rect::centred(centre, width, height), ring as f64 * 6.0 + turn as f64 * 0.5)
+                (Rect::centred(centre, width, height), ring, turn)
             })
         });
         let best = near
-            .filter(|(rect, _)| self.is_free(rect))
-            .map(|(rect, cost)| (rect, cost + COVERED_WEIGHT * self.covered(&rect) as f64))
-            .min_by(|a, b| a.1.total_cmp(&b.1));
+            .filter(|(rect, ..)| self.is_free(rect))
+            .map(|(rect, ring, turn)| {
+                let cost = ring as f64 * 6.0 + turn as f64 * 0.5;
+                (rect, ring, cost + COVERED_WEIGHT * self.covered(&rect) as f64)
+            })
+            .min_by(|a, b| a.2.total_cmp(&b.2));
         match best {
-            Some((rect, _)) => Some((rect, None)),
+            Some((rect, ring, _)) if ring >= LED_FROM_RING => Some((rect, self.leader(point, &rect))),
+            Some((rect, ..)) => Some((rect, None)),
             None => self.anywhere(point, (width, height)),
         }
     }

@@ -12,7 +12,7 @@ use fixability::detect::{
 };
 use fixability::dive::ErrorShape;
 use fixability::locate::cell::Cell;
-use fixability::locate::{ComposedRun, Feasible, steps};
+use fixability::locate::{ComposedRun, EventSet, Feasible, steps};
 use nalgebra::Vector2;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
@@ -149,7 +149,7 @@ impl Arena {
         let bounds = scaled(random.bounds, composed_share);
         let run = ComposedRun::new(&random.scene(), &random.plan, &[start_m], &bounds);
         let mut composed = Vec::new();
-        let outcome = run.solve(&random.solver(), 0, start_m, |along_m, set: &Feasible| {
+        let outcome = run.solve(&random.solver(), 0, start_m, |along_m, set: &EventSet<'_>| {
             composed.push((along_m, set.states.iter().map(|state| state.cell).collect()));
         });
         let guaranteed_m = outcome.fix_m?;
@@ -194,7 +194,7 @@ impl Arena {
         let mut seen: Vec<(usize, Feasible)> = Vec::new();
         let run = solver.run(&steps[start..], |summary, set| {
             if is_compared {
-                seen.push((start + summary.step, set.clone()));
+                seen.push((start + summary.step, Feasible::clone(set)));
             }
         });
         if run.is_undecided {

@@ -152,7 +152,7 @@ fn run_scene_with(
         let run = solver.run(&steps[start..], |summary, set| {
             let step = start + summary.step;
             tally.lost += usize::from(!set.contains(dive.truth[step].position));
-            seen.push((step, set.clone()));
+            seen.push((step, Feasible::clone(set)));
         });
         if run.is_undecided {
             continue;

@@ -29,6 +29,7 @@ mod one_dimension;
 mod oracle;
 mod pack;
 mod page;
+mod plain_way;
 mod projection;
 mod readme;
 mod remap;

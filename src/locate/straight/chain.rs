@@ -99,7 +99,7 @@ impl Run {
                 add_reaches(total, more);
             }
         }
-        let around = sets.looks.iter().map(|look| negated(look.extent)).fold(Box2::EMPTY, |all, one| Box2 {
+        let around = sets.looks.iter().map(|look| -look.extent).fold(Box2::EMPTY, |all, one| Box2 {
             east: all.east.hull(one.east),
             north: all.north.hull(one.north),
         });
@@ -240,8 +240,4 @@ pub(super) fn places(cells: &[(usize, Cell)], fix_size_m: f64) -> usize {
         })
         .collect();
     Feasible { states }.places(fix_size_m)
-}
-
-fn negated(b: Box2) -> Box2 {
-    Box2 { east: -b.east, north: -b.north }
 }

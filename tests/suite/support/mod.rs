@@ -3,5 +3,7 @@
 pub mod demo;
 pub mod exact;
 pub mod outside;
+#[allow(dead_code, reason = "the benchmarks use more of it")]
+pub mod plain;
 pub mod program;
 pub mod scenes;
