@@ -86,10 +86,7 @@ fn words(report: &AreaReport, chart: AreaChart) -> (&'static str, String) {
 
 /// The classes of distance; none for shares.
 fn scale_of(report: &AreaReport, chart: AreaChart) -> Option<Scale> {
-    // Both distance charts have the same classes, so that they can be laid side by side.
-    let values: Vec<f64> =
-        report.cells.iter().flat_map(|cell| [cell.worst_m, cell.best_m]).flatten().collect();
-    (chart != AreaChart::Share).then(|| Scale::of_guaranteed(&values, report.parameters.required_fix_m))
+    (chart != AreaChart::Share).then(|| Scale::of_guaranteed(report.parameters.required_fix_m))
 }
 
 /// How a cell is drawn. A cell is undecided only when an undecided heading may change what is drawn.

@@ -1,8 +1,8 @@
-//! Classes of fix distance: five steps with round limits, the required distance always a limit.
+//! Classes of fix distance: five steps that follow from the required distance alone, so that a colour means the same in every
+//! chart of a dive. Three classes meet the requirement, the fourth ends at twice it, the last is open.
 
 use super::colours::CLASSES;
 use super::nice;
-use crate::interval::larger;
 use crate::report::{LinesReport, SegmentReport};
 
 /// Share of dives from which "undecided" decides how a segment is drawn.
@@ -34,7 +34,7 @@ pub(super) enum Finding {
 #[derive(Clone, Debug, PartialEq)]
 pub(super) struct Scale {
     pub(super) quantity: Quantity,
-    /// Upper limits, metres, ascending; a value belongs to the first class whose limit it does not exceed.
+    /// Upper limits, metres, ascending, the last infinite; a value belongs to the first class whose limit it does not exceed.
     pub(super) limits_m: [f64; CLASSES],
     pub(super) required_m: f64,
 }
@@ -45,14 +45,13 @@ impl Scale {
         let segments = || report.lines.iter().flat_map(|line| &line.segments);
         let guaranteed = segments().any(|segment| segment.guaranteed.is_some());
         let quantity = if guaranteed { Quantity::Guaranteed } else { Quantity::Estimated };
-        let values: Vec<f64> = segments().filter_map(|segment| value_m(quantity, segment)).collect();
         let required_m = report.parameters.required_fix_m;
-        Self { quantity, limits_m: limits(&values, required_m), required_m }
+        Self { quantity, limits_m: limits(required_m), required_m }
     }
 
-    /// The scale for guaranteed distances `values`.
-    pub(super) fn of_guaranteed(values: &[f64], required_m: f64) -> Self {
-        Self { quantity: Quantity::Guaranteed, limits_m: limits(values, required_m), required_m }
+    /// The scale for guaranteed distances.
+    pub(super) fn of_guaranteed(required_m: f64) -> Self {
+        Self { quantity: Quantity::Guaranteed, limits_m: limits(required_m), required_m }
     }
 
     /// How a distance is drawn.
@@ -90,6 +89,7 @@ impl Scale {
         let written = |limit: f64| nice::short(limit, 2);
         match class {
             0 => format!("up to {} m", written(self.limits_m[0])),
+            _ if class + 1 == CLASSES => format!("over {} m", written(self.limits_m[class - 1])),
             _ => format!("{} – {} m", written(self.limits_m[class - 1]), written(self.limits_m[class])),
         }
     }
@@ -107,50 +107,10 @@ fn value_m(quantity: Quantity, segment: &SegmentReport) -> Option<f64> {
     }
 }
 
-/// Round limits that hold all `values`, with `required_m` (positive) either among them or above them all.
-fn limits(values: &[f64], required_m: f64) -> [f64; CLASSES] {
-    let Some(most) = values.iter().copied().reduce(larger).filter(|&most| most > 0.0) else {
-        return within(required_m, required_m);
-    };
-    if most <= required_m {
-        return within(most, required_m);
-    }
-    // Three classes meet the requirement and two do not; when no segment meets it, the others share what is left.
-    let below = if values.iter().any(|&value| value <= required_m) { 3 } else { 1 };
+/// The limits for a required distance (positive): two round ones below it, itself, twice it, and none.
+fn limits(required_m: f64) -> [f64; CLASSES] {
     let step = nice::nearest(required_m / 3.0);
-    let upper = above(most, required_m, CLASSES - below);
-    std::array::from_fn(|class| match class + 1 {
-        number if number < below => step * number as f64,
-        number if number == below => required_m,
-        number => upper[number - below - 1],
-    })
-}
-
-/// Limits when every value meets the requirement.
-fn within(most: f64, required_m: f64) -> [f64; CLASSES] {
-    let count = CLASSES as f64;
-    let step = nice::round_up(most / count);
-    if step * count <= required_m {
-        return std::array::from_fn(|class| step * (class + 1) as f64);
-    }
-    // Even round steps would pass the requirement; let it be the last limit and round the others to a fine grain.
-    let grain = nice::step_down(required_m / 50.0);
-    std::array::from_fn(|class| {
-        if class + 1 == CLASSES {
-            required_m
-        } else {
-            libm::round(required_m * (class + 1) as f64 / count / grain) * grain
-        }
-    })
-}
-
-/// `count` round limits above the requirement, the last at least `most`.
-fn above(most: f64, required_m: f64, count: usize) -> Vec<f64> {
-    let width = (most - required_m) / count as f64;
-    // Classes are wider than the grain, so rounding keeps their limits apart and above the requirement.
-    let grain = nice::step_down(0.7 * width);
-    let inner = (1..count).map(|number| libm::round((required_m + width * number as f64) / grain) * grain);
-    inner.chain([libm::ceil(most / grain) * grain]).collect()
+    [step, 2.0 * step, required_m, 2.0 * required_m, f64::INFINITY]
 }
 
 #[cfg(test)]
@@ -161,24 +121,24 @@ mod tests {
 
     proptest! {
         #[test]
-        fn limits_ascend_hold_every_value_and_never_split_at_the_requirement(
-            values in prop::collection::vec(0.01..50_000.0_f64, 0..30),
-            required_m in 1.0..20_000.0_f64,
-        ) {
-            let limits = limits(&values, required_m);
-            prop_assert!(limits[0] > 0.0);
+        fn limits_ascend_and_the_requirement_is_the_third(required_m in 1.0..20_000.0_f64) {
+            let limits = limits(required_m);
+            prop_assert!(limits[0] > 0.0 && limits[2] == required_m);
             prop_assert!(limits.windows(2).all(|pair| pair[0] < pair[1]), "{limits:?}");
-            let last = limits[CLASSES - 1];
-            // A limit that is a sum of round steps may round off in its last digits.
-            prop_assert!(values.iter().all(|&value| value <= last * (1.0 + 1e-9)), "{limits:?}");
-            prop_assert!(limits.contains(&required_m) || last <= required_m, "{limits:?}");
         }
     }
 
     #[test]
     fn limits_are_round() {
-        assert_eq!(limits(&[80.0, 420.0, 600.0], 450.0), [150.0, 300.0, 450.0, 550.0, 600.0]);
-        assert_eq!(limits(&[80.0, 190.0], 450.0), [40.0, 80.0, 120.0, 160.0, 200.0]);
-        assert_eq!(limits(&[500.0, 880.0], 450.0)[0], 450.0);
+        assert_eq!(limits(450.0), [150.0, 300.0, 450.0, 900.0, f64::INFINITY]);
+        assert_eq!(limits(100.0)[..2], [30.0, 60.0]);
+    }
+
+    #[test]
+    fn every_class_has_its_words() {
+        let scale = Scale::of_guaranteed(450.0);
+        let labels: Vec<String> = (0..CLASSES).map(|class| scale.label(class)).collect();
+        assert_eq!(labels, ["up to 150 m", "150 – 300 m", "300 – 450 m", "450 – 900 m", "over 900 m"]);
+        assert_eq!(scale.class_of(5e6), Finding::Class(CLASSES - 1));
     }
 }

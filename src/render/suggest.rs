@@ -34,8 +34,7 @@ pub(super) fn scene(report: &SuggestReport, size: &ChartSize) -> Result<Scene, R
         Rect::new(sheet.inner.right - 404.0 * k, top + 34.0 * k, sheet.inner.right, bottom - 16.0 * k);
     let frame = fit_frame(&sheet, &report.provenance, extent, (top, bottom), column.left - 36.0 * k);
 
-    let fixes: Vec<f64> = report.suggestions.iter().map(|s| s.fix_m).collect();
-    let scale = Scale::of_guaranteed(&fixes, report.parameters.required_fix_m);
+    let scale = Scale::of_guaranteed(report.parameters.required_fix_m);
     frame.draw_ground(&mut sheet);
     for suggestion in &report.suggestions {
         let disc = frame.rect.clip_polygon(&disc_px(&frame, report, suggestion));

@@ -186,7 +186,7 @@ impl Picture {
 
 /// One line whose five segments have the five classes.
 fn five_classes() -> LinesReport {
-    let values = [100.0, 250.0, 400.0, 480.0, 590.0];
+    let values = [100.0, 250.0, 400.0, 480.0, 950.0];
     let corners = [reports::at(0.0, 0.0), reports::at(250.0, 0.0)];
     let line = reports::line("A", 1, &corners, |n, _| reports::estimated(Some(values[n]), 0.0));
     reports::report(vec![line], Vec::new())

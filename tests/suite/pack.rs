@@ -228,6 +228,23 @@ fn a_kill_leaves_the_old_pack_or_the_new_one() {
     whole(&target);
 }
 
+/// Waits until the program catches interrupts: where the system tells of it, as soon as it does.
+#[cfg(unix)]
+fn wait_for_handler(child: &Child) {
+    const INTERRUPT: u64 = 1 << 1;
+    let catches = || {
+        let status = fs::read_to_string(format!("/proc/{}/status", child.id())).ok()?;
+        let caught = status.lines().find_map(|line| line.strip_prefix("SigCgt:"))?;
+        Some(u64::from_str_radix(caught.trim(), 16).ok()? & INTERRUPT != 0)
+    };
+    while catches() == Some(false) {
+        std::thread::sleep(Duration::from_millis(5));
+    }
+    if catches().is_none() {
+        std::thread::sleep(Duration::from_secs(2));
+    }
+}
+
 #[cfg(unix)]
 #[test]
 fn an_interrupt_ends_with_its_code_and_leaves_nothing_half() {
@@ -238,12 +255,12 @@ fn an_interrupt_ends_with_its_code_and_leaves_nothing_half() {
             Command::new("kill").args([name, &child.id().to_string()]).status().expect("kill is there");
         assert!(sent.success());
     };
-    // A job of several seconds, interrupted early: after the handler stands, which the check of the place tells.
+    // A job of several seconds, interrupted as soon as the program listens.
     let dive = String::from_utf8(place.bytes("dive.toml")).unwrap();
     let place = place.write("long.toml", &dive.replace("draws = 4", "draws = 4000"));
     for (name, code) in [("-INT", 130), ("-TERM", 143)] {
         let mut child = start(&place, "brief long.toml --out pack --force");
-        std::thread::sleep(Duration::from_millis(700));
+        wait_for_handler(&child);
         signal(&child, name);
         assert_eq!(child.wait().unwrap().code(), Some(code), "{name}");
         assert_eq!(seed(&place.path("pack")), 1);

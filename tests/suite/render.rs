@@ -119,7 +119,7 @@ fn papers_have_their_pixels_and_say_their_resolution() {
     assert_eq!((density.xppu, density.yppu), (11_811, 11_811));
     let picture = Picture::decode(&bytes);
     assert_eq!((picture.width, picture.height), (4961, 3508));
-    assert!(picture.count(ramp()[4]) > 50_000, "the line is drawn");
+    assert!(picture.count(ramp()[0]) > 50_000, "the line is drawn");
 }
 
 #[test]
@@ -168,8 +168,8 @@ fn every_class_of_the_legend_has_its_colour() {
 
 #[test]
 fn segments_take_the_colour_of_their_class() {
-    // Required is 450 m, so the limits are 150, 300, 450 and two above.
-    let values = [100.0, 250.0, 400.0, 480.0, 590.0];
+    // Required is 450 m, so the limits are 150, 300, 450, 900 and none.
+    let values = [100.0, 250.0, 400.0, 480.0, 950.0];
     let corners = [reports::at(0.0, 0.0), reports::at(250.0, 0.0)];
     let line = reports::line("A", 1, &corners, |n, _| reports::estimated(Some(values[n]), 0.0));
     let picture = Picture::lines(&reports::report(vec![line], Vec::new()));
@@ -183,7 +183,7 @@ fn segments_take_the_colour_of_their_class() {
 
 #[test]
 fn segments_without_a_fix_are_hatched_and_undecided_ones_dotted() {
-    let (y, columns) = Picture::lines(&uniform(Some(100.0), 0.0)).longest_run(ramp()[4]);
+    let (y, columns) = Picture::lines(&uniform(Some(100.0), 0.0)).longest_run(ramp()[0]);
     assert!(columns.len() > 500, "the line spans the map");
     let changes = |picture: &Picture| {
         let dark: Vec<bool> = picture.row(y)[columns.clone()].iter().map(|&p| luma(p) < 128.0).collect();
