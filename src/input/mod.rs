@@ -102,11 +102,8 @@ impl InputText {
         };
         let problem = match fault {
             ReadFault::NotFound => {
-                let advice = if path == name {
-                    ""
-                } else {
-                    "check the name; it is relative to the folder of the dive file"
-                };
+                let advice =
+                    if path == name { "" } else { "check the name; it is relative to the dive file" };
                 Problem::new(name, format!("no such file (looked for {})", path.display())).advice(advice)
             }
             ReadFault::NotRegular(what) => Problem::new(name, format!("is {what}"))

@@ -10,7 +10,7 @@ use fixability::locate::steps;
 use fixability::track::plan::Plan;
 
 use crate::support::outside::left_out;
-use crate::support::program::{Workplace, project};
+use crate::support::program::{Ran, Workplace, project};
 
 /// From a forest to a seabed: the median distance to the nearest neighbour becomes 32 m.
 const SCALE: f64 = 10.0;
@@ -82,13 +82,23 @@ fn job(checks: &str) -> Option<Workplace> {
 #[test]
 fn a_whole_job_in_a_clustered_field_runs_to_its_end() {
     let Some(place) = job("a whole job in a clustered field") else { return };
-    let ran = place.run("lines dive.toml --out out --quiet").expect(0);
+    // Four unexplained detections where neighbours stand 32 m apart: the program may run out of budget, and then says so.
+    let decided = |ran: &Ran| {
+        assert!(matches!(ran.code, Some(0 | 5)), "{ran:?}");
+        assert_eq!(ran.code == Some(5), ran.stderr.contains("undecided"), "{}", ran.stderr);
+    };
+    let ran = place.run("lines dive.toml --out out");
+    decided(&ran);
     assert!(ran.stdout.contains("thick") && ran.stdout.contains("void"), "{}", ran.stdout);
-    assert!(place.names("out").contains(&"lines.json".to_owned()));
-    let report: serde_json::Value = serde_json::from_slice(&place.bytes("out/lines.json")).unwrap();
-    assert_eq!(report["lines"].as_array().expect("lines").len(), 2);
-    let ran = place.run("lookalikes dive.toml --quiet").expect(0);
-    assert!(ran.stdout.contains("look-alike"), "{}", ran.stdout);
+    let table = place.bytes("out/lines.csv");
+    let mut reader = csv::Reader::from_reader(table.as_slice());
+    let header = reader.headers().expect("a header").clone();
+    let column = |name: &str| header.iter().position(|h| h == name).unwrap_or_else(|| panic!("no {name}"));
+    let (median, undecided) = (column("estimated_median_fix_m"), column("undecided_share"));
+    let rows: Vec<csv::StringRecord> = reader.records().map(|row| row.expect("a row")).collect();
+    assert!(rows.len() >= 14, "{} segments", rows.len());
+    assert!(rows.iter().all(|row| &row[undecided] == "0"), "a simulated dive is undecided");
+    assert!(rows.iter().any(|row| !row[median].is_empty()), "no segment with a median fix distance");
 }
 
 /// Up to the stray that exceeds the budget, the truth is inside the feasible set at every event.
