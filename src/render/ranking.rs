@@ -88,7 +88,7 @@ fn roomy_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
 /// Everything on one line.
 fn tight_row(sheet: &mut Sheet, at: Rect, line: &LineReport) {
     let (k, font) = (sheet.sizes.k, sheet.sizes.body());
-    let bar_left = at.left + 220.0 * k;
+    let bar_left = at.left + 200.0 * k;
     let name = name(sheet, at, line, font, bar_left - at.left - 42.0 * k);
     let (_, middle) = name.centre();
     let bar = Rect::new(bar_left, middle - 7.0 * k, bar_left + 36.0 * k, middle + 7.0 * k);
