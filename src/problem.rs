@@ -28,7 +28,8 @@ pub struct Problem {
 const TEXT_MAX: usize = 2000;
 
 /// Text from a file as it may be printed: control characters and marks that turn the direction of writing are spelled out,
-/// so that nothing in a file can steer a terminal or split a message, and what is longer than [`TEXT_MAX`] is cut visibly.
+/// so that nothing in a file can steer a terminal or split a message, and what is longer than `TEXT_MAX` characters is cut
+/// visibly.
 pub fn printable(text: &str) -> String {
     let is_plain = |c: char| {
         !c.is_control()

@@ -2,9 +2,14 @@
 //!
 //! *Sources* stand beside each check.
 
+use fixability::detect::{Log, LogEvent, ReportedPiece};
 use fixability::interval::paving::{Part, Paving, Verdict, pave};
 use fixability::interval::{Box2, Interval, IntervalUnion, relaxed_intersection};
+use fixability::locate::{Bounds, steps};
+use fixability::vehicle::DeadReckoning;
 use proptest::prelude::*;
+
+use crate::support::scenes::open_field;
 
 /// The six intervals of the worked example in the article "Relaxed intersection" of an open encyclopedia (read
 /// there; the table was recomputed by counting).
@@ -215,4 +220,30 @@ fn the_bounded_error_parameter_problem_has_the_known_area() {
     assert!(area.width() < 2e-5, "{area:?}");
     let sum = paving.inner_area() + paving.boundary_area() + paving.outside_area();
     assert!(sum.contains(1.0) && sum.width() < 1e-9);
+}
+
+/// What dead reckoning may be off after a straight run (arithmetic): 1 degree over 1 km is 17.45 m to either side, 0.1 % of
+/// 10 km is 10 m along, 6000 s in an unknown current of 0.1 m/s is 600 m in every direction.
+#[test]
+fn travel_reaches_as_far_as_dead_reckoning_may_be_off() {
+    let reach_of = |length_m: f64, duration_s: f64, dead_reckoning: DeadReckoning| {
+        let travel = ReportedPiece { length_m, heading_rad: 0.0, duration_s, is_blind: false };
+        let event = LogEvent { along_m: length_m, time_s: duration_s, travel: vec![travel], sighting: None };
+        let bounds = Bounds { dead_reckoning, heading_slices: 1, ..open_field(10).bounds };
+        // East and north of the reaches: directions 0 and 8.
+        let reach = steps(&Log { events: vec![event] }, &bounds)[0].travel[0];
+        (reach[0], reach[8])
+    };
+    let none =
+        DeadReckoning { scale_error: 0.0, heading_bias_rad: 0.0, heading_noise_rad: 0.0, drift_mps: 0.0 };
+    let holds = |found: f64, exact: f64| found >= exact && found < exact + 1e-4;
+    let turned = reach_of(1000.0, 0.0, DeadReckoning { heading_noise_rad: 1f64.to_radians(), ..none });
+    assert!(
+        holds(turned.0, 1000.0 * 1f64.to_radians().sin()) && (turned.0 - 17.4524).abs() < 2e-4,
+        "{turned:?}"
+    );
+    let scaled = reach_of(10_000.0, 0.0, DeadReckoning { scale_error: 0.001, ..none });
+    assert!(holds(scaled.1, 10_010.0), "{scaled:?}");
+    let drifted = reach_of(0.0, 6000.0, DeadReckoning { drift_mps: 0.1, ..none });
+    assert!(holds(drifted.0, 600.0) && holds(drifted.1, 600.0), "{drifted:?}");
 }

@@ -234,7 +234,7 @@ fn a_hundred_thousand_levels() {
 }
 
 /// The reader of XML below the GPX reader copies every open namespace for every element, so depth times count would be the
-/// cost: 3 MB took hours.
+/// cost: megabytes would take hours (reckoned from the number of copies, not timed).
 #[test]
 fn gpx_and_kml_limit_levels_attributes_and_namespaces() {
     let many = |piece: &dyn Fn(usize) -> String| (0..65).map(piece).collect::<String>();
