@@ -35,6 +35,12 @@ impl Box2 {
         })
     }
 
+    /// Smallest box that holds both (exact).
+    #[must_use]
+    pub fn hull(self, other: Self) -> Self {
+        Self { east: self.east.hull(other.east), north: self.north.hull(other.north) }
+    }
+
     /// Whether no point is inside.
     pub fn is_empty(self) -> bool {
         self.east.is_empty() || self.north.is_empty()

@@ -156,10 +156,11 @@ impl Paving {
             .into_iter()
             .map(|members| {
                 let hull = |wanted: &dyn Fn(bool) -> bool| {
-                    members.iter().map(|i| boxes[*i]).filter(|(_, is_inner)| wanted(*is_inner)).fold(
-                        Box2::EMPTY,
-                        |hull, (b, _)| Box2 { east: hull.east.hull(b.east), north: hull.north.hull(b.north) },
-                    )
+                    members
+                        .iter()
+                        .map(|i| boxes[*i])
+                        .filter(|(_, is_inner)| wanted(*is_inner))
+                        .fold(Box2::EMPTY, |hull, (b, _)| hull.hull(b))
                 };
                 let of_kind = |inner: bool| {
                     area_of(members.iter().map(|i| &boxes[*i]).filter(|(_, k)| *k == inner).map(|(b, _)| b))

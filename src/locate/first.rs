@@ -76,7 +76,7 @@ impl<'a> FirstSet<'a> {
             for ((room, area), look) in room.iter_mut().zip(moved.reaches()).zip(&look.from_landmark) {
                 *room = smaller(*room, area - look - SLACK_M);
             }
-            near = hull(near, moved.bounding_box().minkowski_sum(look.extent));
+            near = near.hull(moved.bounding_box().minkowski_sum(look.extent));
         }
         let has_whole = pairs().next().is_some() && slices_are_one_place(looks, solver.fix_size_m);
         let whole: Vec<Range<usize>> = (0..strips.count())
@@ -174,7 +174,7 @@ impl<'a> FirstSet<'a> {
             }
         };
         // Where a vantage lies, less its box: over all slices.
-        let around = looks.iter().fold(Box2::EMPTY, |all, look| hull(all, -look.extent));
+        let around = looks.iter().fold(Box2::EMPTY, |all, look| all.hull(-look.extent));
         let gap = Interval::around(0.0, gap_m + SLACK_M);
         let gap = Box2 { east: gap, north: gap };
         let apart = around.minkowski_sum(-around).minkowski_sum(gap);
@@ -239,10 +239,6 @@ impl<'a> FirstSet<'a> {
 
 pub(super) fn state(cell: Cell, slice: u16) -> State {
     State { cell, slice, strays: 0, missed: Missed::NONE }
-}
-
-pub(super) fn hull(a: Box2, b: Box2) -> Box2 {
-    Box2 { east: a.east.hull(b.east), north: a.north.hull(b.north) }
 }
 
 /// The greatest x · n over the northings of a strip.

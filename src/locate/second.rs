@@ -10,7 +10,7 @@
 
 use super::cell::{Cell, DIRECTION_COUNT, HALF, Reaches};
 use super::feasible::Feasible;
-use super::first::{FirstSet, SLACK_M, hull, state};
+use super::first::{FirstSet, SLACK_M, state};
 use super::forward::Solver;
 use super::steps::Look;
 use crate::interval::{Box2, Interval};
@@ -109,7 +109,7 @@ impl FirstSet<'_> {
         for (slice, (travel, looks)) in (0..).zip(travel.iter().zip(self.looks.iter().zip(looks))) {
             let (Some(first), Some(second)) = looks else { continue };
             let moved = Cell::from_reaches(first.from_landmark).minkowski_sum(travel);
-            window = hull(window, moved.bounding_box().minkowski_sum(second.extent));
+            window = window.hull(moved.bounding_box().minkowski_sum(second.extent));
             let against = |i: usize| second.from_landmark[(i + HALF) % DIRECTION_COUNT];
             let limit = std::array::from_fn(|i| moved.reaches()[i] + against(i) + SLACK_M);
             limits.push((slice, limit));

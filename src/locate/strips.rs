@@ -91,9 +91,7 @@ impl Strips {
             });
             begin += strip.len();
         }
-        let everything = boxes
-            .iter()
-            .fold(Box2::EMPTY, |all, b| Box2 { east: all.east.hull(b.east), north: all.north.hull(b.north) });
+        let everything = boxes.iter().copied().fold(Box2::EMPTY, Box2::hull);
         let mut order_of = vec![0u32; boxes.len()];
         if !boxes.is_empty() {
             for (order, j) in (0..).zip(index.meeting(everything)) {

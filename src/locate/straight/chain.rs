@@ -99,10 +99,7 @@ impl Run {
                 add_reaches(total, more);
             }
         }
-        let around = sets.looks.iter().map(|look| -look.extent).fold(Box2::EMPTY, |all, one| Box2 {
-            east: all.east.hull(one.east),
-            north: all.north.hull(one.north),
-        });
+        let around = sets.looks.iter().map(|look| -look.extent).fold(Box2::EMPTY, Box2::hull);
         let along_m = sighting.window.hi();
         let (sin, cos) = (libm::sin(terms.heading_rad), libm::cos(terms.heading_rad));
         let position = LocalPoint::new(self.start.east_m + along_m * sin, self.start.north_m + along_m * cos);

@@ -310,7 +310,7 @@ impl<'a, 'f> Tree<'a, 'f> {
         let outer = near
             .iter()
             .map(|&number| run.outer_box(self.field, self.terms, chains.chain(number)[chains.length - 1]))
-            .reduce(|a, b| Box2 { east: a.east.hull(b.east), north: a.north.hull(b.north) });
+            .reduce(Box2::hull);
         let fits = outer.is_some_and(|outer| {
             let diagonal = libm::hypot(outer.east.width(), outer.north.width());
             diagonal + TEST_SLACK_M <= self.field.solver.fix_size_m
