@@ -8,12 +8,13 @@ use fixability::assess::Setup;
 use fixability::dive::Dive;
 use fixability::frame::LocalPoint;
 use fixability::map::Landmark;
-use fixability::render::{self, ChartSize, Rect};
+use fixability::render::{self, ChartSize};
 use fixability::report::{LookAlikeKind, LookAlikesReport};
 use fixability::vehicle::{DeadReckoning, Sonar, SonarKind};
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::support::layout::assert_clear;
 use crate::support::program::{Workplace, project};
 
 type Node = (u32, u32);
@@ -603,16 +604,6 @@ fn grid_and_row_of_the_demo_come_out_on_top() {
     assert!(report.in_layouts > 50);
 }
 
-fn assert_clear(texts: &[render::PlacedText], size: &ChartSize) {
-    let canvas = Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));
-    for (index, text) in texts.iter().enumerate() {
-        assert!(canvas.contains(&text.rect), "clipped: {text:?}");
-        for other in &texts[..index] {
-            assert!(!text.rect.overlaps(&other.rect), "{text:?} lies on {other:?}");
-        }
-    }
-}
-
 #[test]
 fn charts_keep_their_texts_apart() {
     let demo = Dive::read(&project("demo-data/dive.toml")).unwrap();
@@ -626,8 +617,8 @@ fn charts_keep_their_texts_apart() {
             let size = ChartSize::pixels(width_px, height_px);
             let texts = render::lookalikes_layout(&report, &size).unwrap();
             assert!(texts.len() > 15);
-            assert_clear(&texts, &size);
-            assert_clear(&render::lookalike_panels_layout(&report, &size).unwrap(), &size);
+            assert_clear(&texts, &size, "map");
+            assert_clear(&render::lookalike_panels_layout(&report, &size).unwrap(), &size, "panels");
         }
         let bytes = render::lookalikes_png(&report, &ChartSize::default()).unwrap();
         assert_eq!(bytes, render::lookalikes_png(&report, &ChartSize::default()).unwrap());

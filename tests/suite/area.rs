@@ -10,7 +10,7 @@ use fixability::export::{AreaCsv, AreaJson, Exporter};
 use fixability::frame::LocalPoint;
 use fixability::locate::{Bounds, StraightOutcome, StraightRuns, steps};
 use fixability::map::Landmark;
-use fixability::render::{AreaChart, ChartSize, Rect, area_layout, area_png, ramp};
+use fixability::render::{AreaChart, ChartSize, area_layout, area_png, ramp};
 use fixability::report::{AreaReport, Cause, NoFixCounts, RunOutcome};
 use fixability::track::plan::Plan;
 use fixability::vehicle::SonarKind;
@@ -18,6 +18,7 @@ use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
 use crate::guarantee::scaled;
+use crate::support::layout::assert_clear;
 use crate::support::program::{Workplace, project};
 
 fn read(path: &str) -> Dive {
@@ -395,13 +396,7 @@ fn texts_of_the_charts_keep_clear_of_each_other() {
         let size = ChartSize::pixels(width_px, height_px);
         for chart in [AreaChart::Worst, AreaChart::Best, AreaChart::Share] {
             let texts = area_layout(&report, chart, &size).unwrap();
-            let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));
-            for (index, text) in texts.iter().enumerate() {
-                assert!(canvas.contains(&text.rect), "{chart:?} {size:?}: clipped: {text:?}");
-                for other in &texts[..index] {
-                    assert!(!text.rect.overlaps(&other.rect), "{chart:?} {size:?}: {text:?} on {other:?}");
-                }
-            }
+            assert_clear(&texts, &size, &format!("{chart:?} {size:?}"));
             if width_px > 1000 {
                 let cut: Vec<_> = texts.iter().filter(|text| text.text.ends_with('…')).collect();
                 assert!(cut.is_empty(), "{chart:?} {size:?}: {cut:?}");

@@ -6,7 +6,7 @@ use fixability::assess::{self, Setup, TraceRequest};
 use fixability::dive::{AreaOptions, Dive};
 use fixability::frame::{Frame, LocalPoint};
 use fixability::map::Landmark;
-use fixability::render::{self, AreaChart, ChartSize, Paper, PlacedText, Rect};
+use fixability::render::{self, AreaChart, ChartSize, Paper, PlacedText};
 use fixability::report::{
     AreaReport, LinesReport, LookAlikesReport, RemapReport, SensitivityReport, SuggestReport, TraceReport,
 };
@@ -14,6 +14,7 @@ use fixability::track::Line;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::support::layout::assert_clear;
 use crate::support::program::project;
 
 /// Names that are awkward to draw: long, of other scripts, from right to left, with marks on marks, without spaces, with
@@ -175,15 +176,11 @@ fn case_39_no_text_overlaps_another_or_leaves_the_canvas_and_cuts_show() {
             .collect();
         found += reports.look_alikes.look_alikes.len();
         for size in sizes() {
-            let canvas = Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));
             for (chart, texts) in reports.layouts(&size) {
                 let what = format!("{chart}, seed {seed}, {size:?}");
                 assert!(texts.len() > 10, "{what}");
-                for (index, text) in texts.iter().enumerate() {
-                    assert!(canvas.contains(&text.rect), "{what}: clipped: {text:?}");
-                    for other in &texts[..index] {
-                        assert!(!text.rect.overlaps(&other.rect), "{what}: {text:?} lies on {other:?}");
-                    }
+                assert_clear(&texts, &size, &what);
+                for text in &texts {
                     // Every beginning of a name is the whole of it or ends visibly.
                     let is_part = names.iter().any(|name| name.starts_with(&text.text) && *name != text.text);
                     let is_whole = names.contains(&text.text) || text.text.chars().count() < 4;

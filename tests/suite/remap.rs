@@ -7,6 +7,7 @@ use fixability::report::{RemapCause, RemapReport};
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::support::layout::assert_clear;
 use crate::support::program::{Workplace, project};
 
 /// A dive on a square site of `side_m` in local metres. `errors` replaces lines of the default error model.
@@ -373,14 +374,7 @@ fn the_chart_is_legible() {
     for size in [(1754, 1240), (2400, 1000), (1000, 1400)] {
         let size = fixability::render::ChartSize::pixels(size.0, size.1);
         let texts = fixability::render::remap_layout(&report, &size).unwrap();
-        let sheet =
-            fixability::render::Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));
-        for (i, text) in texts.iter().enumerate() {
-            assert!(sheet.contains(&text.rect), "{text:?}");
-            for other in &texts[i + 1..] {
-                assert!(!text.rect.overlaps(&other.rect), "{text:?} {other:?}");
-            }
-        }
+        assert_clear(&texts, &size, &format!("{size:?}"));
         assert!(texts.iter().any(|text| text.text.contains("look-alike")));
     }
 }

@@ -4,10 +4,11 @@
 
 use std::io::Cursor;
 
-use fixability::render::{self, CLASSES, ChartSize, Paper, PlacedText, Rect, RenderError, ramp};
+use fixability::render::{self, CLASSES, ChartSize, Paper, PlacedText, RenderError, ramp};
 use fixability::report::{CAUTION, LinesReport};
 
 use crate::reports;
+use crate::support::layout;
 
 struct Picture {
     width: usize,
@@ -70,15 +71,9 @@ fn uniform(p95_m: Option<f64>, undecided_share: f64) -> LinesReport {
 
 /// Panics unless all texts lie on the canvas and none overlaps another.
 fn assert_clear(texts: &[PlacedText], size: &ChartSize, what: &str) {
-    let canvas = Rect::new(0.0, 0.0, f64::from(size.width_px), f64::from(size.height_px));
     assert!(texts.len() > 20, "{what}: the layout has its texts");
-    for (index, text) in texts.iter().enumerate() {
-        assert!(canvas.contains(&text.rect), "{what}: clipped: {text:?}");
-        assert!(!text.text.is_empty());
-        for other in &texts[..index] {
-            assert!(!text.rect.overlaps(&other.rect), "{what}: {text:?} lies on {other:?}");
-        }
-    }
+    assert!(texts.iter().all(|text| !text.text.is_empty()), "{what}: an empty text");
+    layout::assert_clear(texts, size, what);
 }
 
 fn all_text(texts: &[PlacedText]) -> String {

@@ -2,11 +2,12 @@
 
 use fixability::assess::{Setup, score_lines, sensitivity};
 use fixability::dive::{Dive, ErrorBound};
-use fixability::render::{self, ChartSize, Rect};
+use fixability::render::{self, ChartSize};
 use fixability::report::{GuaranteedChange, SensitivityReport};
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::support::layout::assert_clear;
 use crate::support::program::{Workplace, project};
 
 /// A dive with two lines over random ground, in local metres or in a grid whose distortion widens the bounds.
@@ -364,13 +365,7 @@ fn texts_of_the_chart_keep_clear_of_each_other() {
         for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754), (2480, 1754)] {
             let size = ChartSize::pixels(width_px, height_px);
             let texts = render::sensitivity_layout(report, &size).unwrap();
-            let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));
-            for (index, text) in texts.iter().enumerate() {
-                assert!(canvas.contains(&text.rect), "{number} {size:?}: clipped: {text:?}");
-                for other in &texts[..index] {
-                    assert!(!text.rect.overlaps(&other.rect), "{number} {size:?}: {text:?} on {other:?}");
-                }
-            }
+            assert_clear(&texts, &size, &format!("{number} {size:?}"));
         }
     }
 }

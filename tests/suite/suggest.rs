@@ -6,12 +6,13 @@ use fixability::detect::{DrawnErrors, simulate};
 use fixability::dive::{AreaOptions, Dive, ErrorShape};
 use fixability::frame::LocalPoint;
 use fixability::locate::{StraightOutcome, StraightRuns, steps};
-use fixability::render::{self, ChartSize, Rect, ramp};
+use fixability::render::{self, ChartSize, ramp};
 use fixability::report::{SuggestReport, Suggestion};
 use fixability::track::plan::Plan;
 use rand::{RngExt, SeedableRng};
 use rand_chacha::ChaCha8Rng;
 
+use crate::support::layout::assert_clear;
 use crate::support::program::Workplace;
 
 /// West and south end of the search area, in UTM zone 31N; it is square.
@@ -417,13 +418,7 @@ fn texts_of_the_chart_keep_clear_of_each_other() {
         for (width_px, height_px) in [(1754, 1240), (800, 560), (1240, 1754)] {
             let size = ChartSize::pixels(width_px, height_px);
             let texts = render::suggest_layout(&report, &size).unwrap();
-            let canvas = Rect::new(0.0, 0.0, f64::from(width_px), f64::from(height_px));
-            for (index, text) in texts.iter().enumerate() {
-                assert!(canvas.contains(&text.rect), "{number} {size:?}: clipped: {text:?}");
-                for other in &texts[..index] {
-                    assert!(!text.rect.overlaps(&other.rect), "{number} {size:?}: {text:?} on {other:?}");
-                }
-            }
+            assert_clear(&texts, &size, &format!("{number} {size:?}"));
         }
     }
 }

@@ -2,6 +2,7 @@
 
 pub mod demo;
 pub mod exact;
+pub mod layout;
 pub mod outside;
 #[allow(dead_code, reason = "the benchmarks use more of it")]
 pub mod plain;
