@@ -1,6 +1,6 @@
 //! The worst look-alikes one by one: ground 2 laid over ground 1.
 
-use super::colours::{ACCENT, BAR, GREY, INK, SOFT_INK, UNDECIDED_GROUND, WHITE};
+use super::colours::{BAR, GREY, INK, SOFT_INK, UNDECIDED_GROUND, WHITE};
 use super::furniture::{Extent, MapFrame, Sheet, bounds_in_words};
 use super::lookalikes::{IDENTIFIER_SHARE, scale_in_words, title};
 use super::scene::{Px, Rect, Scene};
@@ -190,7 +190,7 @@ impl<'a> Overlaid<'a> {
             let join = [frame.px(self.mark(i).position), frame.px(there)];
             if libm::hypot(join[1].0 - join[0].0, join[1].1 - join[0].1) >= JOIN_LEAST_PX * k {
                 clipped_stroke(scene, frame, &join, larger(1.0, 4.4 * k), WHITE);
-                clipped_stroke(scene, frame, &join, larger(1.0, 2.4 * k), ACCENT);
+                clipped_stroke(scene, frame, &join, larger(1.0, 2.4 * k), INK);
             }
         }
         for (tell, position) in self.tell_tales() {
@@ -260,7 +260,7 @@ fn legend(sheet: &mut Sheet, top: f64) -> f64 {
             2 => scene.stroke(
                 vec![(left + 4.0 * k, middle), (left + swatch - 4.0 * k, middle)],
                 larger(1.0, 2.0 * k),
-                ACCENT,
+                INK,
             ),
             3 => ring(scene, &whole, centre, 10.0 * k, k),
             4 => scene.fill(square, UNDECIDED_GROUND),

@@ -1,6 +1,6 @@
 //! The chart of `sensitivity`: which error is worth improving first?
 
-use super::colours::{ACCENT, BAR, INK, PALE, SOFT_INK};
+use super::colours::{BAR, INK, PALE, SOFT_INK};
 use super::furniture::{Sheet, bounds_in_words};
 use super::scene::{Rect, Scene};
 use super::{ChartSize, RenderError, nice, text};
@@ -239,7 +239,7 @@ fn draw_row(
     let height = if is_roomy { font.height_px() + small.height_px() } else { font.height_px() };
     let text_top = top + (pitch - height) / 2.0;
     if !row.rank.is_empty() {
-        let colour = if is_first { ACCENT } else { SOFT_INK };
+        let colour = if is_first { INK } else { SOFT_INK };
         sheet.scene.text((names.left, text_top), &row.rank, font, colour);
     }
     sheet.scene.text((left, text_top), &text::fit(row.words, font, room), font, INK);
